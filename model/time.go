@@ -1,0 +1,155 @@
+package model
+
+import "math"
+
+// Times are integrals of dt = d(ln a)/H. Inside this file they are in units of 1/H0.
+
+// between is the time from s1 = ln a1 to s2 = ln a2, with no zero of E² in between.
+func (e *expansion) between(s1, s2 float64) float64 {
+	if s1 == s2 {
+		return 0
+	}
+	return integrate(func(s float64) float64 {
+		return 1 / math.Sqrt(e.squared(math.Exp(-s), -s, math.Exp(s)))
+	}, s1, s2)
+}
+
+// sinceBigBang is the time from the big bang to the scale factor a, in a universe that had one. With a
+// cosmological constant the variable x = √a makes the integrand 2x³/√(Or + Om x² + Ok x⁴ + OL x⁸) a
+// smooth function down to x = 0. For other dark energy, whose powers are not whole, the integral runs over
+// ln a in steps, and what is left is a pure power law.
+func (e *expansion) sinceBigBang(a float64) float64 {
+	if e.lambda && e.om > 0 {
+		return integrate(func(x float64) float64 {
+			a := x * x
+			return 2 * x * a / math.Sqrt(e.or+a*(e.om+a*(e.ok+a*a*e.ol)))
+		}, 0, math.Sqrt(a))
+	}
+	const step, steps = 2, 20
+	s, t := math.Log(a), 0.0
+	for range steps {
+		dt := e.between(s-step, s)
+		s -= step
+		t += dt
+		if dt < 1e-15*t {
+			break
+		}
+	}
+	_, n := e.early()
+	return t + 2/(n*math.Sqrt(e.squared(math.Exp(-s), -s, math.Exp(s))))
+}
+
+// untilTurnaround is the time from ln a = s to the zero of E² at st = ln at > s. There 1/E has an integrable
+// singularity, which the variable v = √(st-s) removes. E² is evaluated as its difference from the value 0
+// at the zero, term by term with expm1, so it keeps its relative accuracy as it vanishes.
+func (e *expansion) untilTurnaround(s, st float64) float64 {
+	at := math.Exp(st)
+	x := 1 / at
+	rad, m, q := e.or*x*x, e.om*x, e.p-2
+	de := -(rad + m + e.ok) // by definition of the zero
+	if e.ol == 0 {
+		de = 0
+	}
+	return integrate(func(v float64) float64 {
+		d := -v * v
+		grow := math.Expm1(d)
+		r := m*math.Expm1(-d) + de*math.Expm1(e.b*at*grow-q*d)
+		if rad != 0 {
+			r += rad * math.Expm1(-2*d)
+		}
+		return 2 * v * at * math.Exp(d) / math.Sqrt(r)
+	}, 0, math.Sqrt(st-s))
+}
+
+// Lookback is the time in Gyr between redshift z and today. NaN for z < 0 and for z at or beyond a bounce.
+func (u Universe) Lookback(z float64) float64 {
+	e := u.expansion()
+	y := math.Log1p(z)
+	if !(z >= 0 && y < e.reach()) {
+		return math.NaN()
+	}
+	return u.HubbleTime() * e.between(-y, 0)
+}
+
+// Age is the time in Gyr from the big bang to redshift z ≥ 0. NaN for z < 0 and for a universe without a big
+// bang.
+func (u Universe) Age(z float64) float64 {
+	if !(z >= 0) || !u.HasBigBang() {
+		return math.NaN()
+	}
+	e := u.expansion()
+	return u.HubbleTime() * e.sinceBigBang(1/(1+z))
+}
+
+// AgeToday is the time in Gyr since the big bang; NaN for a universe without one.
+func (u Universe) AgeToday() float64 { return u.Age(0) }
+
+// TimeAt is the time in Gyr since the big bang at which the expanding universe reaches the scale factor a,
+// which may lie in the future. NaN for a ≤ 0, for a universe without a big bang, and for an a beyond the
+// turnaround.
+func (u Universe) TimeAt(a float64) float64 {
+	if !(a > 0) || !u.HasBigBang() {
+		return math.NaN()
+	}
+	e := u.expansion()
+	at := e.futureZero()
+	switch {
+	case a > at:
+		return math.NaN()
+	case a <= 1:
+		return u.HubbleTime() * e.sinceBigBang(a)
+	case math.IsInf(at, 1):
+		return u.HubbleTime() * (e.sinceBigBang(1) + e.between(0, math.Log(a)))
+	}
+	st := math.Log(at)
+	return u.HubbleTime() * (e.sinceBigBang(1) + e.untilTurnaround(0, st) - e.untilTurnaround(math.Log(a), st))
+}
+
+// Turnaround is the scale factor at which the expansion of a universe that recollapses stops, and the time of
+// it in Gyr since the big bang. Both are NaN if it does not; the time alone is, if there was no big bang.
+func (u Universe) Turnaround() (a, t float64) {
+	if u.Future() != Recollapse {
+		return math.NaN(), math.NaN()
+	}
+	e := u.expansion()
+	a = e.futureZero()
+	if math.IsInf(a, 1) {
+		return math.NaN(), math.NaN()
+	}
+	if !u.HasBigBang() {
+		return a, math.NaN()
+	}
+	return a, u.HubbleTime() * (e.sinceBigBang(1) + e.untilTurnaround(0, math.Log(a)))
+}
+
+// Crunch is the time in Gyr from the big bang to the big crunch. E² depends on a alone, so the contraction is
+// the expansion backwards, and this is twice the time of turnaround. NaN for a universe that does not
+// recollapse or had no big bang.
+func (u Universe) Crunch() float64 {
+	_, t := u.Turnaround()
+	return 2 * t
+}
+
+// Rip is the time in Gyr from today to the big rip; NaN if there is none. For a flat universe of constant
+// w < -1 it is (2/3)|1+w|⁻¹ OL^(-1/2)/H0 times a hypergeometric function, of which Caldwell, Kamionkowski &
+// Weinberg 2003 (PRL 91, 071301) keep the leading 1.
+func (u Universe) Rip() float64 {
+	if u.Future() != BigRip {
+		return math.NaN()
+	}
+	e := u.expansion()
+	s, t := 0.0, 0.0
+	for range 400 {
+		dt := e.between(s, s+1)
+		s++
+		t += dt
+		if e.b > 0 && dt < 1e-15*t {
+			return u.HubbleTime() * t
+		}
+		if e.b == 0 && s >= 40 {
+			break
+		}
+	}
+	// Constant w: all else is below rounding at a = e⁴⁰, and the rest of the integral is that of a power law.
+	return u.HubbleTime() * (t - 2/(e.p*math.Sqrt(e.squared(math.Exp(-s), -s, math.Exp(s)))))
+}
