@@ -1,0 +1,136 @@
+package data
+
+import (
+	"bufio"
+	"bytes"
+	"encoding/csv"
+	"io"
+	"strings"
+)
+
+const blank = ' ' // stands for any run of blanks and tabs
+
+// layout is how a table is written, found from its first lines.
+type layout struct {
+	separator rune
+	header    []string // nil: the first row of body is the header
+	line      int      // of the header
+	first     int      // line at which body starts
+	body      io.Reader
+}
+
+// look reads up to the second line that is neither blank nor a comment, decides, and puts what it read back.
+func look(b *bufio.Reader, file string) (layout, error) {
+	var content []string
+	var replay bytes.Buffer
+	var l layout
+	comment, commentLine := "", 0
+	for n := 1; len(content) < 2; n++ {
+		line, err := b.ReadSlice('\n')
+		if err == bufio.ErrBufferFull {
+			return l, tooLong(file, n)
+		}
+		if err != nil && err != io.EOF {
+			return l, failed(file, err)
+		}
+		s := strings.TrimSpace(string(line))
+		switch {
+		case s == "":
+		case s[0] == '#' && l.first == 0:
+			comment, commentLine = s, n
+		case s[0] != '#':
+			content = append(content, s)
+			if l.first == 0 {
+				l.first = n
+			}
+		}
+		if l.first > 0 {
+			replay.Write(line)
+		}
+		if err == io.EOF {
+			break
+		}
+	}
+	if len(content) == 0 {
+		return l, empty(file)
+	}
+	l.body = io.MultiReader(&replay, b)
+	l.separator = separator(content)
+	return l, l.findHeader(file, content[0], comment, commentLine)
+}
+
+func empty(file string) error {
+	return &Error{File: file, Message: message("an empty file", "a header row and rows of measurements",
+		"check that it was written completely")}
+}
+
+func tooLong(file string, line int) error {
+	return &Error{File: file, Line: line, Message: message("a line longer than a megabyte", "a table of text",
+		"check that this is the file you meant")}
+}
+
+// separator picks the one that splits both lines into the same number of fields, at least two; failing that,
+// the one that splits the first. A single column needs none.
+func separator(lines []string) rune {
+	fallback := blank
+	for _, sep := range []rune{blank, '\t', ',', ';'} {
+		n := len(split(lines[0], sep))
+		if n > 1 {
+			fallback = sep
+		}
+	}
+	if len(lines) < 2 {
+		return fallback
+	}
+	for _, sep := range []rune{';', ',', '\t', blank} {
+		n := len(split(lines[0], sep))
+		if n > 1 && n == len(split(lines[1], sep)) {
+			return sep
+		}
+	}
+	return fallback
+}
+
+// split is the fields of one line, or none if its quotes do not match.
+func split(line string, sep rune) []string {
+	if sep == blank {
+		fields, _ := splitBlanks(nil, line)
+		return fields
+	}
+	r := csv.NewReader(strings.NewReader(line))
+	r.Comma = sep
+	r.TrimLeadingSpace = sep != '\t'
+	fields, err := r.Read()
+	if err != nil {
+		return nil
+	}
+	return fields
+}
+
+// findHeader decides between a header row and a header in the comment before the first row.
+func (l *layout) findHeader(file, first, comment string, commentLine int) error {
+	row := split(first, l.separator)
+	l.line = l.first
+	if !numeric(row) {
+		return nil
+	}
+	if comment != "" && commentLine == l.first-1 {
+		if h := split(strings.TrimLeft(comment, "# \t"), l.separator); len(h) == len(row) {
+			l.header, l.line = h, commentLine
+			return nil
+		}
+	}
+	return &Error{File: file, Line: l.first, Message: message("numbers in the first row", "the names of the columns",
+		"write a header row above it")}
+}
+
+// numeric tells a row of measurements, at least half of it numbers, from a row of names.
+func numeric(row []string) bool {
+	n := 0
+	for _, cell := range row {
+		if _, ok := parse(strings.TrimSpace(cell)); ok {
+			n++
+		}
+	}
+	return n > 0 && 2*n >= len(row)
+}
