@@ -3,17 +3,127 @@ package model
 import "math"
 
 // ScaleFactor is a at the time t in Gyr since the big bang: through the turnaround to the crunch if there is
-// one, up to the rip if there is one. NaN before the big bang, after the end, and for a universe without a big
-// bang.
+// one, up to the rip if there is one, 0 at the bang and the crunch. NaN outside that span, and for a universe
+// without a big bang.
 func (u Universe) ScaleFactor(t float64) float64 {
 	var a [1]float64
 	u.History([]float64{t}, a[:])
 	return a[0]
 }
 
-// History writes the scale factor at each of the times, which are in Gyr since the big bang, into dst.
+// History writes ScaleFactor of each of the times into dst, which must have the same length. Times that ascend
+// are cheap: each is reached from the one before it in a few Newton steps. The relative accuracy of a is 1e-9,
+// except within 1e-6 of the span's length from a rip or a crunch, where a follows t without bound.
 func (u Universe) History(times, dst []float64) {
-	for i := range dst {
-		dst[i] = math.NaN()
+	if len(times) != len(dst) {
+		panic("model: History needs one element per time")
 	}
+	h := u.newHistory()
+	for i, t := range times {
+		dst[i] = h.scaleFactor(t / u.HubbleTime())
+	}
+}
+
+// history is the state of a walk through the life of one universe, in units of 1/H0.
+type history struct {
+	e     expansion
+	end   float64 // time of the crunch or rip, +Inf without one, 0 without a big bang
+	turn  float64 // time of turnaround, +Inf without one
+	st    float64 // ln a at turnaround
+	rise  clock   // time since the big bang against ln a
+	crest clock   // time until turnaround against v = √(st - ln a), where 1/E is nearly singular
+}
+
+// clock is a monotonic relation between a position and a time, known at one point and by its slope.
+type clock struct {
+	rate   func(pos float64) float64 // dt/dpos > 0
+	pos, t float64
+}
+
+func (u Universe) newHistory() *history {
+	h := &history{e: u.expansion(), turn: math.Inf(1), end: math.Inf(1)}
+	if !u.HasBigBang() {
+		h.end = 0
+		return h
+	}
+	today := h.e.sinceBigBang(1)
+	h.rise = clock{rate: h.e.timeRate, pos: 0, t: today}
+	switch u.Future() {
+	case Recollapse:
+		h.st = math.Log(h.e.futureZero())
+		h.turn = today + h.e.untilTurnaround(0, h.st)
+		h.end = 2 * h.turn
+		h.crest = clock{rate: h.e.turnaroundRate(h.st)}
+	case BigRip:
+		h.end = today + u.Rip()/u.HubbleTime()
+	}
+	return h
+}
+
+func (h *history) scaleFactor(t float64) float64 {
+	switch {
+	case !(t >= 0 && t <= h.end && h.end > 0) || t == h.end && math.IsInf(h.turn, 1):
+		return math.NaN()
+	case t > h.turn:
+		t = 2*h.turn - t // E² depends on a alone: the contraction mirrors the expansion
+	}
+	switch {
+	case t == 0:
+		return 0
+	case t > h.turn/2 && !math.IsInf(h.turn, 1):
+		v := h.crest.seek(h.turn - t)
+		return math.Exp(h.st - v*v)
+	}
+	h.anchor(t)
+	return math.Exp(h.rise.seekLog(t))
+}
+
+// anchor moves the clock back to the neighbourhood of a much earlier time along the power law that it follows
+// there, and sets it afresh: winding it back would leave a small difference of large numbers.
+func (h *history) anchor(t float64) {
+	c := &h.rise
+	for range 100 {
+		if t > c.t/4 {
+			return
+		}
+		c.pos += math.Max(-5, math.Log(t/c.t)*c.t/c.rate(c.pos))
+		c.t = h.e.sinceBigBang(math.Exp(c.pos))
+	}
+}
+
+// seek moves the clock to time t by Newton's method and returns the position.
+func (c *clock) seek(t float64) float64 {
+	return c.newton(t, func(rate float64) float64 { return (t - c.t) / rate })
+}
+
+// seekLog is seek by Newton's method for the logarithm of time, which is nearly linear in ln a as long as the
+// expansion is a power law.
+func (c *clock) seekLog(t float64) float64 {
+	return c.newton(t, func(rate float64) float64 { return math.Log(t/c.t) * c.t / rate })
+}
+
+// newton takes steps of at most 1, kept inside a bracket that closes on the position of time t.
+func (c *clock) newton(t float64, step func(rate float64) float64) float64 {
+	lo, hi := math.Inf(-1), math.Inf(1)
+	for range 200 {
+		switch {
+		case c.t == t:
+			return c.pos
+		case c.t < t:
+			lo = c.pos
+		default:
+			hi = c.pos
+		}
+		next := c.pos + math.Max(-1, math.Min(step(c.rate(c.pos)), 1))
+		if next <= lo || next >= hi {
+			next = (lo + hi) / 2
+		}
+		moved := next - c.pos
+		c.t += integrate(c.rate, c.pos, next)
+		c.pos = next
+		if math.Abs(moved) < 1e-10 {
+			break
+		}
+	}
+	return c.pos
 }

@@ -4,14 +4,17 @@ import "math"
 
 // Times are integrals of dt = d(ln a)/H. Inside this file they are in units of 1/H0.
 
+// timeRate is dt/ds = 1/E at s = ln a.
+func (e *expansion) timeRate(s float64) float64 {
+	return 1 / math.Sqrt(e.squared(math.Exp(-s), -s, math.Exp(s)))
+}
+
 // between is the time from s1 = ln a1 to s2 = ln a2, with no zero of E² in between.
 func (e *expansion) between(s1, s2 float64) float64 {
 	if s1 == s2 {
 		return 0
 	}
-	return integrate(func(s float64) float64 {
-		return 1 / math.Sqrt(e.squared(math.Exp(-s), -s, math.Exp(s)))
-	}, s1, s2)
+	return integrate(e.timeRate, s1, s2)
 }
 
 // sinceBigBang is the time from the big bang to the scale factor a, in a universe that had one. With a
@@ -36,29 +39,38 @@ func (e *expansion) sinceBigBang(a float64) float64 {
 		}
 	}
 	_, n := e.early()
-	return t + 2/(n*math.Sqrt(e.squared(math.Exp(-s), -s, math.Exp(s))))
+	return t + 2/n*e.timeRate(s)
 }
 
-// untilTurnaround is the time from ln a = s to the zero of E² at st = ln at > s. There 1/E has an integrable
-// singularity, which the variable v = √(st-s) removes. E² is evaluated as its difference from the value 0
-// at the zero, term by term with expm1, so it keeps its relative accuracy as it vanishes.
+// untilTurnaround is the time from ln a = s to the zero of E² at st > s.
 func (e *expansion) untilTurnaround(s, st float64) float64 {
+	return integrate(e.turnaroundRate(st), 0, math.Sqrt(st-s))
+}
+
+// turnaroundRate returns -dt/dv for v = √(st - ln a) and a zero of E² at ln a = st, where 1/E has an
+// integrable singularity which this variable removes. E² is evaluated as its difference from the value 0 at
+// the zero, term by term with expm1, so it keeps its relative accuracy as it vanishes.
+func (e *expansion) turnaroundRate(st float64) func(v float64) float64 {
 	at := math.Exp(st)
 	x := 1 / at
 	rad, m, q := e.or*x*x, e.om*x, e.p-2
-	de := -(rad + m + e.ok) // by definition of the zero
-	if e.ol == 0 {
-		de = 0
+	de := 0.0
+	if e.ol != 0 {
+		de = -(rad + m + e.ok) // by definition of the zero
 	}
-	return integrate(func(v float64) float64 {
+	slope := de*(e.b*at-q) - m - 2*rad // dr/d ln a of r = a²E², negative
+	return func(v float64) float64 {
 		d := -v * v
+		if d == 0 {
+			return 2 * at / math.Sqrt(-slope)
+		}
 		grow := math.Expm1(d)
 		r := m*math.Expm1(-d) + de*math.Expm1(e.b*at*grow-q*d)
 		if rad != 0 {
 			r += rad * math.Expm1(-2*d)
 		}
-		return 2 * v * at * math.Exp(d) / math.Sqrt(r)
-	}, 0, math.Sqrt(st-s))
+		return 2 * at * (1 + grow) / math.Sqrt(r/-d)
+	}
 }
 
 // Lookback is the time in Gyr between redshift z and today. NaN for z < 0 and for z at or beyond a bounce.
@@ -151,5 +163,5 @@ func (u Universe) Rip() float64 {
 		}
 	}
 	// Constant w: all else is below rounding at a = e⁴⁰, and the rest of the integral is that of a power law.
-	return u.HubbleTime() * (t - 2/(e.p*math.Sqrt(e.squared(math.Exp(-s), -s, math.Exp(s)))))
+	return u.HubbleTime() * (t - 2/e.p*e.timeRate(s))
 }
