@@ -1,0 +1,98 @@
+package sampler
+
+import "math"
+
+// What a chain must show before Run calls it converged.
+const (
+	// rhatLimit is the criterion of Vehtari et al. (2021).
+	rhatLimit = 1.01
+	// trustTimes is how many autocorrelation times all ensembles together must
+	// be long: then τ itself is known to about 45%, and an error to half that
+	// (see AutocorrelationTime). 50 is common practice for one series.
+	trustTimes = 100
+)
+
+// Check is the state of a run at one step: how far the chain has converged.
+type Check struct {
+	Step        int           // steps done
+	BurnIn      int           // steps to discard, see [BurnIn]
+	Parameters  []Convergence // one per parameter, after burn-in
+	Acceptance  float64       // fraction of proposals accepted
+	Evaluations int           // of the density, so far
+	Converged   bool          // all tests passed, the caller's own included
+}
+
+// Convergence is what [Run] judges one parameter by.
+type Convergence struct {
+	ESS, RHat float64
+	Tau       float64 // autocorrelation time in steps
+}
+
+// ESS returns the effective sample size of the slowest parameter, 0 if one is
+// not known yet.
+func (c Check) ESS() float64 {
+	least := math.Inf(1)
+	for _, p := range c.Parameters {
+		if math.IsNaN(p.ESS) {
+			return 0
+		}
+		least = min(least, p.ESS)
+	}
+	return least
+}
+
+// RHat returns the largest R-hat of the parameters, +Inf if one is not known
+// yet.
+func (c Check) RHat() float64 {
+	worst := 1.0
+	for _, p := range c.Parameters {
+		if math.IsNaN(p.RHat) {
+			return math.Inf(1)
+		}
+		worst = max(worst, p.RHat)
+	}
+	return worst
+}
+
+// assess measures the convergence of a chain and returns it with the part of
+// the chain after burn-in. It reads the record alone, so a restored chain is
+// judged like the original.
+func assess(c *Chain, s Settings) (Check, View) {
+	v := c.View()
+	all := make([]Draws, v.dim)
+	found := make([]moments, v.dim)
+	each(v.dim, s.Threads, func(i int) { all[i] = v.Coordinate(i) })
+	drop := burnRows(v.LogDensity(), all, func(i, drop int) float64 {
+		return measure(all[i].after(drop)).tau
+	})
+	check := Check{
+		Step:        c.Steps(),
+		BurnIn:      v.stepAt(drop),
+		Parameters:  make([]Convergence, v.dim),
+		Acceptance:  c.Acceptance(),
+		Evaluations: c.Evaluations(),
+	}
+	each(v.dim, s.Threads, func(i int) {
+		d := all[i].after(drop)
+		found[i] = measure(d)
+		check.Parameters[i] = Convergence{ESS: found[i].ess(), RHat: RHat(d), Tau: found[i].tau}
+	})
+	rest := v.skip(drop)
+	check.Converged = check.passes(rest, s)
+	return check, rest
+}
+
+// passes applies the tests of convergence; the caller's own comes last because
+// it may cost more than all others.
+func (c Check) passes(rest View, s Settings) bool {
+	if s.Effective <= 0 {
+		return false
+	}
+	length := float64(rest.Ensembles() * rest.Steps() * rest.Spacing())
+	for _, p := range c.Parameters {
+		if !(p.ESS >= s.Effective && p.RHat < rhatLimit && length >= trustTimes*p.Tau) {
+			return false
+		}
+	}
+	return s.Enough == nil || s.Enough(rest)
+}

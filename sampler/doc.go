@@ -1,0 +1,31 @@
+// Package sampler explores a probability density known up to a constant, and
+// says how well it did.
+//
+// It knows nothing but a [Density]: the natural logarithm of a density of a
+// []float64. The path of a number through the package:
+//
+//  1. [Maximise] finds the best fit in a box, [Scatter] places the walkers of
+//     every ensemble around it, wider than the posterior.
+//  2. [Run] moves several independent ensembles of walkers by the
+//     affine-invariant stretch move (one [Ensemble] each, in parallel) and
+//     appends every recorded step to a [Chain]. An [Observer] sees the new rows
+//     and the convergence at every [Check].
+//  3. A [View] is a part of the chain: after the burn-in that [BurnIn] reads
+//     off the chain itself, thinned if the caller wants. Nothing is copied.
+//  4. [Draws] is one scalar along a view: a coordinate, or any function of the
+//     position.
+//  5. [Summarize] reduces draws to mean, standard deviation, quantiles,
+//     intervals, each with its Monte Carlo standard error, effective sample
+//     size and R-hat; [Proportion] reduces draws of 0 and 1 to a probability.
+//
+// # Random numbers
+//
+// The random stream of a step is a pure function of the seed, the ensemble and
+// the step, so the chain depends on nothing else: not on the number of threads,
+// nor on whether it was interrupted and continued from its last complete step.
+//
+// # Errors
+//
+// What a caller's input can cause is an error; what data cannot tell is NaN (or
+// an infinite standard error); misuse by the programmer panics.
+package sampler

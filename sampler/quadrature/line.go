@@ -1,0 +1,227 @@
+package quadrature
+
+import "math"
+
+// outside is the label of a point without support; the others are classes (0 when there are none asked for).
+const outside int8 = -1
+
+// maxSplits bounds how often one piece of a line is split at borders that earlier splits did not show.
+const maxSplits = 4
+
+// node is one point of a rule with all the weights it has collected on the way out.
+type node struct {
+	x, half   [3]float64 // position, and half the extent the node stands for, in the caller's order
+	w, coarse float64    // weight of the Kronrod and of the embedded Gauss rule
+	logp      float64
+	label     int8
+}
+
+// linePiece is a piece of an innermost line: the samples behind its core.
+type linePiece struct {
+	logp   [points]float64
+	label  [points]int8
+	la, lb int8 // labels just inside the ends
+}
+
+// line integrates along the innermost coordinate, the others being fixed in w.x.
+func (w *worker) line() integral {
+	level := w.dim - 1
+	w.cores, w.pieces = w.cores[:0], w.pieces[:0]
+	w.tol = w.tolerance(level, nil)
+	cuts := w.cuts(level)
+	nudge := 1e-9 * (cuts[len(cuts)-1] - cuts[0])
+	_, la := w.at(cuts[0] + nudge)
+	for i, b := range cuts[1:] {
+		edge := b
+		if i == len(cuts)-2 {
+			edge -= nudge // a density may exclude the edge of its own box
+		}
+		_, lb := w.at(edge)
+		w.place(cuts[i], b, la, lb, 0)
+		la = lb
+	}
+	w.refineLine(level)
+	return w.closeLine()
+}
+
+// refineLine bisects the worst piece until the errors are within tolerance or the line has too many pieces.
+func (w *worker) refineLine(level int) {
+	narrow := 1e-11 * (w.hi[level] - w.lo[level])
+	for len(w.cores) < maxPieces {
+		tol := w.tolerance(level, w.cores)
+		i := worst(w.cores, &tol, w.slots, narrow)
+		if i < 0 {
+			return
+		}
+		c, p := w.cores[i], w.pieces[i]
+		last := len(w.cores) - 1
+		w.cores[i], w.pieces[i] = w.cores[last], w.pieces[last]
+		w.cores, w.pieces = w.cores[:last], w.pieces[:last]
+		mid, label := (c.a+c.b)/2, p.label[points/2]
+		w.place(c.a, mid, p.la, label, 0)
+		w.place(mid, c.b, label, p.lb, 0)
+	}
+}
+
+// at evaluates the log-density and the label at t on the line.
+func (w *worker) at(t float64) (logp float64, label int8) {
+	w.x[w.order[w.dim-1]] = t
+	w.evals++
+	logp = w.density(w.x)
+	if math.IsNaN(logp) || math.IsInf(logp, -1) {
+		return math.Inf(-1), outside
+	}
+	if math.IsInf(logp, 1) {
+		w.infinite = true
+		return math.Inf(-1), outside
+	}
+	return logp, w.classOf()
+}
+
+// classOf returns the class at w.x: one without a slot for a point that belongs to none.
+func (w *worker) classOf() int8 {
+	if w.class == nil {
+		return 0
+	}
+	if c := w.class(w.x); c >= 0 && c < w.slots-1 {
+		return int8(c)
+	}
+	return int8(w.slots - 1)
+}
+
+// place samples the piece [a, b] and keeps it, after splitting it at the borders it contains.
+func (w *worker) place(a, b float64, la, lb int8, depth int) {
+	p := linePiece{la: la, lb: lb}
+	h, mid := (b-a)/2, (a+b)/2
+	mixed := la != lb
+	for i, u := range abscissa {
+		p.logp[i], p.label[i] = w.at(mid + h*u)
+		mixed = mixed || p.label[i] != la
+	}
+	if mixed && depth < maxSplits && w.matters(&p, b-a) {
+		w.split(a, b, &p, depth)
+		return
+	}
+	w.keep(a, b, &p)
+}
+
+// matters tells whether a border inside the piece could make a difference at the tolerance of the line.
+func (w *worker) matters(p *linePiece, width float64) bool {
+	top, _, _ := foreseen(&p.logp)
+	least := w.tol[0]
+	for s := 1; s < w.slots; s++ {
+		least = math.Min(least, w.tol[s])
+	}
+	return math.Exp(top-w.ref)*width > 0.01*least
+}
+
+// split finds the borders between neighbouring samples with different labels and places the parts. Parts
+// without support need no samples.
+func (w *worker) split(a, b float64, p *linePiece, depth int) {
+	h, mid := (b-a)/2, (a+b)/2
+	from, left := a, a // start of the current part, latest point known to carry its label
+	label, level := p.la, math.Inf(-1)
+	for i := 0; i <= points; i++ {
+		right, rl, rv := b, p.lb, math.Inf(-1)
+		if i < points {
+			right, rl, rv = mid+h*abscissa[i], p.label[i], p.logp[i]
+		}
+		for n := 0; rl != label && n < maxSplits; n++ {
+			border, next := w.border(left, right, label, rl, math.Max(level, rv))
+			w.part(from, border, label, depth)
+			from, left, label = border, border, next
+		}
+		left, label, level = right, rl, rv
+	}
+	w.part(from, b, label, depth)
+}
+
+func (w *worker) part(a, b float64, label int8, depth int) {
+	if label != outside && b > a {
+		w.place(a, b, label, label, depth+1)
+	}
+}
+
+// border bisects between p, labelled lp, and q, labelled lq, until the mass in between does not matter, and
+// returns the border and the label beyond it. Between two classes only the classifier is asked.
+func (w *worker) border(p, q float64, lp, lq int8, logp float64) (t float64, beyond int8) {
+	least := min(w.tol[0], w.tol[1+max(lp, 0)], w.tol[1+max(lq, 0)])
+	enough := 0.01 * least / math.Exp(logp-w.ref)
+	for n := 0; n < 50 && q-p > enough; n++ {
+		t = (p + q) / 2
+		var l int8
+		if lp == outside || lq == outside {
+			_, l = w.at(t)
+		} else {
+			w.x[w.order[w.dim-1]] = t
+			l = w.classOf()
+		}
+		if l == lp {
+			p = t
+		} else {
+			q, lq = t, l
+		}
+	}
+	return (p + q) / 2, lq
+}
+
+// keep computes the integrals of a sampled piece and adds it to the line.
+func (w *worker) keep(a, b float64, p *linePiece) {
+	var f [points]vec
+	for i, l := range p.label {
+		if l == outside {
+			continue
+		}
+		f[i][0] = math.Exp(p.logp[i] - w.ref)
+		if s := int(l) + 1; w.class != nil && s < w.slots {
+			f[i][s] = f[i][0]
+		}
+	}
+	c := core{a: a, b: b}
+	c.sumRule(&f, w.slots)
+	if top, vertex, i := foreseen(&p.logp); vertex > top+hidden {
+		c.err[0] += w.hiddenMass(vertex, (b-a)/2*kronrod[i])
+	}
+	w.cores, w.pieces = append(w.cores, c), append(w.pieces, *p)
+}
+
+// hidden is by how much a parabola must overtop the largest sample before a hidden peak is suspected.
+const hidden = 0.7
+
+// hiddenMass bounds the mass of a suspected peak, within what a float64 can hold.
+func (w *worker) hiddenMass(vertex, width float64) float64 {
+	return math.Exp(math.Min(vertex-w.ref, 600)) * width
+}
+
+// closeLine adds up the pieces and hands on their nodes.
+func (w *worker) closeLine() (sum integral) {
+	sum.peak = math.Inf(-1)
+	for i := range w.cores {
+		for s := range w.slots {
+			sum.val[s] += w.cores[i].val[s]
+			sum.err[s] += w.cores[i].err[s]
+		}
+		_, vertex, _ := foreseen(&w.pieces[i].logp)
+		sum.peak = math.Max(sum.peak, vertex)
+		if w.record {
+			w.emitLine(&w.cores[i], &w.pieces[i])
+		}
+	}
+	return sum
+}
+
+// faintest is how far below the mode, in ln p, a node may lie before it is of no use to anybody.
+const faintest = 60
+
+func (w *worker) emitLine(c *core, p *linePiece) {
+	axis, h, mid := w.order[w.dim-1], (c.b-c.a)/2, (c.a+c.b)/2
+	for i, l := range p.label {
+		if l == outside || p.logp[i] < w.ref-faintest {
+			continue
+		}
+		n := node{w: h * kronrod[i], coarse: h * gauss[i], logp: p.logp[i], label: l}
+		copy(n.x[:], w.x)
+		n.x[axis], n.half[axis] = mid+h*abscissa[i], h*kronrod[i]/2
+		w.out[w.dim-1] = append(w.out[w.dim-1], n)
+	}
+}

@@ -1,0 +1,118 @@
+package quadrature
+
+import (
+	"math"
+
+	"gonum.org/v1/gonum/mat"
+)
+
+// pass is one nested integration with a fixed order of the coordinates. It is shared by the workers and only
+// changed between batches.
+type pass struct {
+	dim    int
+	order  []int     // order[level] is the caller's coordinate, outermost first
+	lo, hi []float64 // by level
+	mean   []float64 // by level
+	chol   *mat.TriDense
+	ref    float64 // ln p that counts as 1
+
+	class  func([]float64) int
+	slots  int // 1 + classes
+	record bool
+
+	relative, relativeClass, rarest float64
+	scale                           [3]vec // magnitude of the integrals of each level, from what was seen so far
+}
+
+// guess is what is known of a density before a pass: where its mass is.
+type guess struct {
+	ref  float64
+	mean []float64
+	cov  *mat.SymDense
+}
+
+// newPass orders the coordinates with first outermost and the others after it, cyclically. The Cholesky
+// factor of the covariance in that order holds the conditional means and widths of each level given those
+// outside it.
+func newPass(p Problem, first int, g guess) *pass {
+	d := len(p.Lo)
+	q := &pass{dim: d, ref: g.ref, slots: 1}
+	cov := mat.NewSymDense(d, nil)
+	for l := range d {
+		i := (first + l) % d
+		q.order = append(q.order, i)
+		q.lo, q.hi, q.mean = append(q.lo, p.Lo[i]), append(q.hi, p.Hi[i]), append(q.mean, g.mean[i])
+		for m := range l + 1 {
+			cov.SetSym(l, m, g.cov.At(i, q.order[m]))
+		}
+	}
+	var chol mat.Cholesky
+	for jitter := 1e-12; !chol.Factorize(cov); jitter *= 100 { // a ridge without width, to rounding
+		for l := range d {
+			cov.SetSym(l, l, cov.At(l, l)*(1+jitter))
+		}
+	}
+	q.chol = new(mat.TriDense)
+	chol.LTo(q.chol)
+	q.guessScales()
+	return q
+}
+
+// guessScales takes the mass for a Gaussian of height 1.
+func (p *pass) guessScales() {
+	s := 1.0
+	for l := p.dim - 1; l >= 0; l-- {
+		s *= math.Min(math.Sqrt(2*math.Pi)*p.chol.At(l, l), p.hi[l]-p.lo[l])
+		p.scale[l][0] = s
+	}
+}
+
+// cuts returns the edges of the box of a level and, between them, the conditional mean ± 2 and ± 6
+// conditional standard deviations, given the coordinates outside: pieces on which the rule sees a Gaussian
+// to a relative 1e-8 at once. Cuts that would make a sliver are left out.
+func (w *worker) cuts(level int) []float64 {
+	var z [3]float64
+	var mean float64
+	for l := range level + 1 {
+		mean = w.mean[l]
+		for m := range l {
+			mean += w.chol.At(l, m) * z[m]
+		}
+		z[l] = (w.x[w.order[l]] - mean) / w.chol.At(l, l)
+	}
+	return cutsAt(w.cutbuf[level][:0], w.lo[level], w.hi[level], mean, w.chol.At(level, level))
+}
+
+func cutsAt(dst []float64, lo, hi, mean, sd float64) []float64 {
+	dst = append(dst, lo)
+	for _, k := range [...]float64{-6, -2, 2, 6} {
+		if c := mean + k*sd; c > dst[len(dst)-1]+sd/10 && c < hi-sd/10 {
+			dst = append(dst, c)
+		}
+	}
+	return append(dst, hi)
+}
+
+// Inner levels are integrated more tightly, so that the rule outside sees a smooth integrand.
+var tighter = [3]float64{1, 0.2, 0.05}
+
+// tolerance returns the absolute error allowed at a level for each slot, relative to the larger of what the
+// pieces hold and what integrals at this level amount to elsewhere: a line far out in the tail need not be
+// good to itself. For a class it is relative to that class.
+func (p *pass) tolerance(level int, pieces []core) (tol vec) {
+	var own vec
+	for i := range pieces {
+		for s := range p.slots {
+			own[s] += pieces[i].val[s]
+		}
+	}
+	total := math.Max(p.scale[level][0], own[0])
+	for s := range tol {
+		tol[s] = tighter[level] * p.relative * total
+	}
+	for s := 1; s < p.slots; s++ {
+		of := max(p.scale[level][s], own[s], p.rarest*total)
+		tol[s] = tighter[level] * p.relativeClass * of
+	}
+	return tol
+}
