@@ -1,99 +1,83 @@
 package sampler
 
-import (
-	"math"
-)
+import "math"
 
 // burnTimes is how many autocorrelation times are discarded at least. An
 // exponential relaxation has an integrated time of twice its decay time, so
 // that after five the walkers remember e⁻¹⁰ of their start.
 const burnTimes = 5
 
-// mserBatches is into how many batches BurnIn divides the record, and so the
-// resolution of the burn-in.
-const mserBatches = 200
+// mserTolerance is by how much the squared standard error may exceed its least
+// value. Where a stationary series has the least is chance, and often far in;
+// the first truncation that does almost as well discards less, and in tests on
+// AR(1) series still all of a transient.
+const mserTolerance = 0.2
 
-// BurnIn reads off a view of the whole chain how many steps to discard, for use
-// with [View.After]. It is the larger of
+// burnIn returns the number of rows to discard from the start of a chain: the
+// larger of
 //
-//   - the truncation that minimises the standard error of the mean of what
-//     remains, the "marginal standard error rule" of White (1997, Simulation 69,
-//     323), the largest over the log-density, every parameter and its squared
-//     distance from where it ended, each averaged over the ensemble. The squares
-//     and the log-density see a start that is too wide but centred;
+//   - the truncation of [mser], the largest over the log-density, every
+//     parameter and its squared distance from where it ended, each averaged over
+//     all ensembles. The squares and the log-density see a start that is
+//     centred but too wide;
 //   - five autocorrelation times of the slowest parameter after that,
 //
-// but at most half of the chain. A chain so short that the half decides does
-// not pass the tests of [Run].
-func BurnIn(v View) int {
-	all := make([]Draws, v.dim)
-	for i := range all {
-		all[i] = v.Coordinate(i)
-	}
-	times := func(i, drop int) float64 { return measure(all[i].after(drop)).tau }
-	return v.stepAt(burnRows(v.LogDensity(), all, times))
-}
-
-// stepAt returns the number of the last step of the first rows of a view.
-func (v View) stepAt(rows int) int {
-	return v.first + (rows-1)*v.spacing
-}
-
-// burnRows returns the number of rows to discard. tau(i, drop) is the
-// autocorrelation time of parameter i, in steps, after dropping rows.
-func burnRows(logp Draws, parameters []Draws, tau func(i, drop int) float64) int {
+// but at most half of the rows. A chain so short that the half decides is too
+// short to be called converged as well.
+func burnIn(logp Draws, parameters []Draws) int {
 	half := logp.steps() / 2
-	drop := truncation(logp)
+	drop := mser(stepMeans(logp))
 	for _, d := range parameters {
 		late, _, _ := meanVariance(d.after(half))
 		square := d.Map(func(x float64) float64 { return (x - late) * (x - late) })
-		drop = max(drop, truncation(d), truncation(square))
+		drop = max(drop, mser(stepMeans(d)), mser(stepMeans(square)))
 	}
 	longest := 0.0
-	for i := range parameters {
-		if t := tau(i, drop); !math.IsNaN(t) {
-			longest = max(longest, t)
+	for _, d := range parameters {
+		if tau := measure(d.after(drop)).tau; !math.IsNaN(tau) {
+			longest = max(longest, tau)
 		}
 	}
 	need := math.Ceil(burnTimes * longest / float64(logp.spacing))
-	if need > float64(half) {
-		return half
-	}
-	return max(drop, int(need))
+	return int(min(max(need, float64(drop)), float64(half)))
 }
 
-// truncation returns the largest, over the ensembles, of the rows to drop from
-// the series of ensemble means.
-func truncation(d Draws) int {
-	drop := 0
-	for _, s := range influence(d, 0, 1) {
-		drop = max(drop, mser(s))
-	}
-	return drop
-}
-
-// mser returns the d ≤ n/2 that minimises Σ(s − mean)²/(n−d)² over s[d:], in
-// whole batches of the series.
-func mser(s []float64) int {
-	batch := max(1, len(s)/mserBatches)
-	n := len(s) / batch
-	best, drop := math.Inf(1), 0
-	var count, mean, squares float64
-	// From the end, so that each batch updates the sums (Welford 1962).
-	for i := n - 1; i >= 0; i-- {
-		start := len(s) - (n-i)*batch
-		x := meanOf(s[start : start+batch])
-		count++
-		delta := x - mean
-		mean += delta / count
-		squares += delta * (x - mean)
-		if i <= n/2 && squares/(count*count) <= best {
-			best, drop = squares/(count*count), start
+// stepMeans returns the mean over all ensembles and walkers at each step.
+func stepMeans(d Draws) []float64 {
+	means := make([]float64, d.steps())
+	for _, series := range influence(d, 0, 1) {
+		for t, v := range series {
+			means[t] += v / float64(len(d.x))
 		}
 	}
-	// The rows before the first whole batch are no reason to drop anything.
-	if drop < batch {
-		return 0
+	return means
+}
+
+// mser truncates a series by the marginal standard error rule of White (1997,
+// Simulation 69, 323): the squared standard error that the rest s[d:] would have
+// if its values were independent, Σ(s − mean)²/(n−d)², is least where dropping
+// more loses more to the shorter series than it gains. It returns the first
+// d ≤ n/2 within mserTolerance of the least.
+func mser(s []float64) int {
+	rule := make([]float64, len(s))
+	least := math.Inf(1)
+	var count, mean, squares float64
+	// From the end, so that one pass gives all sums (Welford 1962, Technometrics
+	// 4, 419).
+	for i := len(s) - 1; i >= 0; i-- {
+		count++
+		delta := s[i] - mean
+		mean += delta / count
+		squares += delta * (s[i] - mean)
+		rule[i] = squares / (count * count)
+		if i <= len(s)/2 {
+			least = min(least, rule[i])
+		}
 	}
-	return drop
+	for i, r := range rule {
+		if r <= least*(1+mserTolerance) {
+			return i
+		}
+	}
+	return 0
 }

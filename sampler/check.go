@@ -15,7 +15,8 @@ const (
 // Check is the state of a run at one step: how far the chain has converged.
 type Check struct {
 	Step        int           // steps done
-	BurnIn      int           // steps to discard, see [BurnIn]
+	BurnIn      int           // steps to discard from the start, chosen from the chain
+	Sample      View          // the rest, thinned if that loses nothing: what to summarise
 	Parameters  []Convergence // one per parameter, after burn-in
 	Acceptance  float64       // fraction of proposals accepted
 	Evaluations int           // of the density, so far
@@ -54,45 +55,53 @@ func (c Check) RHat() float64 {
 	return worst
 }
 
-// assess measures the convergence of a chain and returns it with the part of
-// the chain after burn-in. It reads the record alone, so a restored chain is
-// judged like the original.
-func assess(c *Chain, s Settings) (Check, View) {
+// enoughRows is to how many steps a chain is thinned before it is judged and
+// summarised, at least. A chain that passes is some 25 autocorrelation times
+// long or more, so that neighbouring rows still repeat each other.
+const enoughRows = 1024
+
+// Assess measures the convergence of a chain, on at most s.Threads goroutines.
+// It reads the record alone, so a restored chain is judged like the original.
+func Assess(c *Chain, s Settings) Check {
 	v := c.View()
+	v = v.Thin(max(1, v.n/v.rowsFor(s.Effective)))
 	all := make([]Draws, v.dim)
-	found := make([]moments, v.dim)
 	each(v.dim, s.Threads, func(i int) { all[i] = v.Coordinate(i) })
-	drop := burnRows(v.LogDensity(), all, func(i, drop int) float64 {
-		return measure(all[i].after(drop)).tau
-	})
+	drop := burnIn(v.LogDensity(), all)
 	check := Check{
 		Step:        c.Steps(),
-		BurnIn:      v.stepAt(drop),
+		BurnIn:      v.first + (drop-1)*v.spacing,
+		Sample:      v.skip(drop),
 		Parameters:  make([]Convergence, v.dim),
 		Acceptance:  c.Acceptance(),
 		Evaluations: c.Evaluations(),
 	}
 	each(v.dim, s.Threads, func(i int) {
 		d := all[i].after(drop)
-		found[i] = measure(d)
-		check.Parameters[i] = Convergence{ESS: found[i].ess(), RHat: RHat(d), Tau: found[i].tau}
+		m := measure(d)
+		check.Parameters[i] = Convergence{ESS: m.ess(), RHat: RHat(d), Tau: m.tau}
 	})
-	rest := v.skip(drop)
-	check.Converged = check.passes(rest, s)
-	return check, rest
+	check.Converged = check.passes(s)
+	return check
+}
+
+// rowsFor is how many rows of a view hold some effective samples with room to
+// spare: eight times as many draws.
+func (v View) rowsFor(ess float64) int {
+	return max(enoughRows, int(8*ess/float64(len(v.x)*v.walkers)))
 }
 
 // passes applies the tests of convergence; the caller's own comes last because
 // it may cost more than all others.
-func (c Check) passes(rest View, s Settings) bool {
+func (c Check) passes(s Settings) bool {
 	if s.Effective <= 0 {
 		return false
 	}
-	length := float64(rest.Ensembles() * rest.Steps() * rest.Spacing())
+	length := float64(c.Sample.Ensembles() * c.Sample.Steps() * c.Sample.Spacing())
 	for _, p := range c.Parameters {
 		if !(p.ESS >= s.Effective && p.RHat < rhatLimit && length >= trustTimes*p.Tau) {
 			return false
 		}
 	}
-	return s.Enough == nil || s.Enough(rest)
+	return s.Enough == nil || s.Enough(c.Sample)
 }

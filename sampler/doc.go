@@ -10,8 +10,9 @@
 //     affine-invariant stretch move (one [Ensemble] each, in parallel) and
 //     appends every recorded step to a [Chain]. An [Observer] sees the new rows
 //     and the convergence at every [Check].
-//  3. A [View] is a part of the chain: after the burn-in that [BurnIn] reads
-//     off the chain itself, thinned if the caller wants. Nothing is copied.
+//  3. A [View] is a part of the chain; the [Check] of a run holds the one to
+//     summarise: after the burn-in, which is read off the chain itself, and
+//     thinned. Nothing is copied.
 //  4. [Draws] is one scalar along a view: a coordinate, or any function of the
 //     position.
 //  5. [Summarize] reduces draws to mean, standard deviation, quantiles,

@@ -21,7 +21,7 @@ func order(x []float64) []uint32 {
 		}
 	}
 	for p := range count {
-		place(&count[p])
+		offsets(&count[p])
 		for _, e := range from {
 			at := &count[p][e.key>>(p*digit)&(1<<digit-1)]
 			to[*at] = e
@@ -36,8 +36,8 @@ func order(x []float64) []uint32 {
 	return index
 }
 
-// place turns counts of digits into the place of the first of each.
-func place(count *[1 << 11]uint32) {
+// offsets turns counts of digits into the place of the first of each.
+func offsets(count *[1 << 11]uint32) {
 	sum := uint32(0)
 	for i, n := range count {
 		count[i] = sum

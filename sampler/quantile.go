@@ -17,7 +17,7 @@ type ordered struct {
 // sorted puts draws in order, those without weight left out. Its x is empty if
 // there are none, or one is NaN.
 func sorted(d Draws) ordered {
-	var x, w []float64
+	x, w := make([]float64, 0, d.Len()), make([]float64, 0, d.Len())
 	total, valid := 0.0, true
 	d.each(func(v, weight float64) {
 		x = append(x, v)

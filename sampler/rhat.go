@@ -10,7 +10,7 @@ import (
 // more than twice as many it takes an even selection. R-hat compares
 // distributions whose neighbouring steps are correlated: the steps between add
 // next to nothing to it but cost as much.
-const rhatSteps = 100
+const rhatSteps = 32
 
 // RHat returns the rank-normalised split R-hat of Vehtari et al. (2021,
 // Bayesian Anal. 16, 667): the larger of R-hat of the draws and R-hat of their

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 
+	"gonum.org/v1/gonum/mat"
 	"gonum.org/v1/gonum/stat/distuv"
 )
 
@@ -37,34 +38,47 @@ func Scatter(d Density, best, lo, hi []float64, walkers int, seed uint64, ensemb
 	var s stream
 	s.seek(seed, ensemble, 0)
 	x := make([]float64, 0, walkers*dim)
-	v := make([]float64, dim)
 	for range walkers {
-		for i := range v {
-			v[i] = overDispersion * s.normal()
-		}
-		y := displaced(best, root, v)
-		for tries := 0; !inside(y, lo, hi) || !(d(y) >= lowest); tries++ {
-			if tries == 200 {
-				return nil, fmt.Errorf("sampler: found no finite density near the start %v", best)
-			}
-			for i := range v {
-				v[i] *= 0.8
-			}
-			y = displaced(best, root, v)
+		y := standing(d, best, lo, hi, root, lowest, &s)
+		if y == nil {
+			return nil, fmt.Errorf("sampler: found no finite density near the start %v", best)
 		}
 		x = append(x, y...)
 	}
 	return x, nil
 }
 
-// inside reports whether x is in a box.
-func inside(x, lo, hi []float64) bool {
-	for i := range x {
-		if !(x[i] >= lo[i] && x[i] <= hi[i]) {
-			return false
+// standing draws a position at which the density is not too low: a direction, and
+// the largest of shrinking distances along it. Directions that leave the box
+// are reflected at its sides; one that leads out of the density's own domain at
+// once is given up for another. nil if none of many is any good.
+func standing(d Density, best, lo, hi []float64, root *mat.TriDense, lowest float64, s *stream) []float64 {
+	v := make([]float64, len(best))
+	for range 1000 {
+		for i := range v {
+			v[i] = overDispersion * s.normal()
+		}
+		for range 30 {
+			y := displaced(best, root, v)
+			reflect(y, lo, hi)
+			if d(y) >= lowest {
+				return y
+			}
+			for i := range v {
+				v[i] *= 0.7
+			}
 		}
 	}
-	return true
+	return nil
+}
+
+// reflect folds x into a box as by mirrors at its sides.
+func reflect(x, lo, hi []float64) {
+	for i := range x {
+		side := hi[i] - lo[i]
+		t := math.Mod(math.Abs(x[i]-lo[i]), 2*side)
+		x[i] = min(lo[i]+min(t, 2*side-t), hi[i])
+	}
 }
 
 // normal returns a standard normal number, by inversion: one number from the
