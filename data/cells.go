@@ -34,7 +34,7 @@ func (r rule) parse(cell string) (float64, error) {
 	found, do := quoted(cell), "correct the cell, or leave the row out with a cut"
 	switch {
 	case ok:
-		found = cell
+		found = clip(cell)
 	case cell == "":
 		found = "an empty cell"
 	case strings.Count(cell, ",") == 1:

@@ -4,6 +4,7 @@ import (
 	"cmp"
 	"fmt"
 	"math"
+	"math/rand/v2"
 	"slices"
 	"strings"
 
@@ -51,7 +52,7 @@ func Factorised(file string, m *Matrix, role Role, s Selection, err []float64) (
 	}
 	var chol mat.Cholesky
 	if !chol.Factorize(c) {
-		return nil, nil, notPositive(file, c, s.row)
+		return nil, nil, notPositive(file, c, s.Label)
 	}
 	return c, &chol, nil
 }
@@ -116,28 +117,93 @@ func invert(file string, m *Matrix) (*mat.SymDense, error) {
 	return c, nil
 }
 
-// notPositive names the smallest eigenvalue and the rows that make up most of its eigenvector. Only now is an
-// eigen-decomposition worth its price.
-func notPositive(file string, c *mat.SymDense, row func(int) string) error {
-	var eigen mat.EigenSym
-	if !eigen.Factorize(c, true) {
-		return &Error{File: file, Message: message("a matrix without eigenvalues", "a covariance", "check it")}
-	}
-	smallest := eigen.Values(nil)[0] // ascending
-	var vectors mat.Dense
-	eigen.VectorsTo(&vectors)
-	v := mat.Col(nil, 0, &vectors)
+// notPositive names the smallest eigenvalue and the rows that make up most of its eigenvector.
+func notPositive(file string, c *mat.SymDense, label func(int) string) error {
+	value, vector := smallestEigen(c)
 	var names []string
-	for _, k := range dominant(v) {
-		names = append(names, row(k))
+	for _, k := range dominant(vector) {
+		names = append(names, label(k))
 	}
 	return &Error{File: file, Message: message(
-		fmt.Sprintf("the smallest eigenvalue %s, in the direction of %s", short(smallest), strings.Join(names, " and ")),
+		fmt.Sprintf("the smallest eigenvalue %s, in the direction of %s", short(value), strings.Join(names, " and ")),
 		"a positive definite matrix", "check these rows")}
 }
 
+// smallestEigen is the smallest eigenvalue λ of a symmetric matrix A and its eigenvector, by inverse iteration
+// with A + sI: a full decomposition of 1590 rows takes gonum 22 s, this some ten Cholesky factorisations.
+//
+// The shift closes in on −λ from above, where A + sI is positive definite, starting from the bound that
+// Gershgorin's discs give. The Rayleigh quotient of the iterate is never below λ and bounds −λ from below
+// (Parlett 1998, The Symmetric Eigenvalue Problem, §§1.6, 4.6).
+func smallestEigen(a *mat.SymDense) (float64, *mat.VecDense) {
+	n := a.SymmetricDim()
+	scale, discs := gershgorin(a)
+	v, w := startVector(n), mat.NewVecDense(n, nil)
+	hi := 1e-12*scale - discs
+	lo := math.Inf(-1)
+	var value float64
+	for s := hi; ; {
+		if chol, ok := shifted(a, s); ok {
+			hi = s
+			for range 3 {
+				_ = chol.SolveVecTo(w, v) // close to singular is what is wanted
+				v.ScaleVec(1/mat.Norm(w, 2), w)
+			}
+			w.MulVec(a, v)
+			value = mat.Dot(v, w)
+			w.AddScaledVec(w, -value, v)
+			if mat.Norm(w, 2) <= 1e-9*scale {
+				return value, v
+			}
+			lo = max(lo, -value)
+		} else {
+			lo = s
+		}
+		if s = lo + (hi-lo)/8; !(s > lo && s < hi) {
+			return value, v
+		}
+	}
+}
+
+// gershgorin is the largest sum of absolute values in a row and a lower bound of the eigenvalues.
+func gershgorin(a *mat.SymDense) (scale, discs float64) {
+	discs = math.Inf(1)
+	n := a.SymmetricDim()
+	for i := range n {
+		sum := 0.0
+		for j := range n {
+			sum += math.Abs(a.At(i, j))
+		}
+		scale = max(scale, sum)
+		discs = min(discs, a.At(i, i)-(sum-math.Abs(a.At(i, i))))
+	}
+	return scale, discs
+}
+
+// startVector is random, so as not to be orthogonal to an eigenvector, and always the same.
+func startVector(n int) *mat.VecDense {
+	rng := rand.New(rand.NewPCG(1, uint64(n)))
+	v := mat.NewVecDense(n, nil)
+	for i := range n {
+		v.SetVec(i, rng.NormFloat64())
+	}
+	return v
+}
+
+func shifted(a *mat.SymDense, s float64) (*mat.Cholesky, bool) {
+	n := a.SymmetricDim()
+	b := mat.NewSymDense(n, nil)
+	b.CopySym(a)
+	for i := range n {
+		b.SetSym(i, i, a.At(i, i)+s)
+	}
+	var chol mat.Cholesky
+	return &chol, chol.Factorize(b)
+}
+
 // dominant is the indices of up to three components of v that stand out, largest first.
-func dominant(v []float64) []int {
+func dominant(vector *mat.VecDense) []int {
+	v := vector.RawVector().Data
 	order := make([]int, len(v))
 	for i := range order {
 		order[i] = i

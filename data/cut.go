@@ -47,7 +47,7 @@ func newCut(text string, h headings) (*cut, error) {
 }
 
 // cutError puts the first line of what the expression library says into an Error.
-func cutError(name, text string, err error) error {
+func cutError(name, text string, err error) *Error {
 	said := err.Error()
 	var e *file.Error
 	if errors.As(err, &e) {
@@ -88,41 +88,57 @@ func (v *columnVisitor) Visit(n *ast.Node) {
 // apply evaluates the cut on every row.
 func (c *cut) apply(t *table) (Selection, error) {
 	s := Selection{File: t.file, Read: len(t.lines)}
-	values := make(map[string]func(row int) any, len(c.columns))
-	env := make(map[string]any, len(c.columns))
-	for _, i := range c.columns {
-		values[t.names[i]] = t.columns[i].typed()
-		env[t.names[i]] = values[t.names[i]](0)
-	}
-	programs, err := c.compile(t.file, env)
-	if err != nil {
-		return s, err
-	}
 	for _, condition := range c.conditions {
 		s.Cuts = append(s.Cuts, CutCount{Expression: condition})
 	}
+	e := newRowEnv(c, t)
+	programs, err := c.compile(t.file, e.values)
+	if err != nil {
+		return s, err
+	}
 	var machine vm.VM
-	for row := range t.lines {
-		for name, value := range values {
-			env[name] = value(row)
-		}
-		failed, err := firstFalse(&machine, programs, env)
+	for row, line := range t.lines {
+		e.set(row)
+		failed, err := firstFalse(&machine, programs, e.values)
 		if err != nil {
-			e := cutError(t.file, c.text, err).(*Error)
-			e.Line = t.lines[row]
-			return s, e
+			wrong := cutError(t.file, c.text, err)
+			wrong.Line = line
+			return s, wrong
 		}
 		if failed < len(programs) {
 			s.Cuts[failed].Removed++
 			continue
 		}
 		s.Kept = append(s.Kept, row)
-		s.Lines = append(s.Lines, t.lines[row])
+		s.Lines = append(s.Lines, line)
 	}
 	if len(s.Kept) == 0 {
 		return s, c.nothing(s)
 	}
 	return s, nil
+}
+
+// rowEnv is the values of the cut's columns in one row.
+type rowEnv struct {
+	values  map[string]any
+	names   []string
+	columns []func(row int) any
+}
+
+func newRowEnv(c *cut, t *table) *rowEnv {
+	e := &rowEnv{values: make(map[string]any, len(c.columns))}
+	for _, i := range c.columns {
+		e.names = append(e.names, t.names[i])
+		e.columns = append(e.columns, t.columns[i].typed())
+	}
+	e.set(0)
+	return e
+}
+
+func (e *rowEnv) set(row int) {
+	for i, name := range e.names {
+		e.values[name] = e.columns[i](row)
+	}
 }
 
 // compile checks the types of every condition and compiles it.

@@ -58,12 +58,14 @@ func failed(file string, err error) error {
 }
 
 // quoted shows a piece of a file in a message: quoted, on one line, and never longer than a few words.
-func quoted(s string) string {
+func quoted(s string) string { return strconv.Quote(clip(s)) }
+
+func clip(s string) string {
 	const most = 40
 	if r := []rune(s); len(r) > most {
-		s = string(r[:most]) + "…"
+		return string(r[:most]) + "…"
 	}
-	return strconv.Quote(s)
+	return s
 }
 
 // short shows a value as a user would write it.

@@ -23,6 +23,8 @@ func Decompress(r io.Reader) (io.Reader, error) {
 // longestLine bounds the memory a file without line ends can cost.
 const longestLine = 1 << 20
 
+const byteOrderMark = "\xef\xbb\xbf" // of UTF-8
+
 // text returns r unpacked and without its byte-order mark, refusing what is not text in an ASCII-compatible
 // encoding.
 func text(r io.Reader, file string) (*bufio.Reader, error) {
@@ -36,9 +38,8 @@ func text(r io.Reader, file string) (*bufio.Reader, error) {
 		return nil, failed(file, err)
 	}
 	switch {
-	case bytes.HasPrefix(head, []byte("\xef\xbb\xbf")):
-		_, err = b.Discard(3)
-		return b, err
+	case bytes.HasPrefix(head, []byte(byteOrderMark)):
+		_, _ = b.Discard(len(byteOrderMark)) // it is in the buffer
 	case bytes.HasPrefix(head, []byte("\xff\xfe")), bytes.HasPrefix(head, []byte("\xfe\xff")):
 		return nil, &Error{File: file, Message: message("text in UTF-16", "UTF-8", "save it again as UTF-8")}
 	case bytes.IndexByte(head, 0) >= 0:

@@ -14,6 +14,7 @@ const blank = ' ' // stands for any run of blanks and tabs
 type layout struct {
 	separator rune
 	header    []string // nil: the first row of body is the header
+	surplus   []string // the last name of a header that has one more than the rows have cells
 	line      int      // of the header
 	first     int      // line at which body starts
 	body      io.Reader
@@ -21,34 +22,32 @@ type layout struct {
 
 // look reads up to the second line that is neither blank nor a comment, decides, and puts what it read back.
 func look(b *bufio.Reader, file string) (layout, error) {
-	var content []string
-	var replay bytes.Buffer
-	var l layout
-	comment, commentLine := "", 0
-	for n := 1; len(content) < 2; n++ {
+	var (
+		l       layout
+		content []string
+		replay  bytes.Buffer
+		comment string // the last before the first row
+		at      int    // its line
+	)
+	for n, ended := 1, false; len(content) < 2 && !ended; n++ {
 		line, err := b.ReadSlice('\n')
-		if err == bufio.ErrBufferFull {
+		switch ended = err == io.EOF; {
+		case err == bufio.ErrBufferFull:
 			return l, tooLong(file, n)
-		}
-		if err != nil && err != io.EOF {
+		case err != nil && !ended:
 			return l, failed(file, err)
 		}
 		s := strings.TrimSpace(string(line))
-		switch {
-		case s == "":
-		case s[0] == '#' && l.first == 0:
-			comment, commentLine = s, n
-		case s[0] != '#':
-			content = append(content, s)
-			if l.first == 0 {
+		isComment := strings.HasPrefix(s, "#")
+		if s != "" && !isComment {
+			if content = append(content, s); len(content) == 1 {
 				l.first = n
 			}
 		}
-		if l.first > 0 {
+		if len(content) > 0 {
 			replay.Write(line)
-		}
-		if err == io.EOF {
-			break
+		} else if isComment {
+			comment, at = s, n
 		}
 	}
 	if len(content) == 0 {
@@ -56,7 +55,7 @@ func look(b *bufio.Reader, file string) (layout, error) {
 	}
 	l.body = io.MultiReader(&replay, b)
 	l.separator = separator(content)
-	return l, l.findHeader(file, content[0], comment, commentLine)
+	return l, l.findHeader(file, content[0], comment, at)
 }
 
 func empty(file string) error {
@@ -107,7 +106,8 @@ func split(line string, sep rune) []string {
 	return fields
 }
 
-// findHeader decides between a header row and a header in the comment before the first row.
+// findHeader decides between a header row and a header in the comment before the first row. The tables of
+// Scolnic et al. 2018 name one column in such a comment, the last, that their rows do not have.
 func (l *layout) findHeader(file, first, comment string, commentLine int) error {
 	row := split(first, l.separator)
 	l.line = l.first
@@ -115,8 +115,9 @@ func (l *layout) findHeader(file, first, comment string, commentLine int) error 
 		return nil
 	}
 	if comment != "" && commentLine == l.first-1 {
-		if h := split(strings.TrimLeft(comment, "# \t"), l.separator); len(h) == len(row) {
-			l.header, l.line = h, commentLine
+		h := split(strings.TrimLeft(comment, "# \t"), l.separator)
+		if n := len(h) - len(row); n == 0 || n == 1 {
+			l.header, l.line, l.surplus = h[:len(row)], commentLine, h[len(row):]
 			return nil
 		}
 	}

@@ -55,6 +55,9 @@ func ReadMatrix(r io.Reader, file string) (*Matrix, error) {
 	case bytes.HasPrefix(head, []byte("PK\x03\x04")):
 		return readNPZ(b, file)
 	}
+	if bytes.HasPrefix(head, []byte(byteOrderMark)) {
+		_, _ = b.Discard(len(byteOrderMark)) // it is in the buffer
+	}
 	return readMatrixText(b, file)
 }
 

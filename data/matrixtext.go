@@ -10,44 +10,47 @@ import (
 // the first row, unless the lines do not fit that.
 func readMatrixText(r io.Reader, file string) (*Matrix, error) {
 	s := newScanner(r, file)
-	first, err := s.takeLine(nil)
+	first, err := s.takeLine(math.MaxInt)
 	if err != nil {
 		return nil, err
 	}
 	if len(first) == 0 {
 		return nil, &Error{File: file, Message: message("an empty file", "a matrix", "check that it was written completely")}
 	}
-	second, err := s.takeLine(nil)
+	second, err := s.takeLine(len(first) + 1)
 	if err != nil {
 		return nil, err
 	}
-	n, leading := size(first, len(second))
-	s.pending = append(first, second...)
-	if leading {
-		s.pending = s.pending[1:]
+	s.takeBack(second...)
+	if n, leading := size(first, len(second)); leading {
+		s.takeBack(first[1:]...)
 		return readFlowing(s, n)
 	}
+	s.takeBack(first...)
 	return readRows(s, len(first))
 }
 
 // size tells from the first line, and the length of the second, whether the first number is the size of the
-// matrix; if not, the first line is its first row.
+// matrix (0 if it cannot be one); if not, the first line is its first row.
 func size(first []token, second int) (n int, leading bool) {
 	v := first[0].value
 	whole := v >= 1 && v <= 1<<20 && v == math.Trunc(v)
+	if whole {
+		n = int(v)
+	}
 	switch {
 	case second == 0:
-		return int(v), whole && len(first) == 1+int(v)*int(v)
+		return n, whole && len(first) == 1+n*n
 	case len(first) == 1:
-		return int(v), true
+		return n, true
 	}
-	return int(v), whole && second != len(first)
+	return n, whole && second != len(first)
 }
 
 // readFlowing reads n² numbers, whatever their lines.
 func readFlowing(s *scanner, n int) (*Matrix, error) {
 	if n < 1 {
-		return nil, &Error{File: s.file, Line: 1, Message: message("a first line that is no size", "the number of rows, or a whole row",
+		return nil, &Error{File: s.file, Line: 1, Message: message("a first line of one number that is no size", "the number of rows, or a whole row",
 			"write the number of rows first")}
 	}
 	b := &builder{file: s.file, n: n}

@@ -1,20 +1,17 @@
 package data
 
-import (
-	"io"
-	"math"
-)
+import "io"
 
 // scanner reads numbers from text at the speed of memory: it parses them where they lie in its buffer.
 type scanner struct {
-	file     string
-	r        io.Reader
-	buf      []byte // what has been read and not yet used
-	space    []byte // the array behind buf
-	line     int
-	ended    bool
-	pending  []token
-	lookback bool
+	file    string
+	r       io.Reader
+	space   []byte  // all of the buffer
+	buf     []byte  // the part of it that has been read and not yet used
+	pending []token // taken back, to be returned first
+	line    int
+	ended   bool
+	comment bool // the line is a comment from here on
 }
 
 // token is a number and the line it stands in.
@@ -23,7 +20,7 @@ type token struct {
 	line  int
 }
 
-// longestNumber bounds what a number may take in the file.
+// longestNumber bounds the bytes of a number; the buffer holds many such.
 const longestNumber = 1 << 10
 
 func newScanner(r io.Reader, file string) *scanner {
@@ -41,7 +38,7 @@ func (s *scanner) next() (token, error) {
 		return token{}, err
 	}
 	end := s.tokenEnd()
-	if end == len(s.buf) && !s.ended {
+	for end == len(s.buf) && !s.ended && end <= longestNumber {
 		if err := s.fill(); err != nil {
 			return token{}, err
 		}
@@ -50,10 +47,14 @@ func (s *scanner) next() (token, error) {
 	word := s.buf[:end]
 	v, ok := parse(word)
 	if !ok || end > longestNumber {
-		return token{}, &Error{File: s.file, Line: s.line, Message: message(quoted(string(word)), "a number", "correct the matrix; it has no header")}
+		return token{}, s.notNumber(word)
 	}
 	s.buf = s.buf[end:]
 	return token{v, s.line}, nil
+}
+
+func (s *scanner) notNumber(word []byte) error {
+	return &Error{File: s.file, Line: s.line, Message: message(quoted(string(word)), "a number", "correct the matrix; it has no header")}
 }
 
 // kinds of bytes
@@ -74,17 +75,16 @@ var kinds = func() (k [256]uint8) {
 
 // skip moves to the start of the next number.
 func (s *scanner) skip() error {
-	comment := false
 	for {
 		for i, c := range s.buf {
 			switch kinds[c] {
 			case lineEnd:
 				s.line++
-				comment = false
+				s.comment = false
 			case commenting:
-				comment = true
+				s.comment = true
 			case inNumber:
-				if !comment {
+				if !s.comment {
 					s.buf = s.buf[i:]
 					return nil
 				}
@@ -113,13 +113,9 @@ func (s *scanner) tokenEnd() int {
 // fill moves what is left to the front and reads more.
 func (s *scanner) fill() error {
 	n := copy(s.space, s.buf)
-	if n > longestNumber {
-		s.ended = true // the token is refused whatever follows
-		return nil
-	}
-	m, err := io.ReadFull(s.r, s.space[n:])
+	m, err := s.r.Read(s.space[n:])
 	s.buf = s.space[:n+m]
-	if err == io.EOF || err == io.ErrUnexpectedEOF && !s.truncated() {
+	if err == io.EOF {
 		s.ended = true
 		return nil
 	}
@@ -129,28 +125,25 @@ func (s *scanner) fill() error {
 	return nil
 }
 
-// truncated tells a gzip stream that ends early from a file that ends.
-func (s *scanner) truncated() bool {
-	_, err := s.r.Read(make([]byte, 1))
-	return err != io.EOF
-}
-
-// takeLine appends the numbers of the line in which the next number stands.
-func (s *scanner) takeLine(line []token) ([]token, error) {
-	for {
+// takeLine returns the numbers of the line in which the next number stands, at most most of them.
+func (s *scanner) takeLine(most int) ([]token, error) {
+	var line []token
+	for len(line) < most {
 		t, err := s.next()
 		if err == io.EOF {
-			return line, nil
+			break
 		}
 		if err != nil {
 			return nil, err
 		}
 		if len(line) > 0 && t.line != line[0].line {
-			s.pending = append(s.pending, t)
-			return line, nil
+			s.takeBack(t)
+			break
 		}
 		line = append(line, t)
 	}
+	return line, nil
 }
 
-var _ = math.Inf
+// takeBack puts numbers before the next.
+func (s *scanner) takeBack(t ...token) { s.pending = append(t, s.pending...) }

@@ -13,6 +13,9 @@ type Selection struct {
 	Lines []int      // line of the file of every kept row
 	Cuts  []CutCount // in the order of the expression
 
+	// Warnings are doubts about the file that do not keep it from being read, to be shown with the result.
+	Warnings []error
+
 	names []string // of the kept rows, where the table has them: for messages
 }
 
@@ -23,8 +26,8 @@ type CutCount struct {
 	Removed    int
 }
 
-// row names the k-th kept row in a message.
-func (s Selection) row(k int) string {
+// Label names the k-th kept row for a person: by its name where the table has names, file and line.
+func (s Selection) Label(k int) string {
 	if k >= len(s.Lines) {
 		return fmt.Sprintf("row %d", k+1)
 	}

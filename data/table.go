@@ -14,6 +14,7 @@ type table struct {
 	columns []*column      // by place in the header; nil where not used
 	lines   []int          // of every row
 	places  map[string]int // our name → place in the header
+	warning error          // about the header
 }
 
 // column is the text of one column, cell after cell.
@@ -46,6 +47,10 @@ func open(r io.Reader, file string) (*table, error) {
 		return nil, err
 	}
 	t := &table{headings: headings{file, l.line, l.header}, rows: l.rows(file)}
+	if len(l.surplus) > 0 {
+		t.warning = &Error{file, l.line, l.surplus[0], message(count(len(l.header)+1, "name"),
+			fmt.Sprintf("%d as the rows have cells", len(l.header)), "the last is ignored; check that the others stand over their columns")}
+	}
 	if t.names == nil {
 		row, line, err := t.rows.read()
 		if err == io.EOF {
@@ -129,6 +134,9 @@ func read(r io.Reader, file string, o Options, fields func(headings) ([]field, e
 		return nil, Selection{}, err
 	}
 	s, err := c.apply(t)
+	if t.warning != nil {
+		s.Warnings = append(s.Warnings, t.warning)
+	}
 	return t, s, err
 }
 
