@@ -1,34 +1,139 @@
+// Omen turns measured distances into constraints on Ωm, ΩΛ and H0 and into the
+// probability of each fate of the universe.
+//
+//	omen new DIR                    begin: a commented run file that works
+//	omen fit RUN.toml               constraints and fates from a run file
+//	omen inspect RUN.toml           what was read, and what looks odd in it
+//	omen fate --Om 0.3 --OL 0.7     what one universe does
+//
+// Every command explains itself and gives an example with --help.
+//
+// Exit status: 0 done; 1 it failed while running; 2 a mistake in the command
+// line, a run file or a table; 3 interrupted, with what there is kept.
 package main
 
 import (
-	_ "github.com/expr-lang/expr"
-	_ "github.com/gocarina/gocsv"
-	_ "github.com/google/go-cmp/cmp"
-	_ "github.com/pelletier/go-toml/v2"
-	_ "github.com/pelletier/go-toml/v2/unstable"
-	_ "github.com/sbinet/npyio"
-	_ "github.com/sbinet/npyio/npy"
-	_ "github.com/sbinet/npyio/npz"
-	_ "github.com/schollz/progressbar/v3"
-	_ "github.com/spf13/pflag"
-	_ "golang.org/x/sys/unix"
-	_ "golang.org/x/term"
-	_ "gonum.org/v1/gonum/diff/fd"
-	_ "gonum.org/v1/gonum/integrate/quad"
-	_ "gonum.org/v1/gonum/mat"
-	_ "gonum.org/v1/gonum/mathext"
-	_ "gonum.org/v1/gonum/optimize"
-	_ "gonum.org/v1/gonum/stat"
-	_ "gonum.org/v1/gonum/stat/distuv"
-	_ "gonum.org/v1/plot"
-	_ "gonum.org/v1/plot/cmpimg"
-	_ "gonum.org/v1/plot/font/liberation"
-	_ "gonum.org/v1/plot/plotter"
-	_ "gonum.org/v1/plot/vg/draw"
-	_ "gonum.org/v1/plot/vg/vgimg"
-	_ "gonum.org/v1/plot/vg/vgpdf"
-	_ "gonum.org/v1/plot/vg/vgsvg"
-	_ "pgregory.net/rapid"
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"os/signal"
+	"strings"
+	"syscall"
+
+	"omen/cmd/omen/internal/runfile"
+	"omen/data"
+
+	"github.com/spf13/pflag"
 )
 
-func main() {}
+const help = `omen: from measured distances to constraints on the universe and its fate.
+
+  omen new DIR                    begin: a commented run file that works
+  omen fit RUN.toml               constraints and fates from a run file
+  omen inspect RUN.toml           what was read, and what looks odd in it
+  omen fate --Om 0.3 --OL 0.7     what one universe does
+
+Every command explains itself with --help.
+`
+
+func main() {
+	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
+	defer stop()
+	err := run(ctx, os.Args[1:], os.Stdout, os.Stderr)
+	if err != nil && err.Error() != "" {
+		fmt.Fprintln(os.Stderr, "omen:", err)
+	}
+	os.Exit(status(err))
+}
+
+// run is the whole program but for the process around it.
+func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
+	if len(args) == 0 {
+		fmt.Fprint(stderr, help)
+		return usagef("name a command, for example: omen fit RUN.toml")
+	}
+	switch rest := args[1:]; args[0] {
+	case "fit":
+		return runFit(ctx, rest, stdout, stderr)
+	case "fate":
+		return runFate(rest, stdout)
+	case "inspect":
+		return runInspect(rest, stdout)
+	case "new":
+		return runNew(rest, stdout)
+	case "help", "--help", "-h":
+		return runHelp(ctx, rest, stdout, stderr)
+	case "version", "--version":
+		fmt.Fprintln(stdout, "omen", version())
+		return nil
+	}
+	commands := []string{"fit", "fate", "inspect", "new", "help", "version"}
+	return usagef("unknown command %q; the nearest is %q (known: %s)", args[0], data.Nearest(args[0], commands), strings.Join(commands, ", "))
+}
+
+func runHelp(ctx context.Context, args []string, stdout, stderr io.Writer) error {
+	if len(args) == 0 || args[0] == "help" {
+		fmt.Fprint(stdout, help)
+		return nil
+	}
+	return run(ctx, []string{args[0], "--help"}, stdout, stderr)
+}
+
+// usageError is a mistake in the command line.
+type usageError struct{ msg string }
+
+func (e *usageError) Error() string { return e.msg }
+
+func usagef(format string, args ...any) error {
+	return &usageError{fmt.Sprintf(format, args...)}
+}
+
+// errUnfinished ends a run that was interrupted and kept what there was.
+var errUnfinished = errors.New("interrupted: the result is that of an unfinished run")
+
+// status is the exit status of an error; see the package comment.
+func status(err error) int {
+	var usage *usageError
+	var table *data.Error
+	var file *runfile.Error
+	switch {
+	case err == nil:
+		return 0
+	case errors.As(err, &usage), errors.As(err, &table), errors.As(err, &file):
+		return 2
+	case errors.Is(err, errUnfinished):
+		return 3
+	}
+	return 1
+}
+
+// newFlags returns an empty flag set that prints help and an example.
+func newFlags(name, text string) *pflag.FlagSet {
+	f := pflag.NewFlagSet(name, pflag.ContinueOnError)
+	f.SortFlags = false
+	f.SetOutput(io.Discard)
+	f.Usage = func() {}
+	f.SetInterspersed(true)
+	f.BoolP("help", "h", false, "explain the command")
+	f.Lookup("help").Hidden = true
+	f.SetAnnotation("help", "text", []string{text})
+	return f
+}
+
+// parse reads the flags and checks the number of arguments. It reports done
+// when it has printed the help instead.
+func parse(f *pflag.FlagSet, args []string, stdout io.Writer, want int) (done bool, err error) {
+	if err := f.Parse(args); err != nil {
+		return false, usagef("%s: %v; see omen %s --help", f.Name(), err, f.Name())
+	}
+	if asked, _ := f.GetBool("help"); asked {
+		fmt.Fprintf(stdout, "%s\n%s", f.Lookup("help").Annotations["text"][0], f.FlagUsages())
+		return true, nil
+	}
+	if want >= 0 && f.NArg() != want {
+		return false, usagef("%s: expected %d argument(s), found %d; see omen %s --help", f.Name(), want, f.NArg(), f.Name())
+	}
+	return false, nil
+}

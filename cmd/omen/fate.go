@@ -1,0 +1,248 @@
+package main
+
+import (
+	"encoding/json"
+	"fmt"
+	"io"
+	"math"
+	"strconv"
+	"strings"
+
+	"omen/model"
+
+	"github.com/spf13/pflag"
+)
+
+const fateHelp = `omen fate says what one universe does: its fate, its age, its distances.
+
+  omen fate --Om 0.3 --OL 0.7
+  omen fate --Om 0.3 --w0 -1.1 --H0 70 --z 0.5,1,2 --json
+
+Distances are in Mpc and times in Gyr. Without --OL the universe is flat.
+`
+
+// fateOptions are the flags of omen fate.
+type fateOptions struct {
+	u         model.Universe
+	radiation string
+	z         []float64
+	asJSON    bool
+}
+
+func fateFlags(o *fateOptions) *pflag.FlagSet {
+	f := newFlags("fate", fateHelp)
+	f.Float64Var(&o.u.Om, "Om", math.NaN(), "density parameter of matter today")
+	f.Float64Var(&o.u.OL, "OL", math.NaN(), "density parameter of dark energy today (without it: flat)")
+	f.Float64Var(&o.u.H0, "H0", 70, "Hubble constant, km/s/Mpc")
+	f.Float64Var(&o.u.W0, "w0", -1, "dark-energy equation of state today")
+	f.Float64Var(&o.u.Wa, "wa", 0, "its change: w(a) = w0 + wa (1-a)")
+	f.StringVar(&o.radiation, "Or", "0", "density parameter of radiation today, or from-temperature")
+	f.Float64SliceVar(&o.z, "z", []float64{0.5, 1, 2, 3}, "redshifts for the table of distances")
+	f.BoolVar(&o.asJSON, "json", false, "write JSON")
+	return f
+}
+
+func runFate(args []string, stdout io.Writer) error {
+	var o fateOptions
+	if done, err := parse(fateFlags(&o), args, stdout, 0); done || err != nil {
+		return err
+	}
+	if err := o.complete(); err != nil {
+		return err
+	}
+	report := destiny(o.u, o.z)
+	if o.asJSON {
+		enc := json.NewEncoder(stdout)
+		enc.SetIndent("", "  ")
+		return enc.Encode(report)
+	}
+	return report.write(stdout)
+}
+
+// complete fills in what the flags left to be decided and checks them.
+func (o *fateOptions) complete() error {
+	if math.IsNaN(o.u.Om) {
+		return usagef("--Om is missing; write for example omen fate --Om 0.3 --OL 0.7")
+	}
+	if o.u.Om < 0 {
+		return usagef("--Om %g: matter cannot have a negative density", o.u.Om)
+	}
+	if !(o.u.H0 > 0) || math.IsInf(o.u.H0, 0) {
+		return usagef("--H0 %g: expected a positive number of km/s/Mpc", o.u.H0)
+	}
+	if o.u.H0 < 10 {
+		return usagef("--H0 %g: expected km/s/Mpc; this looks like h = H0/100, write --H0 %g", o.u.H0, 100*o.u.H0)
+	}
+	if err := o.setRadiation(); err != nil {
+		return err
+	}
+	if math.IsNaN(o.u.OL) {
+		o.u.OL = 1 - o.u.Om - o.u.Or
+	}
+	for _, z := range o.z {
+		if !(z > 0) || math.IsInf(z, 0) {
+			return usagef("--z %g: expected redshifts above 0", z)
+		}
+	}
+	for _, v := range []float64{o.u.Om, o.u.OL, o.u.W0, o.u.Wa} {
+		if math.IsInf(v, 0) || math.IsNaN(v) {
+			return usagef("expected finite numbers, found %g", v)
+		}
+	}
+	return nil
+}
+
+func (o *fateOptions) setRadiation() error {
+	if o.radiation == "from-temperature" {
+		o.u.Or = model.RadiationFromTemperature(o.u.H0)
+		return nil
+	}
+	v, err := strconv.ParseFloat(o.radiation, 64)
+	if err != nil || !(v >= 0) || math.IsInf(v, 0) {
+		return usagef("--Or %s: expected a density parameter, 0 or more, or from-temperature", o.radiation)
+	}
+	o.u.Or = v
+	return nil
+}
+
+// number is a float64 whose NaN and infinities are null in JSON.
+type number float64
+
+func (n number) MarshalJSON() ([]byte, error) {
+	if math.IsNaN(float64(n)) || math.IsInf(float64(n), 0) {
+		return []byte("null"), nil
+	}
+	return json.Marshal(float64(n))
+}
+
+// destinyReport is what omen fate prints: Mpc and Gyr, null where it does not
+// exist.
+type destinyReport struct {
+	Fate         string          `json:"fate"`
+	FateHeldW    string          `json:"fate_w_held,omitempty"`
+	BigBang      bool            `json:"big_bang"`
+	Accelerating bool            `json:"accelerating"`
+	Universe     destinyUniverse `json:"universe"`
+	Q0           number          `json:"q0"`
+	Age          number          `json:"age"`
+	H0T0         number          `json:"H0t0"`
+	Onset        number          `json:"acceleration_onset_z"`
+	Turnaround   *turnaround     `json:"turnaround"`
+	Crunch       number          `json:"crunch"`
+	Rip          number          `json:"rip"`
+	Distances    []destinyAtZ    `json:"distances"`
+	u            model.Universe
+}
+
+type destinyUniverse struct {
+	Om, OL, Ok, Or, H0 float64
+	W0                 float64 `json:"w0"`
+	Wa                 float64 `json:"wa"`
+}
+
+type turnaround struct {
+	A    float64 `json:"a"`
+	Time float64 `json:"time"`
+}
+
+type destinyAtZ struct {
+	Z                      float64 `json:"z"`
+	DC, DM, DA, DL, DH, DV number
+	Mu                     number `json:"mu"`
+	Lookback               number `json:"lookback"`
+	Age                    number `json:"age"`
+}
+
+// destiny computes everything that omen fate says of a universe.
+func destiny(u model.Universe, zs []float64) *destinyReport {
+	r := &destinyReport{u: u, Fate: u.Fate().String(), BigBang: u.HasBigBang(), Accelerating: u.Q0() < 0,
+		Universe: destinyUniverse{u.Om, u.OL, u.Ok(), u.Or, u.H0, u.W0, u.Wa},
+		Q0:       number(u.Q0()), Age: number(u.AgeToday()), H0T0: number(u.AgeToday() / u.HubbleTime()),
+		Onset:  number(u.AccelerationOnset()),
+		Crunch: number(u.Crunch()), Rip: number(u.Rip()), Distances: []destinyAtZ{}}
+	if u.Wa != 0 {
+		r.FateHeldW = u.Frozen().Fate().String()
+	}
+	if a, t := u.Turnaround(); !math.IsNaN(a) {
+		r.Turnaround = &turnaround{a, t}
+	}
+	for _, z := range zs {
+		r.Distances = append(r.Distances, destinyAtZ{z, number(u.DC(z)), number(u.DM(z)), number(u.DA(z)), number(u.DL(z)),
+			number(u.DH(z)), number(u.DV(z)), number(u.DistanceModulus(z, z)), number(u.Lookback(z)), number(u.Age(z))})
+	}
+	return r
+}
+
+func (r *destinyReport) write(w io.Writer) error {
+	var b strings.Builder
+	r.writeHead(&b)
+	r.writeTimes(&b)
+	if len(r.Distances) > 0 {
+		b.WriteString("\n     z      DC      DM      DA      DL      DH      DV       mu  lookback   age\n")
+		b.WriteString("           Mpc     Mpc     Mpc     Mpc     Mpc     Mpc      mag       Gyr   Gyr\n")
+	}
+	for _, d := range r.Distances {
+		fmt.Fprintf(&b, "%6.4g %s %s %s %s %s %s %s  %s %s\n", d.Z, cell(d.DC, 7, 1), cell(d.DM, 7, 1), cell(d.DA, 7, 1),
+			cell(d.DL, 7, 1), cell(d.DH, 7, 1), cell(d.DV, 7, 1), cell(d.Mu, 8, 4), cell(d.Lookback, 8, 3), cell(d.Age, 5, 2))
+	}
+	_, err := io.WriteString(w, b.String())
+	return err
+}
+
+func (r *destinyReport) writeHead(b *strings.Builder) {
+	u := r.Universe
+	fmt.Fprintf(b, "Om %g, OL %.6g, Ok %.6g, Or %.4g, H0 %g km/s/Mpc", u.Om, u.OL, zero(u.Ok), u.Or, u.H0)
+	if u.W0 != -1 || u.Wa != 0 {
+		fmt.Fprintf(b, ", w0 %g, wa %g", u.W0, u.Wa)
+	}
+	fmt.Fprintf(b, "\n\nFate: %s\n", r.Fate)
+	if r.FateHeldW != "" {
+		fmt.Fprintf(b, "      %s, if w stays at today's value\n", r.FateHeldW)
+		b.WriteString("      For wa ≠ 0 the far future extrapolates w(a) = w0 + wa (1-a).\n")
+	}
+	b.WriteString("\n")
+}
+
+func (r *destinyReport) writeTimes(b *strings.Builder) {
+	line := func(label string, format string, args ...any) {
+		fmt.Fprintf(b, "%-24s", label)
+		fmt.Fprintf(b, format+"\n", args...)
+	}
+	if r.BigBang {
+		line("age today", "%.4f Gyr (%.6f / H0)", r.Age, r.H0T0)
+	} else {
+		line("age today", "none: it bounced and never began")
+	}
+	line("deceleration q0", "%.5g", float64(r.Q0))
+	switch z := float64(r.Onset); {
+	case math.IsInf(z, 1):
+		line("accelerating", "since always")
+	case !math.IsNaN(z):
+		line("accelerating since", "z = %.4f, %.3f Gyr ago", z, r.u.Lookback(z))
+	}
+	if r.Turnaround != nil {
+		line("largest size", "a = %.5g, %.4g Gyr after the big bang", r.Turnaround.A, r.Turnaround.Time)
+	}
+	if c := float64(r.Crunch); !math.IsNaN(c) {
+		line("big crunch", "%.4g Gyr after the big bang, %.4g Gyr from today", c, c-float64(r.Age))
+	}
+	if rip := float64(r.Rip); !math.IsNaN(rip) {
+		line("big rip", "%.4g Gyr from today", rip)
+	}
+}
+
+// zero takes rounding error and the sign off a curvature that is nothing.
+func zero(x float64) float64 {
+	if math.Abs(x) < 1e-12 {
+		return 0
+	}
+	return x
+}
+
+// cell formats a number in a column, a dash where there is none.
+func cell(n number, width, decimals int) string {
+	if math.IsNaN(float64(n)) {
+		return fmt.Sprintf("%*s", width, "–")
+	}
+	return fmt.Sprintf("%*.*f", width, decimals, float64(n))
+}

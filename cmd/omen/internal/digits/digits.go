@@ -1,0 +1,85 @@
+// Package digits decides how many digits of a number deserve to be printed.
+//
+// Two rules meet. The spread of a quantity asks for two significant digits, or
+// one where the first is large, by the rule of the Particle Data Group (Review
+// of Particle Physics, Introduction, "Rounding"). Its Monte Carlo error forbids
+// any digit that another seed would change by more than one.
+package digits
+
+import (
+	"math"
+	"strconv"
+)
+
+// Place is the power of ten of the last digit to print for a quantity with the
+// given spread and Monte Carlo error, the coarser of [Spread] and [MonteCarlo].
+// A zero or NaN argument has no say; with neither, Place is −6.
+func Place(spread, mcse float64) int {
+	switch a, okA := Spread(spread); {
+	case okA && mcse > 0:
+		return max(a, MonteCarlo(mcse))
+	case okA:
+		return a
+	case mcse > 0 && !math.IsInf(mcse, 0):
+		return MonteCarlo(mcse)
+	}
+	return -6
+}
+
+// Spread is the last place that the Particle Data Group's rule keeps of an error
+// and of its value: of the error's three leading digits, 100–354 keep two,
+// 355–949 keep one, 950–999 round up to 1000 and keep two.
+func Spread(sd float64) (place int, ok bool) {
+	if !(sd > 0) || math.IsInf(sd, 0) {
+		return 0, false
+	}
+	exp := int(math.Floor(math.Log10(sd)))
+	lead := math.Round(sd / math.Pow10(exp-2))
+	if lead >= 1000 { // 9.999 rounds into the next decade
+		exp, lead = exp+1, 100
+	}
+	if lead <= 354 {
+		return exp - 1, true
+	}
+	return exp, true // 950–999 round up to 10, two digits of the next decade
+}
+
+// MonteCarlo is the finest place that a Monte Carlo error supports: one unit of
+// it is at least the error.
+func MonteCarlo(mcse float64) int {
+	return int(math.Ceil(math.Log10(mcse) - 1e-9))
+}
+
+// Format writes x with its last digit at 10^place, NaN as "–".
+func Format(x float64, place int) string {
+	if math.IsNaN(x) {
+		return "–"
+	}
+	if math.IsInf(x, 0) {
+		return map[bool]string{true: "∞", false: "−∞"}[x > 0]
+	}
+	if place > 0 {
+		unit := math.Pow10(place)
+		x, place = math.Round(x/unit)*unit, 0
+	}
+	s := strconv.FormatFloat(x, 'f', -place, 64)
+	if v, _ := strconv.ParseFloat(s, 64); v == 0 && s[0] == '-' {
+		return s[1:]
+	}
+	return s
+}
+
+// Value writes a quantity with its spread, "0.293 ± 0.011".
+func Value(x, spread, mcse float64) string {
+	p := Place(spread, mcse)
+	return Format(x, p) + " ± " + Format(spread, p)
+}
+
+// Error writes an error itself, with at most two significant digits.
+func Error(e float64) string {
+	p, ok := Spread(e)
+	if !ok {
+		return Format(e, 0)
+	}
+	return Format(e, p)
+}

@@ -1,0 +1,215 @@
+// Package job makes a run file into something that can be computed: it reads the
+// tables that the file names, keeps the hash of every input, and builds the
+// posterior. It is the one place where files, data and likelihood meet.
+package job
+
+import (
+	"crypto/sha256"
+	"encoding/hex"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+
+	"omen/cmd/omen/internal/runfile"
+	"omen/data"
+	"omen/likelihood"
+
+	"gonum.org/v1/gonum/mat"
+)
+
+// Input is a file that a run depends on.
+type Input struct {
+	Path   string `json:"path"`
+	SHA256 string `json:"sha256"`
+}
+
+// Table is one [[data]] table as it was read. Exactly one of the pointers to
+// measurements is set.
+type Table struct {
+	Spec       runfile.Data
+	Name       string // the user's name for it, or the file's
+	Supernovae *data.Supernovae
+	BAO        *data.BAO
+	Ages       *data.Ages
+	Rates      *data.Rates
+	Matrix     *data.Matrix  // as in the file, nil where there is none
+	Covariance *mat.SymDense // total and cut, nil where rows are independent
+	Term       likelihood.Term
+}
+
+// Job is a run with everything that it needs.
+type Job struct {
+	Run       *runfile.Run
+	Inputs    []Input
+	Tables    []Table
+	Space     *likelihood.Space
+	Posterior *likelihood.Posterior
+}
+
+// Load reads the tables of a run. Paths are relative to the run file.
+func Load(run *runfile.Run) (*Job, error) {
+	j := &Job{Run: run}
+	family, err := run.Family()
+	if err != nil {
+		return nil, err
+	}
+	if j.Space, err = likelihood.NewSpace(family); err != nil {
+		return nil, run.Errorf("prior", "%v", err)
+	}
+	var terms []likelihood.Term
+	for i := range run.Data {
+		t, err := j.table(i)
+		if err != nil {
+			return nil, err
+		}
+		j.Tables = append(j.Tables, *t)
+		terms = append(terms, t.Term)
+	}
+	if j.Posterior, err = likelihood.NewPosterior(j.Space, terms...); err != nil {
+		return nil, run.Errorf("prior", "%v", err)
+	}
+	return j, nil
+}
+
+// table reads the i-th table with its covariance and builds its term.
+func (j *Job) table(i int) (*Table, error) {
+	spec := j.Run.Data[i]
+	t := &Table{Spec: spec, Name: spec.Name}
+	if t.Name == "" {
+		t.Name = filepath.Base(spec.Table)
+	}
+	key := fmt.Sprintf("data.%d", i+1)
+	if err := j.open(key+".table", spec.Table, t.read); err != nil {
+		return nil, err
+	}
+	if spec.Covariance != "" {
+		err := j.open(key+".covariance", spec.Covariance, func(r io.Reader, file string) (err error) {
+			t.Matrix, err = data.ReadMatrix(r, file)
+			return err
+		})
+		if err != nil {
+			return nil, err
+		}
+	}
+	return t, j.term(i, t)
+}
+
+// open hands a file to read and records its hash.
+func (j *Job) open(key, name string, read func(io.Reader, string) error) error {
+	path := j.Path(name)
+	f, err := os.Open(path)
+	if err != nil {
+		return j.Run.Errorf(key, "cannot read %s: %v; paths are relative to the run file", path, underlying(err))
+	}
+	defer f.Close()
+	sum := sha256.New()
+	tee := io.TeeReader(f, sum)
+	plain, err := data.Decompress(tee)
+	if err != nil {
+		return j.Run.Errorf(key, "cannot read %s: %v", path, err)
+	}
+	if err := read(plain, path); err != nil {
+		return err
+	}
+	if _, err := io.Copy(io.Discard, tee); err != nil {
+		return err
+	}
+	j.Inputs = append(j.Inputs, Input{Path: path, SHA256: hex.EncodeToString(sum.Sum(nil))})
+	return nil
+}
+
+// Path resolves a path of the run file.
+func (j *Job) Path(name string) string {
+	if filepath.IsAbs(name) {
+		return name
+	}
+	return filepath.Join(filepath.Dir(j.Run.File), name)
+}
+
+func underlying(err error) error {
+	if p, ok := err.(*os.PathError); ok {
+		return p.Err
+	}
+	return err
+}
+
+// read fills in the measurements by kind.
+func (t *Table) read(r io.Reader, file string) (err error) {
+	o := data.Options{Columns: t.Spec.Columns, Cut: t.Spec.Keep}
+	switch t.Spec.Kind {
+	case "supernovae":
+		t.Supernovae, err = data.ReadSupernovae(r, file, o)
+	case "bao":
+		t.BAO, err = data.ReadBAO(r, file, o)
+	case "ages":
+		t.Ages, err = data.ReadAges(r, file, o)
+	case "rates":
+		t.Rates, err = data.ReadRates(r, file, o)
+	}
+	return err
+}
+
+// Selection is which rows of the file were kept.
+func (t *Table) Selection() data.Selection {
+	switch {
+	case t.Supernovae != nil:
+		return t.Supernovae.Selection
+	case t.BAO != nil:
+		return t.BAO.Selection
+	case t.Ages != nil:
+		return t.Ages.Selection
+	}
+	return t.Rates.Selection
+}
+
+// Errors are the table's own errors, nil where it has none.
+func (t *Table) Errors() []float64 {
+	switch {
+	case t.Supernovae != nil:
+		return t.Supernovae.Err
+	case t.BAO != nil:
+		return t.BAO.Err
+	case t.Ages != nil:
+		return t.Ages.Err
+	}
+	return t.Rates.Err
+}
+
+// term builds the likelihood term of a table that has been read.
+func (j *Job) term(i int, t *Table) (err error) {
+	if t.Matrix != nil {
+		roles := map[string]data.Role{"": data.Total, "total": data.Total, "added": data.Added, "inverse": data.Inverse}
+		t.Covariance, err = data.Covariance(j.Path(t.Spec.Covariance), t.Matrix, roles[t.Spec.CovarianceHolds], t.Selection(), t.Errors())
+		if err != nil {
+			return err
+		}
+	}
+	switch {
+	case t.Supernovae != nil:
+		err = j.supernovae(i, t)
+	case t.BAO != nil:
+		t.Term, err = likelihood.NewBAO(t.BAO, t.Covariance)
+	case t.Ages != nil:
+		t.Term, err = likelihood.NewAges(t.Ages, t.Covariance)
+	default:
+		t.Term, err = likelihood.NewRates(t.Rates, t.Covariance)
+	}
+	if err != nil {
+		return j.Run.Errorf(fmt.Sprintf("data.%d", i+1), "%s: %v", t.Name, err)
+	}
+	return nil
+}
+
+func (j *Job) supernovae(i int, t *Table) error {
+	offset, err := j.Run.Offset(i)
+	if err != nil {
+		return err
+	}
+	var standing likelihood.Standing
+	if s := t.Spec.StandsFor; s != nil {
+		standing = likelihood.Standing{Rows: s.Rows, Chi2: s.Chi2}
+	}
+	t.Term, err = likelihood.NewSupernovae(t.Supernovae, t.Covariance, offset, standing)
+	return err
+}

@@ -1,0 +1,20 @@
+// Package likelihood says how well a universe agrees with what was measured.
+//
+// It joins the tables of package data and the universes of package model into
+// one log-density of the free parameters, which is all that a sampler needs:
+//
+//  1. A [Space] names the free parameters with their priors and turns a vector
+//     of their values into a [Point]: a universe, a sound horizon, a magnitude.
+//  2. A [Term] holds one table and its covariance, factorised once, and returns
+//     the chi-squared of a Point.
+//  3. A [Posterior] is a Space with its Terms. It collects the redshifts that
+//     the terms ask for, so that one pass over distances serves all of them.
+//  4. An [Evaluator] is a Posterior with scratch memory of its own, one for each
+//     goroutine. LogDensity is the function that is called millions of times; it
+//     does not allocate.
+//
+// Every prior is normalised and every Gaussian keeps its parameter-dependent
+// constants, so that differences of ln p between nested families of universes
+// are meaningful. Outside the support of the priors, without a big bang where
+// one is required, or where a distance does not exist, ln p is -Inf.
+package likelihood
