@@ -16,7 +16,7 @@ const sokal = 5
 //	τ = 1 + 2 Σ ρ(l),  l = 1 … M,
 //
 // of one or more series of the same process, in steps of the series, with
-// Sokal's self-consistent window M ≥ 5τ(M) (Sokal 1997, in: Functional
+// Sokal's self-consistent window M ≥ 5τ(M), at least 5 (Sokal 1997, in: Functional
 // Integration, NATO ASI Ser. B 361, 131). The relative error is about
 // √((4M+2)/n) for n values in all (ibid.; from memory).
 //
@@ -78,7 +78,7 @@ func window(covariance []float64) float64 {
 	tau := 1.0
 	for m := 1; m < len(covariance); m++ {
 		tau += 2 * covariance[m] / covariance[0]
-		if float64(m) >= sokal*tau {
+		if float64(m) >= sokal*max(tau, 1) { // an alternating chain has τ < 1
 			return max(tau, shortest(len(covariance)))
 		}
 	}

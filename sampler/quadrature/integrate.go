@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/mat"
 )
@@ -92,6 +93,7 @@ func (r *Result) passes(ctx context.Context, p Problem, o Options, g guess, work
 			r.LogEvidence = Estimate{q.ref + math.Log(out.val[0]), relative}
 			r.Nodes = newNodes(len(p.Lo), p.Classes, q.ref, out.nodes)
 			r.classes(&out, p.Classes)
+			p.Lo, p.Hi = r.Nodes.bounds(p.Lo, p.Hi, r.LogMode-clip)
 		}
 		logs = append(logs, q.ref+math.Log(out.val[0]))
 		r.Marginals = append(r.Marginals, marginalOf(out.curve, relative))
@@ -101,6 +103,28 @@ func (r *Result) passes(ctx context.Context, p Problem, o Options, g guess, work
 		r.LogEvidence.Err = math.Max(r.LogEvidence.Err, math.Abs(l-r.LogEvidence.Value))
 	}
 	return nil
+}
+
+// clip is how far below the mode, in ln p, the passes after the first stop looking: 6.6 standard deviations of
+// a Gaussian, beyond which there is 4e-11 of it. The first pass has searched the rest.
+const clip = 22
+
+// bounds returns the part of the box where nodes lie above a level of ln p, with their tiles and a little more.
+func (n *Nodes) bounds(lo, hi []float64, level float64) (l, h []float64) {
+	l, h = slices.Clone(hi), slices.Clone(lo)
+	for k := range n.Len() {
+		if n.LogP[k] < level {
+			continue
+		}
+		for i, x := range n.At(k) {
+			half := 2 * n.half[k*n.dim+i]
+			l[i], h[i] = math.Min(l[i], x-half), math.Max(h[i], x+half)
+		}
+	}
+	for i := range l {
+		l[i], h[i] = math.Max(l[i], lo[i]), math.Min(h[i], hi[i])
+	}
+	return l, h
 }
 
 // classes turns masses into probabilities. The error of the total counts for the ratio too.

@@ -10,14 +10,15 @@ const maxSplits = 4
 
 // node is one point of a rule with all the weights it has collected on the way out.
 type node struct {
-	x, half   [3]float64 // position, and half the extent the node stands for, in the caller's order
-	w, coarse float64    // weight of the Kronrod and of the embedded Gauss rule
+	x, half   point   // position, and half the extent the node stands for, in the caller's order
+	w, coarse float64 // weight of the Kronrod and of the embedded Gauss rule
 	logp      float64
 	label     int8
 }
 
 // linePiece is a piece of an innermost line: the samples behind its core.
 type linePiece struct {
+	t      [points]float64
 	logp   [points]float64
 	label  [points]int8
 	la, lb int8 // labels just inside the ends
@@ -95,11 +96,12 @@ func (w *worker) place(a, b float64, la, lb int8, depth int) {
 	h, mid := (b-a)/2, (a+b)/2
 	mixed := la != lb
 	for i, u := range abscissa {
-		p.logp[i], p.label[i] = w.at(mid + h*u)
+		p.t[i] = mid + h*u
+		p.logp[i], p.label[i] = w.at(p.t[i])
 		mixed = mixed || p.label[i] != la
 	}
 	if mixed && depth < maxSplits && w.matters(&p, b-a) {
-		w.split(a, b, &p, depth)
+		w.splitLine(a, b, &p, depth)
 		return
 	}
 	w.keep(a, b, &p)
@@ -107,7 +109,7 @@ func (w *worker) place(a, b float64, la, lb int8, depth int) {
 
 // matters tells whether a border inside the piece could make a difference at the tolerance of the line.
 func (w *worker) matters(p *linePiece, width float64) bool {
-	top, _, _ := foreseen(&p.logp)
+	top, _, _ := foreseen(&p.t, &p.logp)
 	least := w.tol[0]
 	for s := 1; s < w.slots; s++ {
 		least = math.Min(least, w.tol[s])
@@ -115,16 +117,15 @@ func (w *worker) matters(p *linePiece, width float64) bool {
 	return math.Exp(top-w.ref)*width > 0.01*least
 }
 
-// split finds the borders between neighbouring samples with different labels and places the parts. Parts
+// splitLine finds the borders between neighbouring samples with different labels and places the parts. Parts
 // without support need no samples.
-func (w *worker) split(a, b float64, p *linePiece, depth int) {
-	h, mid := (b-a)/2, (a+b)/2
+func (w *worker) splitLine(a, b float64, p *linePiece, depth int) {
 	from, left := a, a // start of the current part, latest point known to carry its label
 	label, level := p.la, math.Inf(-1)
 	for i := 0; i <= points; i++ {
 		right, rl, rv := b, p.lb, math.Inf(-1)
 		if i < points {
-			right, rl, rv = mid+h*abscissa[i], p.label[i], p.logp[i]
+			right, rl, rv = p.t[i], p.label[i], p.logp[i]
 		}
 		for n := 0; rl != label && n < maxSplits; n++ {
 			border, next := w.border(left, right, label, rl, math.Max(level, rv))
@@ -179,8 +180,8 @@ func (w *worker) keep(a, b float64, p *linePiece) {
 	}
 	c := core{a: a, b: b}
 	c.sumRule(&f, w.slots)
-	if top, vertex, i := foreseen(&p.logp); vertex > top+hidden {
-		c.err[0] += w.hiddenMass(vertex, (b-a)/2*kronrod[i])
+	if top, vertex, i := foreseen(&p.t, &p.logp); vertex > top+hidden {
+		c.err[0] += w.hiddenMass(vertex) * (b - a) / 2 * kronrod[i]
 	}
 	w.cores, w.pieces = append(w.cores, c), append(w.pieces, *p)
 }
@@ -188,40 +189,43 @@ func (w *worker) keep(a, b float64, p *linePiece) {
 // hidden is by how much a parabola must overtop the largest sample before a hidden peak is suspected.
 const hidden = 0.7
 
-// hiddenMass bounds the mass of a suspected peak, within what a float64 can hold.
-func (w *worker) hiddenMass(vertex, width float64) float64 {
-	return math.Exp(math.Min(vertex-w.ref, 600)) * width
-}
-
 // closeLine adds up the pieces and hands on their nodes.
-func (w *worker) closeLine() (sum integral) {
-	sum.peak = math.Inf(-1)
+func (w *worker) closeLine() (r integral) {
+	r.peak = math.Inf(-1)
+	axis := w.order[w.dim-1]
 	for i := range w.cores {
+		c, p := &w.cores[i], &w.pieces[i]
 		for s := range w.slots {
-			sum.val[s] += w.cores[i].val[s]
-			sum.err[s] += w.cores[i].err[s]
+			r.val[s] += c.val[s]
+			r.err[s] += c.err[s]
 		}
-		_, vertex, _ := foreseen(&w.pieces[i].logp)
-		sum.peak = math.Max(sum.peak, vertex)
-		if w.record {
-			w.emitLine(&w.cores[i], &w.pieces[i])
-		}
+		_, vertex, _ := foreseen(&p.t, &p.logp)
+		r.peak = math.Max(r.peak, vertex)
+		w.closePiece(c, p, &r, axis)
 	}
-	return sum
+	return r
 }
 
 // faintest is how far below the mode, in ln p, a node may lie before it is of no use to anybody.
 const faintest = 60
 
-func (w *worker) emitLine(c *core, p *linePiece) {
-	axis, h, mid := w.order[w.dim-1], (c.b-c.a)/2, (c.a+c.b)/2
+// closePiece adds the moments of a piece and hands on its nodes.
+func (w *worker) closePiece(c *core, p *linePiece, r *integral, axis int) {
+	h := (c.b - c.a) / 2
 	for i, l := range p.label {
 		if l == outside || p.logp[i] < w.ref-faintest {
 			continue
 		}
-		n := node{w: h * kronrod[i], coarse: h * gauss[i], logp: p.logp[i], label: l}
-		copy(n.x[:], w.x)
-		n.x[axis], n.half[axis] = mid+h*abscissa[i], h*kronrod[i]/2
-		w.out[w.dim-1] = append(w.out[w.dim-1], n)
+		first := h * kronrod[i] * math.Exp(p.logp[i]-w.ref) * p.t[i]
+		r.moment[0][axis] += first
+		if w.class != nil {
+			r.moment[l+1][axis] += first
+		}
+		if w.record {
+			n := node{w: h * kronrod[i], coarse: h * gauss[i], logp: p.logp[i], label: l}
+			copy(n.x[:], w.x)
+			n.x[axis], n.half[axis] = p.t[i], h*kronrod[i]/2
+			w.out[w.dim-1] = append(w.out[w.dim-1], n)
+		}
 	}
 }

@@ -1,6 +1,7 @@
 package quadrature
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"slices"
@@ -139,12 +140,7 @@ func (n *Nodes) Thin(lost float64) *Nodes {
 	for i := range byWeight {
 		byWeight[i] = i
 	}
-	slices.SortStableFunc(byWeight, func(a, b int) int {
-		if n.Weight[a] < n.Weight[b] {
-			return -1
-		}
-		return 1
-	})
+	slices.SortStableFunc(byWeight, func(a, b int) int { return cmp.Compare(n.Weight[a], n.Weight[b]) })
 	drop := make([]bool, n.Len())
 	for _, i := range byWeight {
 		b := &budget[n.Class[i]+1]

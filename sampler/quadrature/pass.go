@@ -2,6 +2,7 @@ package quadrature
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/mat"
 )
@@ -69,7 +70,7 @@ func (p *pass) guessScales() {
 
 // cuts returns the edges of the box of a level and, between them, the conditional mean ± 2 and ± 6
 // conditional standard deviations, given the coordinates outside: pieces on which the rule sees a Gaussian
-// to a relative 1e-8 at once. Cuts that would make a sliver are left out.
+// to a relative 1e-8 at once. Cuts that would make a sliver are left out. Hints from outside are further cuts.
 func (w *worker) cuts(level int) []float64 {
 	var z [3]float64
 	var mean float64
@@ -80,21 +81,28 @@ func (w *worker) cuts(level int) []float64 {
 		}
 		z[l] = (w.x[w.order[l]] - mean) / w.chol.At(l, l)
 	}
-	return cutsAt(w.cutbuf[level][:0], w.lo[level], w.hi[level], mean, w.chol.At(level, level))
-}
-
-func cutsAt(dst []float64, lo, hi, mean, sd float64) []float64 {
-	dst = append(dst, lo)
+	sd := w.chol.At(level, level)
+	c := append(w.buf[level][:0], w.lo[level])
 	for _, k := range [...]float64{-6, -2, 2, 6} {
-		if c := mean + k*sd; c > dst[len(dst)-1]+sd/10 && c < hi-sd/10 {
-			dst = append(dst, c)
+		if t := mean + k*sd; t > w.lo[level]+sd && t < w.hi[level]-sd {
+			c = append(c, t)
 		}
 	}
-	return append(dst, hi)
+	c = append(c, w.hi[level])
+	for _, hints := range w.hints[:min(level, len(w.hints))] {
+		for _, h := range hints {
+			if t := h[w.order[level]]; t > w.lo[level] && t < w.hi[level] {
+				c = append(c, t)
+			}
+		}
+	}
+	slices.Sort(c)
+	w.buf[level] = slices.Compact(c)
+	return w.buf[level]
 }
 
 // Inner levels are integrated more tightly, so that the rule outside sees a smooth integrand.
-var tighter = [3]float64{1, 0.2, 0.05}
+var tighter = [3]float64{1, 0.3, 0.1}
 
 // tolerance returns the absolute error allowed at a level for each slot, relative to the larger of what the
 // pieces hold and what integrals at this level amount to elsewhere: a line far out in the tail need not be

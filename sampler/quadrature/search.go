@@ -1,6 +1,7 @@
 package quadrature
 
 import (
+	"cmp"
 	"math"
 	"slices"
 
@@ -78,15 +79,7 @@ func (s *search) scan(n int) []candidate {
 		}
 		cs[k] = candidate{u, s.value(u)}
 	}
-	slices.SortStableFunc(cs, func(a, b candidate) int {
-		switch {
-		case a.v > b.v:
-			return -1
-		case a.v < b.v:
-			return 1
-		}
-		return 0
-	})
+	slices.SortStableFunc(cs, func(a, b candidate) int { return cmp.Compare(b.v, a.v) })
 	return cs
 }
 
