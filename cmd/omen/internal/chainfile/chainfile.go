@@ -4,7 +4,7 @@
 // The folder holds
 //
 //	chain.csv   every recorded step: ensemble,step,walker,<parameters>,log_posterior
-//	chain.sums  one line per recorded step: a checksum and the moves accepted so far
+//	chain.sums  one line per recorded step: its checksum and accepted moves
 //	run.json    what the run was started from and how far it was at the last sync
 //	run.lock    who is writing, while somebody is
 //
@@ -45,7 +45,7 @@ const Format = 1
 // Step is the state of every walker after one step.
 type Step struct {
 	Number   int         // steps completed; recorded are Every, 2·Every, …
-	Accepted uint64      // moves accepted since the start, over all walkers
+	Accepted int         // moves accepted since the recorded step before; negative if not known
 	X        [][]float64 // for each ensemble walkers × parameters, row by row
 	LogP     [][]float64 // for each ensemble the log-posterior of each walker
 }
@@ -153,16 +153,16 @@ var table = crc64.MakeTable(crc64.ECMA)
 func (c sum) add(b []byte) sum { return sum(crc64.Update(uint64(c), table, b)) }
 
 // next extends the checksum by the rows of a step and its accepted moves.
-func (c sum) next(rows []byte, accepted uint64) sum {
+func (c sum) next(rows []byte, accepted int) sum {
 	var n [8]byte
-	binary.BigEndian.PutUint64(n[:], accepted)
+	binary.BigEndian.PutUint64(n[:], uint64(accepted))
 	return c.add(rows).add(n[:])
 }
 
 // record is one line of chain.sums.
 type record struct {
 	sum      sum
-	accepted uint64
+	accepted int
 }
 
 const recordLen = 16 + 1 + 16 + 1
@@ -171,7 +171,7 @@ func (r record) append(b []byte) []byte {
 	var n [8]byte
 	binary.BigEndian.PutUint64(n[:], uint64(r.sum))
 	b = append(hex.AppendEncode(b, n[:]), ' ')
-	binary.BigEndian.PutUint64(n[:], r.accepted)
+	binary.BigEndian.PutUint64(n[:], uint64(r.accepted))
 	return append(hex.AppendEncode(b, n[:]), '\n')
 }
 
@@ -180,6 +180,6 @@ func parseRecord(b []byte) (r record, ok bool) {
 	var n [16]byte
 	_, err1 := hex.Decode(n[:8], b[:16])
 	_, err2 := hex.Decode(n[8:], b[17:33])
-	r = record{sum(binary.BigEndian.Uint64(n[:8])), binary.BigEndian.Uint64(n[8:])}
+	r = record{sum(binary.BigEndian.Uint64(n[:8])), int(binary.BigEndian.Uint64(n[8:]))}
 	return r, err1 == nil && err2 == nil && b[16] == ' ' && b[33] == '\n'
 }

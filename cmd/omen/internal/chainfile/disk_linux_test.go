@@ -97,6 +97,7 @@ func TestReadOnlyFolder(t *testing.T) {
 	if err := os.Chmod(dir, 0o555); err != nil {
 		t.Fatal(err)
 	}
+	t.Cleanup(func() { os.Chmod(dir, 0o755) })
 	testReadOnly(t, dir, dir, fs.ErrPermission)
 }
 

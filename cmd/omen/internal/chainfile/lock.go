@@ -53,25 +53,31 @@ func Acquire(dir string) (*Lock, error) {
 // tryAcquire returns nil, nil if the lock is taken.
 func tryAcquire(path string) (*Lock, error) {
 	f, err := os.OpenFile(path, os.O_RDWR|os.O_CREATE, 0o644)
+	if errors.Is(err, fs.ErrNotExist) {
+		return nil, fmt.Errorf("%s: no such folder: %w", filepath.Dir(path), fs.ErrNotExist)
+	}
 	if err != nil {
 		return nil, &Failure{Path: path, Err: err}
 	}
+	ok, err := take(f)
+	if ok && err == nil {
+		return &Lock{f}, nil
+	}
+	f.Close()
+	if err != nil {
+		err = &Failure{Path: path, Err: err}
+	}
+	return nil, err
+}
+
+// take locks f and writes who has it now. The holder before us removes the
+// file when done: a lock on one that is no longer in place is worth nothing.
+func take(f *os.File) (bool, error) {
 	ok, err := tryLock(f, true)
-	// The holder before us removes the file: ours must be the one in place.
-	if ok {
-		ok = (&file{File: f}).present() == nil
+	if !ok || err != nil || (&file{File: f}).present() != nil {
+		return false, err
 	}
-	if err == nil && ok {
-		err = writeHolder(f)
-	}
-	if err != nil || !ok {
-		f.Close()
-		if err != nil {
-			err = &Failure{Path: path, Err: err}
-		}
-		return nil, err
-	}
-	return &Lock{f}, nil
+	return true, writeHolder(f)
 }
 
 func writeHolder(f *os.File) error {

@@ -48,6 +48,9 @@ func TestOneWriter(t *testing.T) {
 		t.Fatalf("after release: %v", err)
 	}
 	l.Release()
+	if _, err := Acquire(dir + "/nowhere"); err == nil || !strings.Contains(err.Error(), "nowhere: no such folder") {
+		t.Errorf("no folder: %v", err)
+	}
 	if files, _ := os.ReadDir(dir); len(files) != 0 {
 		t.Errorf("left behind: %v", files)
 	}
@@ -81,6 +84,29 @@ func TestKilledHolder(t *testing.T) {
 		t.Fatalf("after its death: %v", err)
 	}
 	l.Release()
+}
+
+// Who opened the lock file before it was removed must not lock the remains.
+func TestLockOnRemovedFile(t *testing.T) {
+	dir := t.TempDir()
+	first, err := Acquire(dir)
+	if err != nil {
+		t.Fatal(err)
+	}
+	late, err := os.Open(first.f.Name())
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer late.Close()
+	first.Release()
+	second, err := Acquire(dir)
+	if err != nil {
+		t.Fatal(err)
+	}
+	defer second.Release()
+	if ok, err := take(late); ok || err != nil {
+		t.Errorf("a removed lock file could be locked: %v, %v", ok, err)
+	}
 }
 
 // Of many who want the lock at once and give it back, no two have it at the

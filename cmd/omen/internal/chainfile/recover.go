@@ -12,13 +12,12 @@ import (
 
 // Recovered is the longest valid beginning of a chain.
 type Recovered struct {
-	Steps    int    // recorded steps in it
-	Step     int    // the number of the last one, 0 if none
-	Accepted uint64 // moves accepted up to that step
-	Bytes    int64  // its length in chain.csv
-	Dropped  int64  // bytes in chain.csv after it
-	Lost     int    // recorded steps after it that had once been safe
-	Reason   string // why it ends where it does, empty if the chain is whole
+	Steps   int    // recorded steps in it
+	Step    int    // the number of the last one, 0 if none
+	Bytes   int64  // its length in chain.csv
+	Dropped int64  // bytes in chain.csv after it
+	Lost    int    // recorded steps after it that had once been safe
+	Reason  string // why it ends where it does, empty if the chain is whole
 
 	sum sum
 }
@@ -31,7 +30,7 @@ func (r Recovered) Notice() string {
 	}
 	s := fmt.Sprintf("%s: used up to step %d; dropped the %d bytes after it: %s", ChainName, r.Step, r.Dropped, r.Reason)
 	if r.Dropped == 0 {
-		s = fmt.Sprintf("%s: used as a whole, up to step %d: %s", ChainName, r.Step, r.Reason)
+		s = fmt.Sprintf("%s: used up to step %d, the end of the file: %s", ChainName, r.Step, r.Reason)
 	}
 	if r.Lost > 0 {
 		s += fmt.Sprintf("; %d recorded steps are missing that had been safe: the file was changed or damaged since", r.Lost)
@@ -71,6 +70,9 @@ func Recover(dir string, s State, visit func(Step) error) (Recovered, error) {
 	}
 	rec.Dropped = info.Size() - rec.Bytes
 	rec.Lost = max(0, (s.Step-rec.Step)/s.Every)
+	if rec.Lost > 0 && rec.Reason == "" {
+		rec.Reason = fmt.Sprintf("%s and %s both end there", ChainName, SumsName)
+	}
 	if rec.Steps == 0 && rec.Lost > 0 {
 		return rec, fmt.Errorf("%s: not one step is valid, although %d had been recorded: %s; restore the folder from a copy, or start again in another",
 			chain.Name(), rec.Lost, rec.Reason)
@@ -87,8 +89,7 @@ func recoverFrom(chain, sums io.Reader, run Run, visit func(Step) error) (rec Re
 				return rec, err
 			}
 		}
-		rec = Recovered{Steps: r.step.Number / run.Every, Step: r.step.Number,
-			Accepted: r.step.Accepted, Bytes: r.bytes, sum: r.sum}
+		rec = Recovered{Steps: r.step.Number / run.Every, Step: r.step.Number, Bytes: r.bytes, sum: r.sum}
 	}
 	var why damage
 	switch {
@@ -179,7 +180,7 @@ func (r *reader) confirmed() (record, error) {
 	var b [recordLen]byte
 	_, err := io.ReadFull(r.sums, b[:])
 	if err == io.EOF || err == io.ErrUnexpectedEOF {
-		return record{}, r.unconfirmed(err)
+		return record{}, r.unconfirmed()
 	}
 	if err != nil {
 		return record{}, err
@@ -193,16 +194,10 @@ func (r *reader) confirmed() (record, error) {
 
 // unconfirmed tells the clean end of a chain from rows that were on their
 // way when the run stopped.
-func (r *reader) unconfirmed(cause error) error {
+func (r *reader) unconfirmed() error {
 	_, err := r.chain.Peek(1)
-	if err == io.EOF {
-		if cause == io.EOF && r.bytes > 0 {
-			return io.EOF
-		}
-		return damaged("the run was stopped before step %d was complete", r.step.Number)
-	}
 	if err != nil {
-		return err
+		return err // io.EOF above all
 	}
 	return damaged("the run was stopped before step %d was confirmed in %s", r.step.Number, SumsName)
 }
