@@ -16,9 +16,10 @@ func (e *expansion) comoving(y float64) float64 {
 	if y == 0 {
 		return 0
 	}
-	return integrate(func(y float64) float64 {
+	return integrate(func(y float64) (v, noise float64) {
 		x := math.Exp(y)
-		return x / math.Sqrt(e.squared(x, y, 1/x))
+		v, noise = e.inverse(x, y, 1/x)
+		return x * v, x * noise
 	}, 0, y)
 }
 

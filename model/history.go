@@ -36,7 +36,7 @@ type history struct {
 
 // clock is a monotonic relation between a position and a time, known at one point and by its slope.
 type clock struct {
-	rate   func(pos float64) float64 // dt/dpos > 0
+	rate   func(pos float64) (rate, noise float64) // dt/dpos > 0
 	pos, t float64
 }
 
@@ -86,7 +86,8 @@ func (h *history) anchor(t float64) {
 		if t > c.t/4 {
 			return
 		}
-		c.pos += math.Max(-5, math.Log(t/c.t)*c.t/c.rate(c.pos))
+		rate, _ := c.rate(c.pos)
+		c.pos += math.Max(-5, math.Log(t/c.t)*c.t/rate)
 		c.t = h.e.sinceBigBang(math.Exp(c.pos))
 	}
 }
@@ -114,14 +115,18 @@ func (c *clock) newton(t float64, step func(rate float64) float64) float64 {
 		default:
 			hi = c.pos
 		}
-		next := c.pos + math.Max(-1, math.Min(step(c.rate(c.pos)), 1))
-		if next <= lo || next >= hi {
+		rate, _ := c.rate(c.pos)
+		next := c.pos + math.Max(-1, math.Min(step(rate), 1))
+		if (next <= lo || next >= hi) && hi-lo < math.Inf(1) {
 			next = (lo + hi) / 2
 		}
 		moved := next - c.pos
+		if moved == 0 {
+			return c.pos
+		}
 		c.t += integrate(c.rate, c.pos, next)
 		c.pos = next
-		if math.Abs(moved) < 1e-10 {
+		if math.Abs(moved) < 1e-6 { // the next step would be of the order of its square
 			break
 		}
 	}

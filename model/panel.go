@@ -41,17 +41,18 @@ func legendre(x float64, p *[order + 1]float64) {
 	}
 }
 
-// antiderivatives fills q with ∫_{-1}^{x} P_m for m = 0 … order-1: (P_{m+1} - P_{m-1})/(2m+1).
-func antiderivatives(x float64, q *[order]float64) {
+// antiderivatives fills q with ∫_{-1}^{x} P_m for m = 0 … order-1 and x = above-1:
+// (P_{m+1} - P_{m-1})/(2m+1), and above itself for m = 0.
+func antiderivatives(above float64, q *[order]float64) {
 	var p [order + 1]float64
-	legendre(x, &p)
-	q[0] = x + 1
+	legendre(above-1, &p)
+	q[0] = above
 	for m := 1; m < order; m++ {
 		q[m] = (p[m+1] - p[m-1]) / float64(2*m+1)
 	}
 }
 
-// integral is the mean of f over the panel, given its values at the nodes.
+// mean is the mean of f over the panel, given its values at the nodes.
 func (p *panelRule) mean(f *[order]float64) float64 {
 	sum := 0.0
 	for k, v := range f {
@@ -60,36 +61,66 @@ func (p *panelRule) mean(f *[order]float64) float64 {
 	return sum / 2
 }
 
-// tail is the size of the last two Legendre coefficients, which says how well twelve terms describe f: the
-// error of the expansion is about this, the error of the integral about its square (times |f|⁻¹).
-func (p *panelRule) tail(f *[order]float64) float64 {
-	var c10, c11 float64
+// series fills c with the Legendre coefficients of f.
+func (p *panelRule) series(f, c *[order]float64) {
+	for m := range c {
+		c[m] = 0
+		for k, v := range f {
+			c[m] += p.coef[m][k] * v
+		}
+	}
+}
+
+// omitted estimates the first Legendre coefficients of f beyond the twelve that a panel holds, by the decay from
+// the last but one pair to the last. Pairs, because a single coefficient may vanish by symmetry. This is the
+// relative error of the expansion near the ends of the panel; that of the integral is about its square.
+func (p *panelRule) omitted(f *[order]float64) float64 {
+	var c8, c9, c10, c11 float64
 	for k, v := range f {
+		c8 += p.coef[order-4][k] * v
+		c9 += p.coef[order-3][k] * v
 		c10 += p.coef[order-2][k] * v
 		c11 += p.coef[order-1][k] * v
 	}
-	return math.Abs(c10) + math.Abs(c11)
+	before, last := math.Abs(c8)+math.Abs(c9), math.Abs(c10)+math.Abs(c11)
+	if last >= before {
+		return last
+	}
+	return last * last / before
 }
 
-// integralTail is the tail, relative to the mean, below which the integral over a panel is good to rounding.
-const integralTail = 1e-7
+// The estimates of omitted, relative to the mean, below which a panel is not halved: for its integral to be
+// good to rounding, and for its expansion to be good to 1e-10 anywhere in it.
+const (
+	integralTail = 1e-7
+	denseTail    = 3e-11
+)
+
+// rounding is a generous bound on the relative rounding error of a sum, in units of its largest term.
+const rounding = 8 * 0x1p-52
 
 // integrate is the integral from a to b of a positive function that is analytic on [a, b], to a relative
-// accuracy near rounding. Panels are halved until their Legendre coefficients have died away, so the cost
-// grows with the logarithm of the distance to the nearest singularity. NaN if f is NaN at a node.
-func integrate(f func(float64) float64, a, b float64) float64 {
-	return bisect(f, a, b, maxDepth)
+// accuracy near rounding. f returns its value and a bound on the value's rounding error. Panels are halved
+// until their Legendre coefficients have died away or are noise, so the cost grows with the logarithm of
+// the distance to the nearest singularity. NaN if f is NaN at a node.
+func integrate(f func(float64) (v, noise float64), a, b float64) float64 {
+	budget := 2000 // never reached unless a bound on the noise is wrong
+	return bisect(f, a, b, maxDepth, &budget)
 }
 
-func bisect(f func(float64) float64, a, b float64, depth int) float64 {
+func bisect(f func(float64) (v, noise float64), a, b float64, depth int, budget *int) float64 {
 	mid, half := a+(b-a)/2, (b-a)/2
 	var v [order]float64
+	noise := 0.0
 	for k, x := range panel.x {
-		v[k] = f(mid + half*x)
+		var n float64
+		v[k], n = f(mid + half*x)
+		noise = math.Max(noise, n)
 	}
 	mean := panel.mean(&v)
-	if depth == 0 || !(panel.tail(&v) > integralTail*math.Abs(mean)) {
+	*budget--
+	if depth == 0 || *budget < 0 || !(panel.omitted(&v) > integralTail*mean+noise) {
 		return mean * (b - a)
 	}
-	return bisect(f, a, mid, depth-1) + bisect(f, mid, b, depth-1)
+	return bisect(f, a, mid, depth-1, budget) + bisect(f, mid, b, depth-1, budget)
 }

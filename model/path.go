@@ -10,9 +10,6 @@ import (
 // about 1 away in a universe like ours; with 0.4 the twelve terms of a panel are then good to 1e-11.
 const panelWidth = 0.4
 
-// denseTail is the tail, relative to the mean, below which a panel's expansion is trusted between its nodes.
-const denseTail = 3e-11
-
 // Path is a line of sight to a fixed, ascending list of redshifts, prepared for many universes. The integral of
 // (1+z)/E over ln(1+z) is expanded in Legendre polynomials on a few panels; the weights with which a panel's
 // twelve values of the integrand give the integral up to each redshift do not depend on the universe and are
@@ -79,12 +76,11 @@ func (p *Path) divide() {
 	}
 }
 
-// denseWeights gives the weights of the node values in the integral over the first part of a panel, up to a
-// distance of above (in half-widths) from its lower end.
+// denseWeights gives the weights of the node values in the integral over the first part of a panel, up to the
+// distance above (in half-widths) from its lower end.
 func denseWeights(above, half float64) (w [order]float64) {
 	var q [order]float64
-	antiderivatives(above-1, &q)
-	q[0] = above
+	antiderivatives(above, &q)
 	for k := range w {
 		for m := range q {
 			w[k] += half * q[m] * panel.coef[m][k]
@@ -139,7 +135,7 @@ func (p *Path) fillPanel(e *expansion, g *pathPanel, chi float64, valid int, dm 
 		f[k] = g.x[k] / math.Sqrt(e.squared(g.x[k], g.y[k], g.a[k]))
 	}
 	mean := panel.mean(&f)
-	if !(panel.tail(&f) <= denseTail*mean) {
+	if !(panel.omitted(&f) <= denseTail*mean) {
 		return p.refine(e, g.lo, g.hi, chi, g.first, g.last, dm, maxDepth)
 	}
 	for i := g.first; i < g.last; i++ {
@@ -157,13 +153,16 @@ func (p *Path) fillPanel(e *expansion, g *pathPanel, chi float64, valid int, dm 
 func (p *Path) refine(e *expansion, lo, hi, chi float64, first, last int, dm []float64, depth int) float64 {
 	mid, half := (lo+hi)/2, (hi-lo)/2
 	var f [order]float64
+	worst := 0.0
 	for k, t := range panel.x {
 		y := mid + half*t
 		x := math.Exp(y)
-		f[k] = x / math.Sqrt(e.squared(x, y, 1/x))
+		v, noise := e.inverse(x, y, 1/x)
+		f[k] = x * v
+		worst = math.Max(worst, x*noise)
 	}
 	mean := panel.mean(&f)
-	tail := panel.tail(&f)
+	tail := panel.omitted(&f) - worst
 	// Without a redshift inside only the integral over the panel matters.
 	good := tail <= denseTail*mean || first == last && tail <= integralTail*mean
 	if !good && depth > 0 && tail == tail {
@@ -171,11 +170,17 @@ func (p *Path) refine(e *expansion, lo, hi, chi float64, first, last int, dm []f
 		chi = p.refine(e, lo, mid, chi, first, cut, dm, depth-1)
 		return p.refine(e, mid, hi, chi, cut, last, dm, depth-1)
 	}
-	for i := first; i < last; i++ {
-		w := denseWeights((p.y[i]-lo)/half, half)
-		dm[i] = chi
-		for k := range f {
-			dm[i] += w[k] * f[k]
+	if first < last {
+		var c, q [order]float64
+		panel.series(&f, &c)
+		for i := first; i < last; i++ {
+			above := (p.y[i] - lo) / half
+			antiderivatives(above, &q)
+			sum := 0.0
+			for m := range q {
+				sum += c[m] * q[m]
+			}
+			dm[i] = chi + half*sum
 		}
 	}
 	return chi + mean*(hi-lo)

@@ -4,9 +4,10 @@ import "math"
 
 // Times are integrals of dt = d(ln a)/H. Inside this file they are in units of 1/H0.
 
-// timeRate is dt/ds = 1/E at s = ln a.
-func (e *expansion) timeRate(s float64) float64 {
-	return 1 / math.Sqrt(e.squared(math.Exp(-s), -s, math.Exp(s)))
+// timeRate is dt/ds = 1/E at s = ln a, and its rounding error.
+func (e *expansion) timeRate(s float64) (v, noise float64) {
+	a := math.Exp(s)
+	return e.inverse(1/a, -s, a)
 }
 
 // between is the time from s1 = ln a1 to s2 = ln a2, with no zero of E² in between.
@@ -17,16 +18,13 @@ func (e *expansion) between(s1, s2 float64) float64 {
 	return integrate(e.timeRate, s1, s2)
 }
 
-// sinceBigBang is the time from the big bang to the scale factor a, in a universe that had one. With a
-// cosmological constant the variable x = √a makes the integrand 2x³/√(Or + Om x² + Ok x⁴ + OL x⁸) a
-// smooth function down to x = 0. For other dark energy, whose powers are not whole, the integral runs over
-// ln a in steps, and what is left is a pure power law.
+// sinceBigBang is the time from the big bang to the scale factor a, in a universe that had one. In the variable
+// x = √a its integrand 2x³/√(a⁴E²) is smooth down to x = 0 if dark energy is or nearly is a cosmological
+// constant: with w0+wa ≤ -2/3 it adds a term a⁻ᵖ with p ≤ 1 to the a⁻³ of matter. For other dark energy the
+// integral runs over ln a in steps, and what is left is a pure power law.
 func (e *expansion) sinceBigBang(a float64) float64 {
-	if e.lambda && e.om > 0 {
-		return integrate(func(x float64) float64 {
-			a := x * x
-			return 2 * x * a / math.Sqrt(e.or+a*(e.om+a*(e.ok+a*a*e.ol)))
-		}, 0, math.Sqrt(a))
+	if e.om > 0 && (e.lambda || e.p <= 1) {
+		return integrate(e.rootRate, 0, math.Sqrt(a))
 	}
 	const step, steps = 2, 20
 	s, t := math.Log(a), 0.0
@@ -39,7 +37,20 @@ func (e *expansion) sinceBigBang(a float64) float64 {
 		}
 	}
 	_, n := e.early()
-	return t + 2/n*e.timeRate(s)
+	rate, _ := e.timeRate(s)
+	return t + 2/n*rate
+}
+
+// rootRate is dt/dx for x = √a, and its rounding error.
+func (e *expansion) rootRate(x float64) (v, noise float64) {
+	a := x * x
+	rest := e.or + a*(e.om+a*e.ok)
+	de := e.ol * a * a * a * a
+	if !e.lambda {
+		de = e.ol * math.Exp((4-e.p)*math.Log(a)+e.b*(a-1))
+	}
+	v = 2 * x * a / math.Sqrt(rest+de)
+	return v, rounding * v * (1 + (math.Abs(de)+a*a*math.Abs(e.ok))/(rest+de))
 }
 
 // untilTurnaround is the time from ln a = s to the zero of E² at st > s.
@@ -47,29 +58,34 @@ func (e *expansion) untilTurnaround(s, st float64) float64 {
 	return integrate(e.turnaroundRate(st), 0, math.Sqrt(st-s))
 }
 
-// turnaroundRate returns -dt/dv for v = √(st - ln a) and a zero of E² at ln a = st, where 1/E has an
-// integrable singularity which this variable removes. E² is evaluated as its difference from the value 0 at
-// the zero, term by term with expm1, so it keeps its relative accuracy as it vanishes.
-func (e *expansion) turnaroundRate(st float64) func(v float64) float64 {
+// turnaroundRate returns -dt/dv and its rounding error for v = √(st - ln a) and a zero of E² at ln a = st, where
+// 1/E has an integrable singularity which this variable removes. E² is evaluated as its difference from the
+// value 0 at the zero, term by term with expm1, so it keeps its relative accuracy as it vanishes.
+func (e *expansion) turnaroundRate(st float64) func(v float64) (rate, noise float64) {
 	at := math.Exp(st)
 	x := 1 / at
 	rad, m, q := e.or*x*x, e.om*x, e.p-2
 	de := 0.0
 	if e.ol != 0 {
-		de = -(rad + m + e.ok) // by definition of the zero
+		de = e.ol * math.Exp(e.b*(at-1)-q*st)
 	}
 	slope := de*(e.b*at-q) - m - 2*rad // dr/d ln a of r = a²E², negative
-	return func(v float64) float64 {
+	return func(v float64) (rate, noise float64) {
 		d := -v * v
 		if d == 0 {
-			return 2 * at / math.Sqrt(-slope)
+			return 2 * at / math.Sqrt(-slope), 0
 		}
 		grow := math.Expm1(d)
-		r := m*math.Expm1(-d) + de*math.Expm1(e.b*at*grow-q*d)
-		if rad != 0 {
-			r += rad * math.Expm1(-2*d)
+		matter, dark := m*math.Expm1(-d), 0.0
+		if de != 0 {
+			dark = de * math.Expm1(e.b*at*grow-q*d)
 		}
-		return 2 * at * (1 + grow) / math.Sqrt(r/-d)
+		if rad != 0 {
+			matter += rad * math.Expm1(-2*d)
+		}
+		r := matter + dark
+		rate = 2 * at * (1 + grow) / math.Sqrt(r/-d)
+		return rate, rounding * rate * (1 + math.Abs(dark/r))
 	}
 }
 
@@ -163,5 +179,6 @@ func (u Universe) Rip() float64 {
 		}
 	}
 	// Constant w: all else is below rounding at a = e⁴⁰, and the rest of the integral is that of a power law.
-	return u.HubbleTime() * (t - 2/e.p*e.timeRate(s))
+	rate, _ := e.timeRate(s)
+	return u.HubbleTime() * (t - 2/e.p*rate)
 }

@@ -113,6 +113,15 @@ func (e *expansion) squared(x, y, a float64) float64 {
 	return rest + e.ol*math.Exp(e.p*y+e.b*(a-1))
 }
 
+// inverse is 1/E and a bound on its rounding error, which grows as E² vanishes by cancellation. Arguments as of
+// squared.
+func (e *expansion) inverse(x, y, a float64) (v, noise float64) {
+	e2 := e.squared(x, y, a)
+	v = 1 / math.Sqrt(e2)
+	terms := ((math.Abs(e.or)*x+math.Abs(e.om))*x + math.Abs(e.ok)) * x * x
+	return v, rounding * v * (1 + terms/e2)
+}
+
 // reduced is r = a²E² = (ȧ/H0)² at s = ln a, and dr/ds, whose sign is that of the acceleration.
 func (e *expansion) reduced(s float64) (r, dr float64) {
 	a := math.Exp(s)
