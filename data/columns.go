@@ -1,6 +1,7 @@
 package data
 
 import (
+	"cmp"
 	"fmt"
 	"maps"
 	"slices"
@@ -69,12 +70,25 @@ func (h headings) resolve(fields []field, columns map[string]string) (map[string
 		case i >= 0:
 			places[f.name] = i
 		case mapped:
-			return nil, &Error{h.file, h.line, name, message("no such column", "the one mapped to "+f.name, h.mapNearest(f.name, name))}
+			return nil, h.missing(name, "the one mapped to "+f.name, f.name, h.free(fields, columns))
 		case !f.optional:
-			return nil, h.missing(f)
+			return nil, h.missing(name, f.what, f.name, h.free(fields, columns))
 		}
 	}
 	return places, nil
+}
+
+// free is the columns that carry none of the fields.
+func (h headings) free(fields []field, columns map[string]string) []string {
+	used := map[string]bool{"": true}
+	for _, f := range fields {
+		name, mapped := columns[f.name]
+		if !mapped {
+			name = f.name
+		}
+		used[name] = true
+	}
+	return slices.DeleteFunc(slices.Clone(h.names), func(name string) bool { return used[name] })
 }
 
 // checkNames refuses to map a name that the kind of table does not know: a silent misspelling would change the fit.
@@ -92,31 +106,49 @@ func (h headings) checkNames(fields []field, columns map[string]string) error {
 	return nil
 }
 
-func (h headings) missing(f field) error {
-	return &Error{h.file, h.line, f.name, message("no such column", f.what, h.mapNearest(f.name, f.name))}
-}
-
-// mapNearest shows how to map the column most likely meant: one that is known to carry the quantity, else the
-// one whose name is nearest.
-func (h headings) mapNearest(ours, wanted string) string {
-	name, known := Recognise(h.names)[ours]
-	if !known {
-		name = nearest(wanted, h.names)
+// missing shows how to map the column most likely meant: one that is known to carry the quantity, else the one
+// whose name is nearest. If none is near it lists a few and leaves the choice to the user.
+func (h headings) missing(name, what, ours string, free []string) error {
+	do := "add it"
+	near := byDistance(name, free)
+	if known, ok := Recognise(free)[ours]; ok {
+		do = fmt.Sprintf("the nearest is %q: columns = { %s = %q }", known, ours, known)
+	} else if len(near) > 0 && distance(name, near[0]) <= farthest {
+		do = fmt.Sprintf("the nearest is %q: columns = { %s = %q }", near[0], ours, near[0])
+	} else if len(near) > 0 {
+		do = fmt.Sprintf("name one, such as %s: columns = { %s = \"…\" }", strings.Join(near[:min(5, len(near))], ", "), ours)
 	}
-	return fmt.Sprintf("the nearest is %q: columns = { %s = %q }", name, ours, name)
+	return &Error{h.file, h.line, name, message("no such column", what, do)}
 }
 
-// nearest is the candidate with the fewest edits from name, letters of the other case counting less than others;
-// the first of several, "" of none.
+// farthest is the distance from which on a name does not resemble another.
+const farthest = 0.5
+
+// nearest is the candidate most like name, the first of several, "" of none.
 func nearest(name string, candidates []string) string {
-	best, least := "", -1
-	for _, c := range candidates {
-		d := 4*edits(strings.ToLower(name), strings.ToLower(c)) + edits(name, c)
-		if c != "" && (least < 0 || d < least) {
-			best, least = c, d
-		}
+	if near := byDistance(name, candidates); len(near) > 0 {
+		return near[0]
 	}
-	return best
+	return ""
+}
+
+// byDistance sorts the candidates by their likeness to name.
+func byDistance(name string, candidates []string) []string {
+	near := slices.Clone(candidates)
+	slices.SortStableFunc(near, func(a, b string) int { return cmp.Compare(distance(name, a), distance(name, b)) })
+	return near
+}
+
+// distance is the share of letters to be edited, from 0 to 1: half as much if one name starts with the other, as
+// abbreviations do, and hardly anything for a different case.
+func distance(a, b string) float64 {
+	s, t := strings.ToLower(a), strings.ToLower(b)
+	longer := float64(max(1, len(s), len(t)))
+	d := float64(edits(s, t)) / longer
+	if s != "" && t != "" && (strings.HasPrefix(s, t) || strings.HasPrefix(t, s)) {
+		d /= 2
+	}
+	return d + 0.01*float64(edits(a, b))/longer
 }
 
 // edits counts the insertions, deletions and substitutions between a and b (Levenshtein 1966).
