@@ -1,6 +1,7 @@
 package figure
 
 import (
+	"bytes"
 	"fmt"
 	"math"
 	"sync"
@@ -51,18 +52,11 @@ var faces = sync.OnceValue(func() [2]face {
 })
 
 func readFace(f *sfnt.Font) face {
-	var b writeBuffer
+	var b bytes.Buffer
 	if _, err := f.WriteSourceTo(nil, &b); err != nil {
 		panic(fmt.Sprintf("figure: reading Liberation Sans: %v", err))
 	}
-	return face{f, b}
-}
-
-type writeBuffer []byte
-
-func (b *writeBuffer) Write(p []byte) (int, error) {
-	*b = append(*b, p...)
-	return len(p), nil
+	return face{f, b.Bytes()}
 }
 
 func hasGlyph(r rune) bool {

@@ -1,0 +1,250 @@
+package figure
+
+import (
+	"errors"
+	"fmt"
+	"math"
+)
+
+// Probability is a probability with its error, or an upper limit.
+type Probability struct {
+	P     float64 // the probability, or the limit; NaN if the series does not have this row
+	Err   float64 // standard error; zero if negligible or for a limit
+	Limit bool    // P is an upper limit
+	Text  Label   // as it is to be printed; nil to format P and Err
+}
+
+// FateSeries is one set of probabilities, such as those within the fitted family.
+type FateSeries struct {
+	Name   Label
+	Values []Probability // one per row
+}
+
+// Fates is the input of the bar chart of probabilities.
+type Fates struct {
+	Rows       []Label // fates in words, top to bottom
+	Series     []FateSeries
+	LimitLevel Label // what the limits are, such as 95% upper limits; nil to say "upper limit"
+	Unfinished bool
+}
+
+// DrawFates draws the probabilities as horizontal bars, on a logarithmic axis if some are small.
+func DrawFates(in Fates, width Width) (*Figure, error) {
+	if err := in.check(); err != nil {
+		return nil, err
+	}
+	n := len(in.Series)
+	bar := 7.
+	pitch := float64(n)*bar + 8
+	if n == 1 {
+		bar, pitch = 9, 17
+	}
+	left := 0.0
+	for _, r := range in.Rows {
+		left = max(left, r.measure(tickSize))
+	}
+	left = min(left, 0.45*width.points()) + 6
+	x := in.axis()
+	bottom := belowAxis(x) + 1
+	key := 11.
+	if n > 1 {
+		key = 11 * float64(n)
+	}
+	if in.hasLimit() {
+		key += 11
+	}
+	f := newFigure("Probability of each fate", width, bottom+pitch*float64(len(in.Rows))+key+10)
+	p := &panel{rect{left, bottom, f.w - in.room(), bottom + pitch*float64(len(in.Rows))}, x, axis{lo: 0, hi: 1}}
+	for _, t := range x.ticks {
+		if t.label != nil && t.at > x.lo {
+			at := p.at(t.at, 0).x
+			f.segment(at, p.y0, at, p.y1, pen{ink: inkRule, width: 0.35})
+		}
+	}
+	for r, name := range in.Rows {
+		middle := p.y1 - pitch*(float64(r)+0.5)
+		f.text(name, p.x0-6, middle, textStyle{size: tickSize, ink: inkText, h: 1, v: 0.5})
+		for s := range in.Series {
+			y := middle + bar*(float64(n-1)/2-float64(s))
+			f.probability(p, in.Series[s].Values[r], y, bar*0.78, s)
+		}
+	}
+	f.segment(p.x0, p.y0, p.x0, p.y1, pen{ink: inkText, width: axisWidth})
+	f.segment(p.x0, p.y0, p.x1, p.y0, pen{ink: inkText, width: axisWidth})
+	f.ticksBelow(p, pen{ink: inkText, width: axisWidth})
+	f.text(x.title, (p.x0+p.x1)/2, p.y0-belowAxis(x)+2.5, textStyle{size: titleSize, ink: inkText, h: 0.5})
+	in.key(f, p)
+	f.stampUnfinished(in.Unfinished)
+	return f, nil
+}
+
+func (in *Fates) check() error {
+	if len(in.Rows) == 0 || len(in.Series) == 0 {
+		return errors.New("figure: no fates to draw")
+	}
+	for _, s := range in.Series {
+		if len(s.Values) != len(in.Rows) {
+			return fmt.Errorf("figure: %s: %d probabilities for %d fates", s.Name, len(s.Values), len(in.Rows))
+		}
+		for i, v := range s.Values {
+			if v.P < 0 || v.P > 1+1e-9 || v.Err < 0 {
+				return fmt.Errorf("figure: %s: probability %g ± %g of %s", s.Name, v.P, v.Err, in.Rows[i])
+			}
+		}
+	}
+	return nil
+}
+
+// axis runs from 0 to 1, or over the decades down to the smallest value.
+func (in *Fates) axis() axis {
+	least := 1.0
+	for _, s := range in.Series {
+		for _, v := range s.Values {
+			if v.P > 0 {
+				least = min(least, v.P)
+			}
+		}
+	}
+	title := Plain("probability")
+	if least > 0.02 {
+		return axis{lo: 0, hi: 1, ticks: linearTicks(0, 1, 5), title: title}
+	}
+	lo := math.Pow(10, math.Floor(math.Log10(max(least, 1e-12))-0.3))
+	return axis{lo: lo, hi: 1, log: true, ticks: logTicks(lo, 1), title: title}
+}
+
+func (in *Fates) hasLimit() bool {
+	for _, s := range in.Series {
+		for _, v := range s.Values {
+			if v.Limit {
+				return true
+			}
+		}
+	}
+	return false
+}
+
+// room is the width of the widest number at the right.
+func (in *Fates) room() float64 {
+	w := 0.0
+	for _, s := range in.Series {
+		for _, v := range s.Values {
+			w = max(w, v.label().measure(tickSize))
+		}
+	}
+	return w + 8
+}
+
+// label is the number in print.
+func (v Probability) label() Label {
+	switch {
+	case v.Text != nil:
+		return v.Text
+	case math.IsNaN(v.P):
+		return Plain("–")
+	case v.Limit:
+		return append(Plain("< "), scientific(v.P, 1)...)
+	case v.Err > 0:
+		d := decimalsOf(v.Err)
+		if v.P < 1e-3 {
+			return scientific(v.P, 2)
+		}
+		return Plain(decimal(v.P, d) + " ± " + decimal(v.Err, d))
+	}
+	return scientific(v.P, 2)
+}
+
+// decimalsOf shows two digits of an error, or one from 0.355 of a power of ten on (Particle Data Group, Review of
+// Particle Physics, Introduction, §5.3).
+func decimalsOf(err float64) int {
+	e := math.Floor(math.Log10(err))
+	d := int(-e)
+	if err/math.Pow(10, e) < 3.55 {
+		d++
+	}
+	return max(0, d)
+}
+
+// scientific writes v with the given number of digits, as a decimal unless small.
+func scientific(v float64, digits int) Label {
+	if v <= 0 {
+		return Plain("0")
+	}
+	e := int(math.Floor(math.Log10(v)))
+	if e >= -3 {
+		return Plain(decimal(v, max(0, digits-1-e)))
+	}
+	return Markup(fmt.Sprintf("%s×10^{−%d}", decimal(v/math.Pow(10, float64(e)), digits-1), -e))
+}
+
+// probability draws one bar: filled with an error, or open with an arrow to the left for a limit.
+func (f *Figure) probability(p *panel, v Probability, y, h float64, series int) {
+	f.text(v.label(), p.x1+6, y, textStyle{size: tickSize, ink: inkText, v: 0.5})
+	if math.IsNaN(v.P) || v.P <= 0 {
+		return
+	}
+	end := p.at(max(v.P, p.x.lo), 0).x
+	r := rect{p.x0, y - h/2, max(end, p.x0+0.5), y + h/2}
+	if v.Limit {
+		f.stroke([]line{{pts: []pt{{r.x0, r.y0}, {r.x1, r.y0}, {r.x1, r.y1}, {r.x0, r.y1}}}},
+			pen{ink: lineInk(series), width: 0.6, dash: []float64{1.6, 1.2}})
+		f.arrow(r.x1, y, max(r.x1-14, r.x0+1), lineInk(series))
+		return
+	}
+	f.fill([]line{r.outline()}, fillInk(series), 0.8)
+	if series%2 == 1 { // told apart in grey, too
+		f.stroke(hatch([]line{r.outline()}, math.Pi/4, 2.4), pen{ink: lineInk(series), width: 0.4})
+	}
+	f.stroke([]line{r.outline()}, pen{ink: lineInk(series), width: 0.5})
+	if v.Err > 0 {
+		f.whisker(p, v.P-v.Err, v.P+v.Err, y, h*0.35)
+	}
+}
+
+// whisker is a horizontal error bar, cut at the ends of the axis.
+func (f *Figure) whisker(p *panel, lo, hi, y, cap float64) {
+	a, b := p.at(max(lo, p.x.lo), 0).x, p.at(min(hi, p.x.hi), 0).x
+	k := pen{ink: inkText, width: 0.8}
+	f.segment(a, y, b, y, k)
+	if lo > p.x.lo {
+		f.segment(a, y-cap, a, y+cap, k)
+	}
+	if hi < p.x.hi {
+		f.segment(b, y-cap, b, y+cap, k)
+	}
+}
+
+func (f *Figure) arrow(from, y, to float64, k ink) {
+	f.segment(from, y, to+2, y, pen{ink: k, width: 0.8})
+	f.fill([]line{{pts: []pt{{to, y}, {to + 4, y + 1.8}, {to + 4, y - 1.8}}, closed: true}}, k, 1)
+}
+
+// key names the series and explains limits above the bars.
+func (in *Fates) key(f *Figure, p *panel) {
+	y := p.y1 + 8
+	if in.hasLimit() {
+		l := in.LimitLevel
+		if l == nil {
+			l = Plain("upper limit")
+		}
+		r := rect{p.x0, y - 2.6, p.x0 + 14, y + 2.6}
+		f.stroke([]line{{pts: []pt{{r.x0, r.y0}, {r.x1, r.y0}, {r.x1, r.y1}, {r.x0, r.y1}}}},
+			pen{ink: inkSoft, width: 0.6, dash: []float64{1.6, 1.2}})
+		f.arrow(r.x1, y, r.x0+2, inkSoft)
+		f.text(l, r.x1+5, y, textStyle{size: noteSize, ink: inkText, v: 0.5})
+		y += 11
+	}
+	if len(in.Series) < 2 {
+		return
+	}
+	for s := len(in.Series) - 1; s >= 0; s-- {
+		r := rect{p.x0, y - 2.6, p.x0 + 14, y + 2.6}
+		f.fill([]line{r.outline()}, fillInk(s), 0.8)
+		if s%2 == 1 {
+			f.stroke(hatch([]line{r.outline()}, math.Pi/4, 2.4), pen{ink: lineInk(s), width: 0.4})
+		}
+		f.stroke([]line{r.outline()}, pen{ink: lineInk(s), width: 0.5})
+		f.text(in.Series[s].Name, r.x1+5, y, textStyle{size: noteSize, ink: inkText, v: 0.5})
+		y += 11
+	}
+}

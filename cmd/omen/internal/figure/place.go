@@ -1,0 +1,97 @@
+package figure
+
+import "math"
+
+// occupied is a raster of the page that remembers where something is drawn, so that labels keep clear of it.
+type occupied struct {
+	frame  rect
+	nx, ny int
+	cost   []float32
+}
+
+const rasterStep = 1.5 // points
+
+func newOccupied(frame rect) *occupied {
+	o := &occupied{frame: frame, nx: int(frame.w()/rasterStep) + 1, ny: int(frame.h()/rasterStep) + 1}
+	o.cost = make([]float32, o.nx*o.ny)
+	return o
+}
+
+func (o *occupied) add(p pt, cost float32) {
+	i, j := int((p.x-o.frame.x0)/rasterStep), int((p.y-o.frame.y0)/rasterStep)
+	if p.x >= o.frame.x0 && p.y >= o.frame.y0 && i < o.nx && j < o.ny {
+		o.cost[j*o.nx+i] = max(o.cost[j*o.nx+i], cost)
+	}
+}
+
+// lines marks the cells that lines pass through.
+func (o *occupied) lines(path []line, cost float32) {
+	for _, l := range clipStroke(path, o.frame) {
+		for i := 1; i < len(l.pts); i++ {
+			a, b := l.pts[i-1], l.pts[i]
+			n := int(math.Hypot(b.x-a.x, b.y-a.y)/rasterStep*2) + 1
+			for k := 0; k <= n; k++ {
+				o.add(along(a, b, float64(k)/float64(n)), cost)
+			}
+		}
+	}
+}
+
+// area marks the inside of polygons.
+func (o *occupied) area(path []line, cost float32) {
+	o.lines(hatch(path, 0, rasterStep), cost)
+}
+
+// price of putting a quadrilateral there: the cost of what it covers, and infinite if it leaves the frame.
+func (o *occupied) price(box line) float64 {
+	for _, p := range box.pts {
+		if !o.frame.holds(p) {
+			return math.Inf(1)
+		}
+	}
+	sum := 0.0
+	const n = 24
+	for a := 0; a <= n; a++ {
+		left, right := along(box.pts[0], box.pts[1], float64(a)/n), along(box.pts[3], box.pts[2], float64(a)/n)
+		for b := 0; b <= 6; b++ {
+			q := along(left, right, float64(b)/6)
+			i, j := int((q.x-o.frame.x0)/rasterStep), int((q.y-o.frame.y0)/rasterStep)
+			if i < o.nx && j < o.ny {
+				sum += float64(o.cost[j*o.nx+i])
+			}
+		}
+	}
+	return sum / (7 * (n + 1))
+}
+
+// spot is a place for a label and what speaks against it beside what it would cover.
+type spot struct {
+	x, y    float64
+	style   textStyle
+	penalty float64
+}
+
+// put draws the label at the cheapest of the spots and marks it as taken. Spots where it would leave the frame
+// are out; false if none is left or all cost more than most.
+func (c *canvas) put(o *occupied, l Label, spots []spot, most float64) bool {
+	best, price := -1, most
+	for i, s := range spots {
+		if v := o.price(labelBox(l, s)) + s.penalty; v < price {
+			best, price = i, v
+		}
+	}
+	if best < 0 {
+		return false
+	}
+	s := spots[best]
+	o.area([]line{labelBox(l, s)}, 1)
+	c.text(l, s.x, s.y, s.style)
+	return true
+}
+
+func labelBox(l Label, s spot) line {
+	w := l.measure(s.style.size)
+	sin, cos := math.Sincos(s.style.angle)
+	dx, dy := -s.style.h*w, -s.style.v*capHeight*s.style.size
+	return textBox(pt{s.x + dx*cos - dy*sin, s.y + dx*sin + dy*cos}, w, s.style)
+}

@@ -1,0 +1,285 @@
+package figure
+
+import (
+	"errors"
+	"fmt"
+	"math"
+
+	"omen/cmd/omen/internal/density"
+)
+
+// Set is the posterior of one data set, one combination or one run in a plane: draws, or a tabulated density.
+type Set struct {
+	Name    Label
+	X, Y    []float64        // draws
+	Weights []float64        // of the draws; nil for equal ones
+	ESS     float64          // how many independent draws they are worth; zero if they are independent
+	Density *density.Surface // instead of draws, a density from quadrature
+	Best    *[2]float64      // the best fit, marked by a cross; nil for none
+}
+
+// Divider is a line between two kinds of universe. Walking along it, Left and Right are what lies on either side.
+type Divider struct {
+	X, Y        []float64
+	Left, Right Label
+	Exclude     bool // hatch what lies to the left, as excluded by assumption
+}
+
+// Plane is the input of the figure of regions in a plane.
+type Plane struct {
+	X, Y           Label         // axis titles, with unit
+	XEdges, YEdges density.Edges // hard edges of the prior; the zero value stands for none
+	Sets           []Set         // drawn in this order, the combination last
+	Dividers       []Divider
+	Frame          *[4]float64 // lowest and highest x, lowest and highest y; nil to fit the regions
+	Unfinished     bool
+}
+
+// outlines is a set ready to draw.
+type outlines struct {
+	name     Label
+	r68, r95 []density.Loop
+	best     *[2]float64
+}
+
+// DrawPlane draws the regions of highest density that hold 68% and 95% of each set.
+func DrawPlane(in Plane, width Width) (*Figure, error) {
+	if len(in.Sets) == 0 {
+		return nil, errors.New("figure: a plane needs at least one set of draws")
+	}
+	var sets []outlines
+	for _, s := range in.Sets {
+		o, err := s.outlines(edges(in.XEdges), edges(in.YEdges))
+		if err != nil {
+			return nil, fmt.Errorf("%s: %w", s.Name, err)
+		}
+		sets = append(sets, o)
+	}
+	height := 0.9 * width.points()
+	if width == Page {
+		height = 0.62 * width.points()
+	}
+	f := newFigure("Regions that hold 68% and 95% of the posterior", width, height)
+	p := in.panel(f, sets)
+	in.draw(f, p, sets)
+	f.stampUnfinished(in.Unfinished)
+	return f, nil
+}
+
+// edges turns the zero value into no edges.
+func edges(e density.Edges) density.Edges {
+	if e == (density.Edges{}) {
+		return density.NoEdges()
+	}
+	return e
+}
+
+func (s *Set) outlines(ex, ey density.Edges) (outlines, error) {
+	d := s.Density
+	if d == nil {
+		var err error
+		if d, err = density.Estimate2(s.X, s.Y, s.Weights, s.ESS, ex, ey); err != nil {
+			return outlines{}, err
+		}
+	}
+	return outlines{s.Name, d.Region(0.68), d.Region(0.95), s.Best}, nil
+}
+
+// panel lays the axes out around the regions.
+func (in *Plane) panel(f *Figure, sets []outlines) *panel {
+	x, y := in.frame(sets)
+	x.title, y.title = in.X, in.Y
+	r := rect{0, 0, f.w - 7, f.h - aboveAxis - 3}
+	x.ticks = linearTicks(x.lo, x.hi, 5)
+	y.ticks = linearTicks(y.lo, y.hi, 5)
+	r.x0, r.y0 = 2+leftOfAxis(y), 1+belowAxis(x)
+	return &panel{r, x, y}
+}
+
+// frame is the box around all 95% regions with a margin, cut at the prior's edges.
+func (in *Plane) frame(sets []outlines) (x, y axis) {
+	if in.Frame != nil {
+		v := in.Frame
+		return axis{lo: v[0], hi: v[1]}, axis{lo: v[2], hi: v[3]}
+	}
+	box := rect{math.Inf(1), math.Inf(1), math.Inf(-1), math.Inf(-1)}
+	for _, s := range sets {
+		for _, l := range s.r95 {
+			for _, p := range l {
+				box = rect{min(box.x0, p.X), min(box.y0, p.Y), max(box.x1, p.X), max(box.y1, p.Y)}
+			}
+		}
+	}
+	return cutAxis(padded(box.x0, box.x1, 0.18), edges(in.XEdges)), cutAxis(padded(box.y0, box.y1, 0.18), edges(in.YEdges))
+}
+
+func cutAxis(a axis, e density.Edges) axis {
+	a.lo, a.hi = max(a.lo, e.Lo), min(a.hi, e.Hi)
+	return a
+}
+
+func (in *Plane) draw(f *Figure, p *panel, sets []outlines) {
+	taken := newOccupied(p.rect)
+	for _, d := range in.Dividers {
+		if d.Exclude {
+			area := clipFill([]line{d.leftSide(p)}, p.rect)
+			f.fill(area, inkRule, 0.18)
+			f.stroke(hatch(area, math.Pi/4, 4), pen{ink: inkRule, width: 0.35})
+		}
+		taken.lines([]line{p.path(d.X, d.Y)}, 1)
+	}
+	for _, d := range in.Dividers {
+		f.curve(p, d.X, d.Y, pen{ink: inkSoft, width: 0.55, dash: []float64{3, 2}})
+	}
+	for i, s := range sets {
+		f.region(p, s.r95, i, 0.28)
+		f.region(p, s.r68, i, 0.42)
+		taken.area(loops(p, s.r95), 0.8)
+	}
+	for i, s := range sets {
+		f.regionLines(p, s, i)
+	}
+	f.axes(p)
+	in.nameSets(f, p, sets, taken)
+	for _, d := range in.Dividers {
+		f.nameSides(p, d, taken)
+	}
+}
+
+// loops maps the outlines of a region to the page.
+func loops(p *panel, region []density.Loop) []line {
+	var out []line
+	for _, l := range region {
+		q := line{closed: true, pts: make([]pt, len(l))}
+		for i, v := range l {
+			q.pts[i] = p.at(v.X, v.Y)
+		}
+		out = append(out, q)
+	}
+	return out
+}
+
+func (f *Figure) region(p *panel, region []density.Loop, series int, alpha float64) {
+	f.fill(thin(clipFill(loops(p, region), p.rect)), fillInk(series), alpha)
+}
+
+// regionLines strokes the outlines in the dashes of the series and marks the best fit.
+func (f *Figure) regionLines(p *panel, s outlines, series int) {
+	k := pen{ink: lineInk(series), width: 0.8, dash: dashes(series)}
+	f.stroke(clipStroke(thin(loops(p, s.r95)), p.rect), k)
+	f.stroke(clipStroke(thin(loops(p, s.r68)), p.rect), k)
+	if s.best != nil && p.holds(p.at(s.best[0], s.best[1])) {
+		f.marks([]pt{p.at(s.best[0], s.best[1])}, cross, 4, lineInk(series))
+	}
+}
+
+// leftSide is the part of the plane to the left of a divider: the line closed around the frame, at a distance.
+func (d *Divider) leftSide(p *panel) line {
+	l := p.path(d.X, d.Y)
+	n := len(l.pts)
+	a, b := l.pts[0], l.pts[n-1]
+	dir := pt{b.x - a.x, b.y - a.y}
+	norm := math.Hypot(dir.x, dir.y)
+	far := 4 * (p.w() + p.h())
+	out := pt{-dir.y / norm * far, dir.x / norm * far}
+	l.pts = append(l.pts, pt{b.x + out.x, b.y + out.y}, pt{a.x + out.x, a.y + out.y})
+	l.closed = true
+	return l
+}
+
+// nameSets writes the name of each set next to its region, with the key to the two shades once.
+func (in *Plane) nameSets(f *Figure, p *panel, sets []outlines, taken *occupied) {
+	for i, s := range sets {
+		var spots []spot
+		for _, l := range loops(p, s.r95) {
+			for k := 0; k < len(l.pts); k += max(1, len(l.pts)/60) {
+				spots = append(spots, around(l.pts[k], lineInk(i))...)
+			}
+		}
+		if !f.put(taken, s.name, spots, 0.6) {
+			f.put(taken, s.name, corners(p, lineInk(i)), 10)
+		}
+	}
+}
+
+// around are places for a label beside a point of an outline, the nearer ones preferred.
+func around(c pt, k ink) []spot {
+	var out []spot
+	for _, d := range [3]float64{4, 8, 14} {
+		for a := range 8 {
+			sin, cos := math.Sincos(float64(a) * math.Pi / 4)
+			s := textStyle{size: titleSize, ink: k, h: 0.5 - 0.5*cos, v: 0.5 - 0.5*sin}
+			out = append(out, spot{c.x + d*cos, c.y + d*sin, s, d * 0.004})
+		}
+	}
+	return out
+}
+
+func corners(p *panel, k ink) []spot {
+	s := textStyle{size: titleSize, ink: k}
+	return []spot{
+		{p.x1 - 5, p.y1 - 5, textStyle{size: s.size, ink: k, h: 1, v: 1}, 0},
+		{p.x0 + 5, p.y1 - 5, textStyle{size: s.size, ink: k, v: 1}, 0.01},
+		{p.x1 - 5, p.y0 + 5, textStyle{size: s.size, ink: k, h: 1}, 0.02},
+		{p.x0 + 5, p.y0 + 5, s, 0.03},
+	}
+}
+
+// nameSides writes what lies on either side of a divider along it.
+func (f *Figure) nameSides(p *panel, d Divider, taken *occupied) {
+	l := clipStroke([]line{p.path(d.X, d.Y)}, p.rect)
+	for _, side := range [2]struct {
+		name Label
+		sign float64
+	}{{d.Left, 1}, {d.Right, -1}} {
+		if len(side.name) > 0 {
+			f.put(taken, side.name, alongLine(l, side.sign, side.name.measure(noteSize)), 0.3)
+		}
+	}
+}
+
+// alongLine are places for a label of width w parallel to a line, on its left for sign +1.
+func alongLine(path []line, sign, w float64) []spot {
+	var out []spot
+	for _, l := range path {
+		arc, total := arcLengths(l.pts)
+		for s := w / 2; s < total-w/2; s += 3 {
+			a, b := atArc(l.pts, arc, s-w/2), atArc(l.pts, arc, s+w/2)
+			angle := math.Atan2(b.y-a.y, b.x-a.x)
+			off := pt{-math.Sin(angle) * sign, math.Cos(angle) * sign}
+			m := atArc(l.pts, arc, s)
+			bend := math.Abs((m.x-a.x)*off.x + (m.y-a.y)*off.y)
+			v := 0.0 // the text stands on the line
+			if math.Cos(angle) < 0 {
+				angle += math.Pi
+				v = 1 - v
+			}
+			if sign < 0 {
+				v = 1 - v
+			}
+			d := 2.8 + bend
+			// The middle of the line is preferred a little.
+			out = append(out, spot{m.x + d*off.x, m.y + d*off.y,
+				textStyle{size: noteSize, ink: inkSoft, h: 0.5, v: v, angle: angle},
+				0.02*bend + 0.03*math.Abs(2*s/total-1)})
+		}
+	}
+	return out
+}
+
+func arcLengths(p []pt) ([]float64, float64) {
+	out := make([]float64, len(p))
+	for i := 1; i < len(p); i++ {
+		out[i] = out[i-1] + math.Hypot(p[i].x-p[i-1].x, p[i].y-p[i-1].y)
+	}
+	return out, out[len(out)-1]
+}
+
+func atArc(p []pt, arc []float64, s float64) pt {
+	for i := 1; i < len(p); i++ {
+		if s <= arc[i] {
+			return along(p[i-1], p[i], (s-arc[i-1])/(arc[i]-arc[i-1]))
+		}
+	}
+	return p[len(p)-1]
+}
