@@ -44,9 +44,11 @@ func Integrate(ctx context.Context, p Problem, o Options) (*Result, error) {
 	for i, u := range mode.u {
 		r.Mode = append(r.Mode, p.Lo[i]+u*(p.Hi[i]-p.Lo[i]))
 	}
-	g, err := pilot(ctx, p, s.shape(mode), workers, r)
-	if err != nil {
-		return nil, err
+	g := s.shape(mode)
+	if !s.gaussian(g) {
+		if g, err = pilot(ctx, p, g, workers, r); err != nil {
+			return nil, err
+		}
 	}
 	r.Evaluations += s.evals
 	return r, r.passes(ctx, p, o, g, workers)
@@ -66,6 +68,7 @@ func pilot(ctx context.Context, p Problem, g guess, workers []*worker, r *Result
 		return g, fmt.Errorf("the density at (%g) is finite, but it has no mass around it: %w", r.Mode, ErrNoSupport)
 	}
 	g.mean, g.cov = n.moments()
+	g.mass = o.val[0]
 	for i := range g.mean { // never so narrow that a cut cannot be told from its neighbour
 		least := 1e-9 * (p.Hi[i] - p.Lo[i])
 		g.cov.SetSym(i, i, math.Max(g.cov.At(i, i), least*least))
@@ -90,6 +93,7 @@ func (r *Result) passes(ctx context.Context, p Problem, o Options, g guess, work
 		r.Evaluations += out.evals
 		relative := out.err[0] / out.val[0]
 		if i == 0 {
+			relative += slack * o.Tolerance
 			r.LogEvidence = Estimate{q.ref + math.Log(out.val[0]), relative}
 			r.Nodes = newNodes(len(p.Lo), p.Classes, q.ref, out.nodes)
 			r.classes(&out, p.Classes)
@@ -104,6 +108,10 @@ func (r *Result) passes(ctx context.Context, p Problem, o Options, g guess, work
 	}
 	return nil
 }
+
+// slack is the share of the tolerance that misplaced borders and what lies in the gaps between pieces may cost,
+// which no rule sees.
+const slack = 0.1
 
 // clip is how far below the mode, in ln p, the passes after the first stop looking: 6.6 standard deviations of
 // a Gaussian, beyond which there is 4e-11 of it. The first pass has searched the rest.

@@ -21,7 +21,8 @@ type linePiece struct {
 	t      [points]float64
 	logp   [points]float64
 	label  [points]int8
-	la, lb int8 // labels just inside the ends
+	la, lb int8    // labels just inside the ends
+	end    float64 // the larger ln p there
 }
 
 // line integrates along the innermost coordinate, the others being fixed in w.x.
@@ -31,15 +32,15 @@ func (w *worker) line() integral {
 	w.tol = w.tolerance(level, nil)
 	cuts := w.cuts(level)
 	nudge := 1e-9 * (cuts[len(cuts)-1] - cuts[0])
-	_, la := w.at(cuts[0] + nudge)
+	va, la := w.at(cuts[0] + nudge)
 	for i, b := range cuts[1:] {
 		edge := b
 		if i == len(cuts)-2 {
 			edge -= nudge // a density may exclude the edge of its own box
 		}
-		_, lb := w.at(edge)
-		w.place(cuts[i], b, la, lb, 0)
-		la = lb
+		vb, lb := w.at(edge)
+		w.place(cuts[i], b, linePiece{la: la, lb: lb, end: math.Max(va, vb)}, 0)
+		va, la = vb, lb
 	}
 	w.refineLine(level)
 	return w.closeLine()
@@ -58,9 +59,9 @@ func (w *worker) refineLine(level int) {
 		last := len(w.cores) - 1
 		w.cores[i], w.pieces[i] = w.cores[last], w.pieces[last]
 		w.cores, w.pieces = w.cores[:last], w.pieces[:last]
-		mid, label := (c.a+c.b)/2, p.label[points/2]
-		w.place(c.a, mid, p.la, label, 0)
-		w.place(mid, c.b, label, p.lb, 0)
+		mid, label, end := (c.a+c.b)/2, p.label[points/2], math.Max(p.end, p.logp[points/2])
+		w.place(c.a, mid, linePiece{la: p.la, lb: label, end: end}, 0)
+		w.place(mid, c.b, linePiece{la: label, lb: p.lb, end: end}, 0)
 	}
 }
 
@@ -91,14 +92,13 @@ func (w *worker) classOf() int8 {
 }
 
 // place samples the piece [a, b] and keeps it, after splitting it at the borders it contains.
-func (w *worker) place(a, b float64, la, lb int8, depth int) {
-	p := linePiece{la: la, lb: lb}
+func (w *worker) place(a, b float64, p linePiece, depth int) {
 	h, mid := (b-a)/2, (a+b)/2
-	mixed := la != lb
+	mixed := p.la != p.lb
 	for i, u := range abscissa {
 		p.t[i] = mid + h*u
 		p.logp[i], p.label[i] = w.at(p.t[i])
-		mixed = mixed || p.label[i] != la
+		mixed = mixed || p.label[i] != p.la
 	}
 	if mixed && depth < maxSplits && w.matters(&p, b-a) {
 		w.splitLine(a, b, &p, depth)
@@ -110,6 +110,7 @@ func (w *worker) place(a, b float64, la, lb int8, depth int) {
 // matters tells whether a border inside the piece could make a difference at the tolerance of the line.
 func (w *worker) matters(p *linePiece, width float64) bool {
 	top, _, _ := foreseen(&p.t, &p.logp)
+	top = math.Max(top, p.end)
 	least := w.tol[0]
 	for s := 1; s < w.slots; s++ {
 		least = math.Min(least, w.tol[s])
@@ -121,9 +122,9 @@ func (w *worker) matters(p *linePiece, width float64) bool {
 // without support need no samples.
 func (w *worker) splitLine(a, b float64, p *linePiece, depth int) {
 	from, left := a, a // start of the current part, latest point known to carry its label
-	label, level := p.la, math.Inf(-1)
+	label, level := p.la, p.end
 	for i := 0; i <= points; i++ {
-		right, rl, rv := b, p.lb, math.Inf(-1)
+		right, rl, rv := b, p.lb, p.end
 		if i < points {
 			right, rl, rv = p.t[i], p.label[i], p.logp[i]
 		}
@@ -139,7 +140,7 @@ func (w *worker) splitLine(a, b float64, p *linePiece, depth int) {
 
 func (w *worker) part(a, b float64, label int8, depth int) {
 	if label != outside && b > a {
-		w.place(a, b, label, label, depth+1)
+		w.place(a, b, linePiece{la: label, lb: label, end: math.Inf(-1)}, depth+1)
 	}
 }
 
@@ -180,14 +181,11 @@ func (w *worker) keep(a, b float64, p *linePiece) {
 	}
 	c := core{a: a, b: b}
 	c.sumRule(&f, w.slots)
-	if top, vertex, i := foreseen(&p.t, &p.logp); vertex > top+hidden {
-		c.err[0] += w.hiddenMass(vertex) * (b - a) / 2 * kronrod[i]
+	if top, bound, i := foreseen(&p.t, &p.logp); bound > top {
+		c.err[0] += w.hiddenMass(bound) * (b - a) / 2 * kronrod[i]
 	}
 	w.cores, w.pieces = append(w.cores, c), append(w.pieces, *p)
 }
-
-// hidden is by how much a parabola must overtop the largest sample before a hidden peak is suspected.
-const hidden = 0.7
 
 // closeLine adds up the pieces and hands on their nodes.
 func (w *worker) closeLine() (r integral) {
@@ -199,8 +197,8 @@ func (w *worker) closeLine() (r integral) {
 			r.val[s] += c.val[s]
 			r.err[s] += c.err[s]
 		}
-		_, vertex, _ := foreseen(&p.t, &p.logp)
-		r.peak = math.Max(r.peak, vertex)
+		_, bound, _ := foreseen(&p.t, &p.logp)
+		r.peak = math.Max(r.peak, math.Min(bound, w.ref+3))
 		w.closePiece(c, p, &r, axis)
 	}
 	return r

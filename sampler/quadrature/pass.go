@@ -30,6 +30,7 @@ type guess struct {
 	ref  float64
 	mean []float64
 	cov  *mat.SymDense
+	mass float64 // the integral, in units of exp(ref); 0 when not known
 }
 
 // newPass orders the coordinates with first outermost and the others after it, cyclically. The Cholesky
@@ -55,16 +56,25 @@ func newPass(p Problem, first int, g guess) *pass {
 	}
 	q.chol = new(mat.TriDense)
 	chol.LTo(q.chol)
-	q.guessScales()
+	q.guessScales(g.mass)
 	return q
 }
 
-// guessScales takes the mass for a Gaussian of height 1.
-func (p *pass) guessScales() {
-	s := 1.0
-	for l := p.dim - 1; l >= 0; l-- {
-		s *= math.Min(math.Sqrt(2*math.Pi)*p.chol.At(l, l), p.hi[l]-p.lo[l])
-		p.scale[l][0] = s
+// guessScales derives what an integral at each level amounts to from the mass of the whole, or from that of a
+// Gaussian of height 1.
+func (p *pass) guessScales(mass float64) {
+	var width [3]float64
+	gaussian := 1.0
+	for l := range p.dim {
+		width[l] = math.Min(math.Sqrt(2*math.Pi)*p.chol.At(l, l), p.hi[l]-p.lo[l])
+		gaussian *= width[l]
+	}
+	if mass == 0 {
+		mass = gaussian
+	}
+	for l := range p.dim {
+		p.scale[l][0] = mass
+		mass /= width[l]
 	}
 }
 

@@ -132,34 +132,39 @@ func (c *core) sumRule(f *[points]vec, slots int) {
 	}
 }
 
-// foreseen fits a parabola through the largest of the values y at t and its two neighbours and returns its
-// vertex; the largest value itself where the vertex is not in the piece or just outside, in the gap to the
-// first node of the next. A vertex far above the value says that a peak narrower than the spacing of the
-// nodes hides there: ln p, unlike p, can be seen from a long way off.
-func foreseen(t, y *[points]float64) (largest, vertex float64, at int) {
+// foreseen looks for a peak hidden between the nodes t by what ln p does beside it: ln p, unlike p, can be
+// seen from a long way off. It returns the largest of the values y and the highest point where the secants of
+// the nodes to the left and to the right meet within one interval: an upper bound where ln p is concave. A
+// bound far above the values at the nodes beside it (at is one of them) says that they are too far apart.
+func foreseen(t, y *[points]float64) (largest, bound float64, at int) {
+	largest = y[0]
 	for i, v := range y {
-		if v > y[at] {
-			at = i
+		if v > largest {
+			largest, at = v, i
 		}
 	}
-	largest, vertex = y[at], y[at]
-	i := min(max(at, 1), points-2)
-	if math.IsInf(y[i-1], -1) || math.IsInf(y[i], -1) || math.IsInf(y[i+1], -1) {
-		return largest, vertex, at
+	bound = largest
+	offer := func(v float64, i int) {
+		if v > bound && v > math.Max(y[i], y[i-1])+hidden {
+			bound, at = v, i
+		}
 	}
-	l, r := t[i]-t[i-1], t[i+1]-t[i]
-	sl, sr := (y[i]-y[i-1])/l, (y[i+1]-y[i])/r
-	c := (sr - sl) / (l + r)
-	if c >= 0 {
-		return largest, vertex, at
+	const last = points - 1
+	for i := 2; i < last; i++ {
+		sl, sr := (y[i-1]-y[i-2])/(t[i-1]-t[i-2]), (y[i+1]-y[i])/(t[i+1]-t[i])
+		if sl > 0 && sr < 0 && !math.IsInf(sl, 0) && !math.IsInf(sr, 0) {
+			x := (y[i] - y[i-1] + sl*t[i-1] - sr*t[i]) / (sl - sr)
+			offer(y[i-1]+sl*(min(max(x, t[i-1]), t[i])-t[i-1]), i)
+		}
 	}
-	m := (sl*r + sr*l) / (l + r)
-	gap := 0.015 * (t[points-1] - t[0])
-	if x := t[i] - m/(2*c); x > t[0]-gap && x < t[points-1]+gap {
-		vertex = math.Max(largest, y[i]-m*m/(4*c))
-	}
-	return largest, vertex, at
+	gap := 0.01 * (t[last] - t[0]) // from the outer nodes to the outer nodes of the next pieces
+	offer(y[0]+gap*(y[0]-y[1])/(t[1]-t[0]), 1)
+	offer(y[last]+gap*(y[last]-y[last-1])/(t[last]-t[last-1]), last)
+	return largest, bound, at
 }
+
+// hidden is by how much ln p must be foreseen to rise above the nodes before a hidden peak is suspected.
+const hidden = 0.7
 
 // worst returns the piece with the largest error relative to the tolerances, or -1 when every sum of errors
 // is within its tolerance. A piece too narrow to be bisected is passed over.

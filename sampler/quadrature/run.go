@@ -45,7 +45,7 @@ func (p *pass) run(ctx context.Context, workers []*worker, maxEvals int) (o outc
 		return o, ctx.Err()
 	}
 	o.integral, o.nodes = l.result(nil)
-	o.evals = evaluations(workers); println("PASS", p.order[0], o.evals, len(l.pieces), o.err[0]/o.val[0], o.converged)
+	o.evals = evaluations(workers)
 	for _, q := range l.pieces {
 		c := curvePiece{core: q.core}
 		for k := range q.within {

@@ -169,3 +169,27 @@ func (s *search) curvature(c candidate, h []float64) *mat.SymDense {
 	}
 	return m
 }
+
+// gaussian tells whether the density is close to the Gaussian of the guess two and four standard deviations
+// away from the mode, along each axis of its Cholesky factor and inside the box: then no pilot is needed.
+func (s *search) gaussian(g guess) bool {
+	d := len(g.mean)
+	var chol mat.Cholesky
+	if !chol.Factorize(g.cov) {
+		return false
+	}
+	var l mat.TriDense
+	chol.LTo(&l)
+	u := make([]float64, d)
+	for axis := range d {
+		for _, k := range [...]float64{-4, -2, 2, 4} {
+			for i := range u {
+				u[i] = (g.mean[i] + k*l.At(i, axis) - s.lo[i]) / (s.hi[i] - s.lo[i])
+			}
+			if fall := g.ref - s.value(u); !(math.Abs(fall/(k*k/2)-1) < 0.3) {
+				return false
+			}
+		}
+	}
+	return true
+}
