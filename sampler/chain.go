@@ -232,6 +232,7 @@ type View struct {
 	stride       int // rows of x from one row of the view to the next
 	n            int // rows
 	x, logp      [][]float64
+	accepted     []int // since the row before; known for the rows of an Observer alone
 }
 
 // After returns the part of a view later than a step: what remains when that
@@ -273,6 +274,26 @@ func (v View) Thin(k int) View {
 
 // Steps returns the number of steps in the view.
 func (v View) Steps() int { return v.n }
+
+// Number returns the number of the i-th step of the view among those of the run.
+func (v View) Number(i int) int { return v.first + i*v.spacing }
+
+// Step returns the positions and log-densities of every ensemble at the i-th
+// step of the view: walkers × parameters and walkers. They are the view's own
+// memory.
+func (v View) Step(i int) (x, logp [][]float64) {
+	x, logp = make([][]float64, len(v.x)), make([][]float64, len(v.x))
+	for m := range v.x {
+		j := i * v.stride * v.walkers
+		x[m] = v.x[m][j*v.dim : (j+v.walkers)*v.dim]
+		logp[m] = v.logp[m][j : j+v.walkers]
+	}
+	return x, logp
+}
+
+// Accepted returns how many proposals were accepted between the i-th step of a
+// view that an [Observer] got and the recorded step before, over all ensembles.
+func (v View) Accepted(i int) int { return v.accepted[i] }
 
 // Spacing returns the number of steps of the run from one step of the view to
 // the next.

@@ -240,26 +240,24 @@ func (r *runner) rows(first int) View {
 		stride:  1,
 		n:       len(r.records[0].accepted),
 	}
-	for _, b := range r.records {
+	v.accepted = make([]int, v.n)
+	for m := range r.records {
+		b := &r.records[m]
 		v.x = append(v.x, b.x)
 		v.logp = append(v.logp, b.logp)
+		for i, total := range b.accepted {
+			v.accepted[i] += total - b.before
+			b.before = total
+		}
 	}
 	return v
 }
 
 // append adds the records of a block to the chain.
 func (r *runner) append(rows View) error {
-	x, logp := make([][]float64, len(rows.x)), make([][]float64, len(rows.x))
 	for i := range rows.n {
-		accepted := 0
-		for m := range r.records {
-			b := &r.records[m]
-			x[m] = b.x[i*rows.walkers*rows.dim:][:rows.walkers*rows.dim]
-			logp[m] = b.logp[i*rows.walkers:][:rows.walkers]
-			accepted += b.accepted[i] - b.before
-			b.before = b.accepted[i]
-		}
-		if err := r.chain.Append(rows.first+i*rows.spacing, x, logp, accepted); err != nil {
+		x, logp := rows.Step(i)
+		if err := r.chain.Append(rows.Number(i), x, logp, rows.accepted[i]); err != nil {
 			return err
 		}
 	}

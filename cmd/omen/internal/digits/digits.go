@@ -1,9 +1,9 @@
 // Package digits decides how many digits of a number deserve to be printed.
 //
-// Two rules meet. The spread of a quantity asks for two significant digits, or
-// one where the first is large, by the rule of the Particle Data Group (Review
-// of Particle Physics, Introduction, "Rounding"). Its Monte Carlo error forbids
-// any digit that another seed would change by more than one.
+// Two rules meet. The spread of a quantity asks for two significant digits. Its
+// Monte Carlo error forbids any digit that another seed would change by more than
+// one. For print there is the rule of the Particle Data Group, which keeps one
+// digit of the spread where the first is large.
 package digits
 
 import (
@@ -12,18 +12,34 @@ import (
 )
 
 // Place is the power of ten of the last digit to print for a quantity with the
-// given spread and Monte Carlo error, the coarser of [Spread] and [MonteCarlo].
-// A zero or NaN argument has no say; with neither, Place is −6.
+// given spread and Monte Carlo error: the second significant digit of the spread,
+// or coarser where [MonteCarlo] says so. A zero or NaN argument has no say; with
+// neither, Place is −6.
 func Place(spread, mcse float64) int {
-	switch a, okA := Spread(spread); {
-	case okA && mcse > 0:
-		return max(a, MonteCarlo(mcse))
-	case okA:
-		return a
-	case mcse > 0 && !math.IsInf(mcse, 0):
-		return MonteCarlo(mcse)
+	place, ok := exponent(spread)
+	place--
+	if !ok {
+		place = math.MinInt
+	}
+	if mc, known := exponent(mcse); known || ok {
+		if known && mc >= place {
+			place = max(place, MonteCarlo(mcse))
+		}
+		return place
 	}
 	return -6
+}
+
+// exponent is the power of ten of the first of two significant digits of x.
+func exponent(x float64) (exp int, ok bool) {
+	if !(x > 0) || math.IsInf(x, 0) {
+		return 0, false
+	}
+	exp = int(math.Floor(math.Log10(x)))
+	if math.Round(x/math.Pow10(exp-1)) >= 100 { // 9.96 rounds to 10
+		exp++
+	}
+	return exp, true
 }
 
 // Spread is the last place that the Particle Data Group's rule keeps of an error
@@ -75,11 +91,24 @@ func Value(x, spread, mcse float64) string {
 	return Format(x, p) + " ± " + Format(spread, p)
 }
 
-// Error writes an error itself, with at most two significant digits.
+// Error writes an error with two significant digits.
 func Error(e float64) string {
-	p, ok := Spread(e)
+	exp, ok := exponent(e)
 	if !ok {
 		return Format(e, 0)
 	}
-	return Format(e, p)
+	return Format(e, exp-1)
+}
+
+// Share writes a probability with its Monte Carlo error, to the first digit of
+// the error and no further.
+func Share(p, e float64) string {
+	exp, ok := exponent(e)
+	if !ok {
+		return Format(p, -6)
+	}
+	if math.Round(e/math.Pow10(exp)) >= 10 {
+		exp++
+	}
+	return Format(p, exp) + " ± " + Format(e, exp)
 }

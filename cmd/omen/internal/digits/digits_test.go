@@ -11,21 +11,41 @@ func TestValue(t *testing.T) {
 		x, sd, mcse float64
 		want        string
 	}{
-		// The first four are the Particle Data Group's own examples, with the
-		// errors of a chain long enough not to matter.
 		{0.827, 0.119, 1e-6, "0.83 ± 0.12"},
-		{0.827, 0.367, 1e-6, "0.8 ± 0.4"},
-		{14.674, 0.964, 1e-6, "14.7 ± 1.0"},
+		{0.0485, 0.0363, 0.0006, "0.049 ± 0.036"}, // the third digit may differ by one with another seed
+		{0.0485, 0.0363, 0.0016, "0.05 ± 0.04"},
+		{14.674, 0.996, 1e-6, "14.7 ± 1.0"},
 		{0.29321, 0.01141, 1e-6, "0.293 ± 0.011"},
 		{0.29321, 0.01141, 0.0018, "0.29 ± 0.01"}, // the Monte Carlo error forbids the third
-		{68.512, 0.583, 0.009, "68.5 ± 0.6"},
+		{68.512, 0.583, 0.009, "68.51 ± 0.58"},
+		{68.512, 0.583, 0.012, "68.5 ± 0.6"},
 		{-0.0002, 0.0354, 1e-6, "0.000 ± 0.035"},
 		{1234.5, 213, 1, "1230 ± 210"},
 		{5, 0, 0, "5.000000 ± 0.000000"},
-		{math.NaN(), 1, 1, "– ± 1"},
+		{math.NaN(), 1, 1e-3, "– ± 1.0"},
 	} {
 		if got := Value(c.x, c.sd, c.mcse); got != c.want {
 			t.Errorf("Value(%v, %v, %v) = %q, want %q", c.x, c.sd, c.mcse, got, c.want)
+		}
+	}
+}
+
+// The first two are the Particle Data Group's own examples (from memory).
+func TestSpread(t *testing.T) {
+	for sd, want := range map[float64]int{0.119: -2, 0.367: -1, 0.964: -1, 0.0354: -3, 0.0355: -2, 9.996: 0, 213: 1} {
+		if got, ok := Spread(sd); got != want || !ok {
+			t.Errorf("Spread(%v) = %v, want %v", sd, got, want)
+		}
+	}
+}
+
+func TestShare(t *testing.T) {
+	for _, c := range []struct {
+		p, e float64
+		want string
+	}{{0.08501, 0.0028, "0.085 ± 0.003"}, {0.274, 0.0096, "0.27 ± 0.01"}, {0.5, 0.02, "0.50 ± 0.02"}, {0.9996, 0.0003, "0.9996 ± 0.0003"}} {
+		if got := Share(c.p, c.e); got != c.want {
+			t.Errorf("Share(%v, %v) = %q, want %q", c.p, c.e, got, c.want)
 		}
 	}
 }
@@ -45,7 +65,7 @@ func TestPlaceNeverFinerThanMonteCarlo(t *testing.T) {
 }
 
 func TestError(t *testing.T) {
-	for e, want := range map[float64]string{0.00123: "0.0012", 0.0042: "0.004", 0.0971: "0.10", 31.7: "32"} {
+	for e, want := range map[float64]string{0.00123: "0.0012", 0.0042: "0.0042", 0.0971: "0.097", 31.7: "32", 0.0999: "0.10"} {
 		if got := Error(e); got != want {
 			t.Errorf("Error(%g) = %q, want %q", e, got, want)
 		}

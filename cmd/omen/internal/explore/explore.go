@@ -5,6 +5,8 @@ package explore
 
 import (
 	"context"
+	"crypto/sha256"
+	"encoding/hex"
 	"errors"
 	"fmt"
 	"io"
@@ -37,12 +39,15 @@ type session struct {
 	options Options
 	chain   *sampler.Chain
 	writer  *chainfile.Writer
-	step    chainfile.Step
-	meter   *progress.Meter
 	best    []float64
-	dense   []sampler.Density
-	begun   time.Time
-	before  float64 // seconds of earlier sessions
+	dense   []sampler.Density // one for each ensemble
+
+	meter    *progress.Meter
+	forecast progress.Forecast
+	update   progress.Update
+	begun    time.Time
+	first    int           // the step where this session began
+	before   time.Duration // of earlier sessions
 }
 
 // Start begins a run in dir, which must be new or empty, and takes it as far as
@@ -67,7 +72,7 @@ func Start(ctx context.Context, j *job.Job, dir string, o Options, stderr io.Wri
 	if err := os.WriteFile(filepath.Join(dir, RunFileName), text, 0o644); err != nil {
 		return nil, err
 	}
-	if s.writer, err = chainfile.Create(dir, s.identity(), chainfile.Options{Interval: chainfile.DefaultInterval}); err != nil {
+	if s.writer, err = chainfile.Create(dir, s.identity(text), chainfile.Options{Interval: time.Duration(j.Run.Sampling.SyncInterval)}); err != nil {
 		return nil, err
 	}
 	return s.run(ctx)
@@ -99,11 +104,11 @@ func newSession(j *job.Job, dir string, o Options, stderr io.Writer) (*session, 
 	for range sampling.Ensembles {
 		s.dense = append(s.dense, j.Posterior.Evaluator().LogDensity)
 	}
-	lo, hi := j.Space.Box()
 	var err error
-	if s.best, _, err = sampler.Maximise(s.dense[0], lo, hi, sampling.Seed); err != nil {
-		return nil, j.Run.Errorf("prior", "no universe within the priors agrees with being observed at all (%v); widen the priors", err)
+	if s.best, err = Best(j); err != nil {
+		return nil, err
 	}
+	lo, hi := j.Space.Box()
 	dim := j.Space.Dim()
 	starts := make([][]float64, sampling.Ensembles)
 	for m := range starts {
@@ -114,7 +119,8 @@ func newSession(j *job.Job, dir string, o Options, stderr io.Writer) (*session, 
 	if s.chain, err = sampler.NewChain(dim, starts, sampling.RecordEvery, sampler.DefaultRecord); err != nil {
 		return nil, err
 	}
-	s.meter = progress.New(stderr, o.Quiet)
+	s.update = progress.Update{MaxSteps: sampling.MaxSteps, Goal: float64(sampling.EffectiveSamples), MaxElapsed: time.Duration(sampling.MaxTime)}
+	s.meter = progress.New(stderr, progress.Detect(stderr, o.Quiet))
 	return s, nil
 }
 
@@ -123,4 +129,94 @@ func (s *session) walkers() int {
 		return n
 	}
 	return sampler.DefaultWalkers(s.job.Space.Dim())
+}
+
+// Best finds the point of highest posterior density of a job.
+func Best(j *job.Job) ([]float64, error) {
+	lo, hi := j.Space.Box()
+	best, _, err := sampler.Maximise(j.Posterior.Evaluator().LogDensity, lo, hi, j.Run.Sampling.Seed)
+	if err != nil {
+		return nil, j.Run.Errorf("prior", "no universe within the priors can be observed as these data were (%v); widen the priors", err)
+	}
+	return best, nil
+}
+
+// identity is all that the chain depends on.
+func (s *session) identity(text []byte) chainfile.Run {
+	sum := sha256.Sum256(text)
+	r := chainfile.Run{Format: chainfile.Format, Seed: s.job.Run.Sampling.Seed, Ensembles: s.job.Run.Sampling.Ensembles,
+		Walkers: s.walkers(), Every: s.job.Run.Sampling.RecordEvery,
+		RunFile: chainfile.Input{Path: RunFileName, SHA256: hex.EncodeToString(sum[:])}}
+	for _, p := range s.job.Space.Free() {
+		r.Parameters = append(r.Parameters, p.Name)
+	}
+	for _, in := range s.job.Inputs {
+		r.Inputs = append(r.Inputs, chainfile.Input(in))
+	}
+	return r
+}
+
+// run samples until the goal, a limit or an interruption.
+func (s *session) run(ctx context.Context) (*result.Run, error) {
+	sampling := s.job.Run.Sampling
+	if limit := time.Duration(sampling.MaxTime); limit > 0 {
+		var cancel context.CancelFunc
+		ctx, cancel = context.WithTimeout(ctx, limit)
+		defer cancel()
+	}
+	settings := sampler.Settings{Seed: sampling.Seed, Effective: float64(sampling.EffectiveSamples),
+		MaxSteps: sampling.MaxSteps, Threads: s.options.Threads}
+	outcome, err := sampler.Run(ctx, s.dense, s.chain, settings, s)
+	s.Checked(outcome.Check)
+	s.update.Left = 0
+	s.meter.Close(s.update)
+	if closing := s.writer.Close(err == nil && outcome.Stop == sampler.Converged); err == nil {
+		err = closing
+	}
+	if err != nil {
+		return nil, err
+	}
+	return &result.Run{Job: s.job, Chain: s.chain, Outcome: outcome, Best: s.best, Threads: s.options.Threads,
+		Version: s.options.Version, Seconds: s.elapsed().Seconds()}, nil
+}
+
+func (s *session) elapsed() time.Duration { return s.before + time.Since(s.begun) }
+
+// Advanced writes new rows down; see [sampler.Observer].
+func (s *session) Advanced(step int, rows sampler.View) error {
+	for i := range rows.Steps() {
+		x, logp := rows.Step(i)
+		err := s.writer.Append(chainfile.Step{Number: rows.Number(i), Accepted: rows.Accepted(i), X: x, LogP: logp})
+		if err != nil {
+			return err
+		}
+	}
+	if s.meter.Due() {
+		s.refresh(step)
+		s.meter.Show(s.update)
+	}
+	return s.writer.Tick()
+}
+
+// refresh brings what changes between checks up to date.
+func (s *session) refresh(step int) {
+	u := &s.update
+	u.Steps, u.Elapsed = step, s.elapsed()
+	here := float64(step-s.first) * float64(s.job.Run.Sampling.Ensembles*s.walkers())
+	u.EvaluationsPerSecond = here / time.Since(s.begun).Seconds()
+	u.Left = s.forecast.Left(*u)
+}
+
+// Checked shows how far the chain is; see [sampler.Observer].
+func (s *session) Checked(c sampler.Check) {
+	u := &s.update
+	u.Effective, u.RHat, u.Acceptance = c.ESS(), c.RHat(), c.Acceptance
+	for i, p := range c.Parameters {
+		if p.ESS == u.Effective {
+			u.Slowest = s.job.Space.Free()[i].Name
+		}
+	}
+	s.forecast.Observe(s.elapsed(), u.Effective)
+	s.refresh(c.Step)
+	s.writer.SetProgress(s.update)
 }

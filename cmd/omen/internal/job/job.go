@@ -213,3 +213,16 @@ func (j *Job) supernovae(i int, t *Table) error {
 	t.Term, err = likelihood.NewSupernovae(t.Supernovae, t.Covariance, offset, standing)
 	return err
 }
+
+// Z are the redshifts of the kept rows.
+func (t *Table) Z() []float64 {
+	switch {
+	case t.Supernovae != nil:
+		return t.Supernovae.Z
+	case t.BAO != nil:
+		return t.BAO.Z
+	case t.Ages != nil:
+		return t.Ages.Z
+	}
+	return t.Rates.Z
+}

@@ -91,11 +91,7 @@ func Probability(f result.Fate) string {
 	case p == 1:
 		return "> " + digits.Format(1-up, limitPlace(up)) + " (95%)"
 	}
-	place := digits.MonteCarlo(e)
-	if digits.Format(p, place) == digits.Format(1, place) || math.Abs(p) < math.Pow10(place)/2 {
-		place-- // rather than a probability rounded to certainty
-	}
-	return digits.Format(p, place) + " ± " + digits.Error(e)
+	return digits.Share(p, e)
 }
 
 func limitPlace(up float64) int {

@@ -160,12 +160,15 @@ type derivation struct {
 	draws            []sampler.Draws
 	fate, held       sampler.Draws
 	closed, speeding sampler.Draws
+	energy           likelihood.DarkEnergy
 	evolving         bool // w changes, so that the far future is an extrapolation
-	flat             bool
+	flat, bigBang    bool
 }
 
 func derive(space *likelihood.Space, view sampler.View, threads int) derivation {
-	d := derivation{names: derivedNames(space), evolving: space.Family().DarkEnergy == likelihood.W0Wa, flat: space.Family().Flat}
+	f := space.Family()
+	d := derivation{names: derivedNames(space), energy: f.DarkEnergy, evolving: f.DarkEnergy == likelihood.W0Wa,
+		flat: f.Flat, bigBang: f.RequireBigBang}
 	n := len(d.names)
 	all := view.MapAll(n+4, threads, func() func(x, y []float64) {
 		var p likelihood.Point
@@ -216,9 +219,9 @@ func derived(d derivation, threads int) []Quantity {
 // exactly coasting universes have no volume in a continuous posterior and are
 // left out unless one was drawn.
 func (d derivation) fates(ess float64) (fates, held, today []Fate) {
-	fates = fateTable(d.fate, ess)
+	fates = d.fateTable(d.fate, ess)
 	if d.evolving {
-		held = fateTable(d.held, ess)
+		held = d.fateTable(d.held, ess)
 	}
 	today = append(today, share("accelerating", d.speeding, ess))
 	if !d.flat {
@@ -227,17 +230,31 @@ func (d derivation) fates(ess float64) (fates, held, today []Fate) {
 	return fates, held, today
 }
 
-func fateTable(draws sampler.Draws, ess float64) []Fate {
+func (d derivation) fateTable(draws sampler.Draws, ess float64) []Fate {
 	var out []Fate
 	for _, f := range model.Fates() {
 		is := draws.Map(func(x float64) float64 { return indicator(x == float64(f)) })
 		s := share(f.String(), is, ess)
-		if s.Probability == 0 && (f == model.Critical || f == model.Coasting || f == model.NoBigBang) {
+		if s.Probability == 0 && !d.possible(f) {
 			continue
 		}
 		out = append(out, s)
 	}
 	return out
+}
+
+// possible tells the fates that have a volume in the family: a big rip needs
+// dark energy that can grow, no big bang a family that admits bounces.
+func (d derivation) possible(f model.Fate) bool {
+	switch f {
+	case model.Critical, model.Coasting:
+		return false
+	case model.BigRip:
+		return d.energy != likelihood.Constant
+	case model.NoBigBang:
+		return !d.bigBang
+	}
+	return true
 }
 
 func share(name string, draws sampler.Draws, ess float64) Fate {

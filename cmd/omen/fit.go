@@ -1,0 +1,158 @@
+package main
+
+import (
+	"bytes"
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+	"strconv"
+	"strings"
+
+	"omen/cmd/omen/internal/explore"
+	"omen/cmd/omen/internal/inspect"
+	"omen/cmd/omen/internal/job"
+	"omen/cmd/omen/internal/report"
+	"omen/cmd/omen/internal/result"
+	"omen/cmd/omen/internal/runfile"
+	"omen/sampler"
+
+	"github.com/spf13/pflag"
+)
+
+const fitHelp = `omen fit explores the posterior of a run file and reports constraints and fates.
+
+  omen fit fate.toml
+  omen fit fate.toml -o curved --seed 7
+  omen fit fate.toml --set universe.geometry=flat --set prior.OL=none
+
+The result goes to standard output, the chain and everything else to a folder:
+-o, or the run file's name with a number. --set changes a key of the run file;
+data.1 is the first [[data]] table, and the value none removes a key.
+`
+
+type fitOptions struct {
+	dir     string
+	seed    uint64
+	sets    []string
+	explore explore.Options
+}
+
+func fitFlags(o *fitOptions) *pflag.FlagSet {
+	f := newFlags("fit", fitHelp)
+	f.StringVarP(&o.dir, "output", "o", "", "folder for the result; it must not exist")
+	f.Uint64Var(&o.seed, "seed", 0, "seed of the random numbers, in place of the run file's")
+	f.StringArrayVar(&o.sets, "set", nil, "change a key of the run file, as key=value; may be repeated")
+	f.IntVar(&o.explore.Threads, "threads", 0, "ensembles that run at the same time; 0: one per processor")
+	f.BoolVar(&o.explore.Quiet, "quiet", false, "show no progress")
+	return f
+}
+
+func runFit(ctx context.Context, args []string, stdout, stderr io.Writer) error {
+	var o fitOptions
+	f := fitFlags(&o)
+	if done, err := parse(f, args, stdout, 1); done || err != nil {
+		return err
+	}
+	if f.Changed("seed") {
+		o.sets = append(o.sets, "sampling.seed="+strconv.FormatUint(o.seed, 10))
+	}
+	j, err := load(f.Arg(0), o.sets)
+	if err != nil {
+		return err
+	}
+	if o.dir == "" {
+		o.dir = freeFolder(f.Arg(0))
+	}
+	o.explore.Version = version()
+	run, err := explore.Start(ctx, j, o.dir, o.explore, stderr)
+	if err != nil {
+		return err
+	}
+	return conclude(run, o.dir, stdout)
+}
+
+// load reads a run file and everything that it names.
+func load(file string, sets []string) (*job.Job, error) {
+	text, err := os.ReadFile(file)
+	if err != nil {
+		return nil, usagef("cannot read %s: %v; omen new makes a run file", file, err.(*os.PathError).Err)
+	}
+	run, err := runfile.Parse(file, text, sets)
+	if err != nil {
+		return nil, err
+	}
+	return job.Load(run)
+}
+
+// freeFolder is the run file's name with the first number that is not taken.
+func freeFolder(file string) string {
+	base := strings.TrimSuffix(filepath.Base(file), filepath.Ext(file))
+	for i := 1; ; i++ {
+		dir := base + "-" + strconv.Itoa(i)
+		if _, err := os.Lstat(dir); errors.Is(err, os.ErrNotExist) {
+			return dir
+		}
+	}
+}
+
+// conclude writes the summary of a run to its folder and to stdout.
+func conclude(run *result.Run, dir string, stdout io.Writer) error {
+	s := result.Build(*run)
+	var text bytes.Buffer
+	if err := report.JSON(&text, s); err != nil {
+		return err
+	}
+	if err := writeWhole(filepath.Join(dir, "summary.json"), text.Bytes()); err != nil {
+		return err
+	}
+	if err := report.Text(stdout, s); err != nil {
+		return err
+	}
+	fmt.Fprintf(stdout, "\nIn %s: chain.csv, summary.json, run.toml\n", dir)
+	if run.Outcome.Stop == sampler.Interrupted {
+		return errUnfinished
+	}
+	return nil
+}
+
+// writeWhole writes a file that appears complete or not at all.
+func writeWhole(name string, content []byte) error {
+	temp := name + ".new"
+	if err := os.WriteFile(temp, content, 0o644); err != nil {
+		os.Remove(temp)
+		return err
+	}
+	return os.Rename(temp, name)
+}
+
+const inspectHelp = `omen inspect says what a run file reads, and what looks odd in it.
+
+  omen inspect fate.toml
+  omen inspect fate.toml --set data.1.keep='z > 0.05'
+`
+
+func inspectFlags(sets *[]string) *pflag.FlagSet {
+	f := newFlags("inspect", inspectHelp)
+	f.StringArrayVar(sets, "set", nil, "change a key of the run file, as key=value; may be repeated")
+	return f
+}
+
+func runInspect(args []string, stdout io.Writer) error {
+	var sets []string
+	f := inspectFlags(&sets)
+	if done, err := parse(f, args, stdout, 1); done || err != nil {
+		return err
+	}
+	j, err := load(f.Arg(0), sets)
+	if err != nil {
+		return err
+	}
+	best, err := explore.Best(j)
+	if err != nil {
+		return err
+	}
+	return inspect.Write(stdout, j, best)
+}

@@ -1,0 +1,202 @@
+package main
+
+import (
+	"bytes"
+	_ "embed"
+	"errors"
+	"fmt"
+	"io"
+	"os"
+	"path/filepath"
+	"slices"
+	"strconv"
+	"strings"
+	"text/template"
+
+	"omen/cmd/omen/internal/example"
+	"omen/data"
+
+	"github.com/spf13/pflag"
+)
+
+const newHelp = `omen new makes a folder with a commented run file, ready to fit.
+
+  omen new first-look
+  omen new mine --supernovae my.csv --covariance my.cov
+  omen new both --supernovae my.csv --bao ratios.csv
+
+With tables, it names the columns that it recognised in them. Without, it writes
+a working example: an invented survey of 152 supernovae whose truth is known.
+`
+
+//go:embed new.toml.tmpl
+var newTemplate string
+
+type newOptions struct{ supernovae, covariance, bao string }
+
+func newFlagSet(o *newOptions) *pflag.FlagSet {
+	f := newFlags("new", newHelp)
+	f.StringVar(&o.supernovae, "supernovae", "", "a table of supernovae")
+	f.StringVar(&o.covariance, "covariance", "", "the covariance of the supernovae, or of the BAO ratios without supernovae")
+	f.StringVar(&o.bao, "bao", "", "a table of BAO distance ratios")
+	return f
+}
+
+// newRun is what the template is filled with.
+type newRun struct {
+	File, Title string
+	BAO         bool
+	Tables      []newTable
+}
+
+type newTable struct {
+	Kind, Path, Covariance string
+	Columns                []newColumn
+	Missing                []string
+	Header, Keep           string
+}
+
+type newColumn struct{ Ours, File string }
+
+func runNew(args []string, stdout io.Writer) error {
+	var o newOptions
+	f := newFlagSet(&o)
+	if done, err := parse(f, args, stdout, 1); done || err != nil {
+		return err
+	}
+	dir := filepath.Clean(f.Arg(0))
+	if o.covariance != "" && o.supernovae == "" && o.bao == "" {
+		return usagef("new: --covariance without a table; add --supernovae or --bao")
+	}
+	if _, err := os.Lstat(dir); !errors.Is(err, os.ErrNotExist) {
+		return usagef("new: %s exists; choose another folder", dir)
+	}
+	run, survey, err := o.plan(dir)
+	if err != nil {
+		return err
+	}
+	return run.write(dir, survey, stdout)
+}
+
+// plan reads the headers of the tables. survey is the example's table, nil where
+// the user brought tables.
+func (o *newOptions) plan(dir string) (run *newRun, survey []byte, err error) {
+	name := filepath.Base(dir)
+	run = &newRun{File: filepath.Join(dir, name+".toml"), Title: name, BAO: o.bao != ""}
+	if o.supernovae == "" && o.bao == "" {
+		run.Title = "An invented survey"
+		run.Tables = []newTable{{Kind: "supernovae", Path: "survey.csv", Keep: "z > 0.01"}}
+		return run, example.Table(example.Seed), nil
+	}
+	covariance := o.covariance
+	for _, t := range []struct{ kind, path string }{{"supernovae", o.supernovae}, {"bao", o.bao}} {
+		if t.path == "" {
+			continue
+		}
+		table, err := recognise(t.kind, t.path, dir)
+		if err != nil {
+			return nil, nil, err
+		}
+		if covariance != "" {
+			table.Covariance, covariance = relative(covariance, dir), ""
+		}
+		run.Tables = append(run.Tables, *table)
+	}
+	return run, nil, nil
+}
+
+// needed lists the columns that a kind cannot do without.
+var needed = map[string][]string{"supernovae": {"z"}, "bao": {"z", "quantity", "value"}}
+
+// useful lists all columns that a kind may have.
+var useful = map[string][]string{
+	"supernovae": {"name", "survey", "z", "z_hel", "mu", "mu_err", "mag", "mag_err"},
+	"bao":        {"z", "quantity", "value", "error"},
+}
+
+// recognise reads the header of a table and proposes its columns.
+func recognise(kind, path, dir string) (*newTable, error) {
+	f, err := os.Open(path)
+	if err != nil {
+		return nil, usagef("new: cannot read %s: %v", path, err.(*os.PathError).Err)
+	}
+	defer f.Close()
+	header, err := data.Header(f, path)
+	if err != nil {
+		return nil, err
+	}
+	found := data.Recognise(header)
+	t := &newTable{Kind: kind, Path: relative(path, dir), Header: strings.Join(header, " ")}
+	for _, ours := range useful[kind] {
+		if found[ours] != "" && found[ours] != ours {
+			t.Columns = append(t.Columns, newColumn{ours, found[ours]})
+		}
+	}
+	for _, ours := range needed[kind] {
+		if found[ours] == "" {
+			t.Missing = append(t.Missing, ours)
+		}
+	}
+	if kind == "supernovae" && found["mu"] == "" && found["mag"] == "" {
+		t.Missing = append(t.Missing, "mag")
+	}
+	t.Keep = "z > 0.01"
+	if found["z"] != "" {
+		t.Keep = found["z"] + " > 0.01"
+	}
+	return t, nil
+}
+
+// relative makes a path as seen from dir.
+func relative(path, dir string) string {
+	from, err1 := filepath.Abs(dir)
+	to, err2 := filepath.Abs(path)
+	if err1 != nil || err2 != nil {
+		return path
+	}
+	rel, err := filepath.Rel(from, to)
+	if err != nil {
+		return to
+	}
+	return filepath.ToSlash(rel)
+}
+
+// toml quotes what goes between quotation marks in the template.
+func (t newTable) quoted() newTable {
+	q := func(s string) string { return strings.Trim(strconv.Quote(s), `"`) }
+	t.Path, t.Covariance, t.Keep = q(t.Path), q(t.Covariance), q(t.Keep)
+	t.Columns = slices.Clone(t.Columns)
+	for i := range t.Columns {
+		t.Columns[i].File = q(t.Columns[i].File)
+	}
+	return t
+}
+
+func (run *newRun) write(dir string, survey []byte, stdout io.Writer) error {
+	for i := range run.Tables {
+		run.Tables[i] = run.Tables[i].quoted()
+	}
+	var text bytes.Buffer
+	if err := template.Must(template.New("run").Parse(newTemplate)).Execute(&text, run); err != nil {
+		return err
+	}
+	if err := os.MkdirAll(dir, 0o755); err != nil {
+		return err
+	}
+	if survey != nil {
+		if err := os.WriteFile(filepath.Join(dir, "survey.csv"), survey, 0o644); err != nil {
+			return err
+		}
+	}
+	if err := os.WriteFile(run.File, text.Bytes(), 0o644); err != nil {
+		return err
+	}
+	fmt.Fprintf(stdout, "%s is ready.\n", run.File)
+	for _, t := range run.Tables {
+		for _, m := range t.Missing {
+			fmt.Fprintf(stdout, "No column of %s was recognised as %s: fill it in first.\n", t.Path, m)
+		}
+	}
+	fmt.Fprintf(stdout, "\n  omen inspect %s    what it reads\n  omen fit %s        constraints and fates\n", run.File, run.File)
+	return nil
+}
