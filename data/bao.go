@@ -35,7 +35,7 @@ func (q *Quantity) UnmarshalCSV(cell string) error {
 			return nil
 		}
 	}
-	return fmt.Errorf("%s", message(quoted(cell), "one of "+strings.Join(quantities[1:], ", "), fmt.Sprintf("did you mean %s?", nearest(cell, quantities[1:]))))
+	return fmt.Errorf("%s", message(quoted(cell), "one of "+strings.Join(quantities[1:], ", "), fmt.Sprintf("did you mean %s?", Nearest(cell, quantities[1:]))))
 }
 
 // BAO are distance ratios from baryon acoustic oscillations; slices have the length of Selection.Kept.

@@ -1,7 +1,6 @@
 package data
 
 import (
-	"cmp"
 	"fmt"
 	"maps"
 	"slices"
@@ -100,7 +99,7 @@ func (h headings) checkNames(fields []field, columns map[string]string) error {
 	for _, name := range slices.Sorted(maps.Keys(columns)) {
 		if !slices.Contains(known, name) {
 			return &Error{File: h.file, Message: message(fmt.Sprintf("a mapping of %q", name), "one of "+strings.Join(known, ", "),
-				fmt.Sprintf("did you mean %q?", nearest(name, known)))}
+				fmt.Sprintf("did you mean %q?", Nearest(name, known)))}
 		}
 	}
 	return nil
@@ -119,55 +118,4 @@ func (h headings) missing(name, what, ours string, free []string) error {
 		do = fmt.Sprintf("name one, such as %s: columns = { %s = \"…\" }", strings.Join(near[:min(5, len(near))], ", "), ours)
 	}
 	return &Error{h.file, h.line, name, message("no such column", what, do)}
-}
-
-// farthest is the distance from which on a name does not resemble another.
-const farthest = 0.5
-
-// nearest is the candidate most like name, the first of several, "" of none.
-func nearest(name string, candidates []string) string {
-	if near := byDistance(name, candidates); len(near) > 0 {
-		return near[0]
-	}
-	return ""
-}
-
-// byDistance sorts the candidates by their likeness to name.
-func byDistance(name string, candidates []string) []string {
-	near := slices.Clone(candidates)
-	slices.SortStableFunc(near, func(a, b string) int { return cmp.Compare(distance(name, a), distance(name, b)) })
-	return near
-}
-
-// distance is the share of letters to be edited, from 0 to 1: half as much if one name starts with the other, as
-// abbreviations do, and hardly anything for a different case.
-func distance(a, b string) float64 {
-	s, t := strings.ToLower(a), strings.ToLower(b)
-	longer := float64(max(1, len(s), len(t)))
-	d := float64(edits(s, t)) / longer
-	if s != "" && t != "" && (strings.HasPrefix(s, t) || strings.HasPrefix(t, s)) {
-		d /= 2
-	}
-	return d + 0.01*float64(edits(a, b))/longer
-}
-
-// edits counts the insertions, deletions and substitutions between a and b (Levenshtein 1966).
-func edits(a, b string) int {
-	s, t := []rune(a), []rune(b)
-	row := make([]int, len(t)+1)
-	for j := range row {
-		row[j] = j
-	}
-	for i, c := range s {
-		diagonal := row[0]
-		row[0] = i + 1
-		for j, d := range t {
-			cost := 1
-			if c == d {
-				cost = 0
-			}
-			diagonal, row[j+1] = row[j+1], min(row[j]+1, row[j+1]+1, diagonal+cost)
-		}
-	}
-	return row[len(t)]
 }

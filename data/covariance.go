@@ -72,8 +72,12 @@ func needErrors(m *Matrix, role Role, s Selection, err []float64) error {
 }
 
 func wrongSize(file string, n int, s Selection) error {
+	do := "give the matrix that belongs to the table"
+	if n == len(s.Kept) {
+		do = "this one has a row for each that the cut keeps: give the whole one, or a table of these rows without a cut"
+	}
 	return &Error{File: file, Message: message(fmt.Sprintf("a matrix of %d×%d", n, n),
-		fmt.Sprintf("%d×%d, one row for each of %s before cuts", s.Read, s.Read, s.File), "give the matrix that belongs to the table")}
+		fmt.Sprintf("%d×%d for the %s of %s before cuts", s.Read, s.Read, count(s.Read, "row"), s.File), do)}
 }
 
 // cutMatrix copies the kept rows and columns; zeros if there is no matrix.

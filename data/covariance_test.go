@@ -86,8 +86,10 @@ func TestCovarianceErrors(t *testing.T) {
 		err  []float64
 		want string
 	}{
+		{"1 0\n0 1\n", Total, ofThree(1), nil,
+			`c.cov: found a matrix of 2×2, expected 3×3 for the 3 rows of t.csv before cuts; give the matrix that belongs to the table`},
 		{"1 0\n0 1\n", Total, ofThree(0, 1), nil,
-			`c.cov: found a matrix of 2×2, expected 3×3, one row for each of t.csv before cuts; give the matrix that belongs to the table`},
+			`c.cov: found a matrix of 2×2, expected 3×3 for the 3 rows of t.csv before cuts; this one has a row for each that the cut keeps: give the whole one, or a table of these rows without a cut`},
 		{threeText, Added, ofThree(0, 1), nil,
 			`t.csv: found no column of errors, expected one, as there is no total covariance; map it, or give the covariance`},
 		{"", Total, ofThree(0, 1), nil,

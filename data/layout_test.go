@@ -172,7 +172,7 @@ func TestDistance(t *testing.T) {
 		{"z", "mag zeff", "zeff"},
 		{"q", "", ""},
 	} {
-		if got := nearest(test.name, strings.Fields(test.candidates)); got != test.want {
+		if got := Nearest(test.name, strings.Fields(test.candidates)); got != test.want {
 			t.Errorf("nearest to %s of %s: %s, want %s", test.name, test.candidates, got, test.want)
 		}
 	}

@@ -67,6 +67,15 @@ func open(r io.Reader, file string) (*table, error) {
 	return t, t.check()
 }
 
+// Header reads the column names of a table and nothing else.
+func Header(r io.Reader, file string) ([]string, error) {
+	t, err := open(r, file)
+	if err != nil {
+		return nil, err
+	}
+	return t.names, nil
+}
+
 // load reads the wanted columns of all rows.
 func (t *table) load(wanted []int) error {
 	t.columns = make([]*column, len(t.names))
