@@ -16,10 +16,12 @@ const mserTolerance = 0.2
 // burnIn returns the number of rows to discard from the start of a chain: the
 // larger of
 //
-//   - the truncation of [mser], the largest over the log-density, every
+//   - twice the truncation of [mser], the largest over the log-density, every
 //     parameter and its squared distance from where it ended, each averaged over
-//     all ensembles. The squares and the log-density see a start that is
-//     centred but too wide;
+//     all ensembles. The squares and the log-density see a start that is centred
+//     but too wide. Twice, since at the truncation the memory of the start is
+//     down to the noise of a step, but all on one side; as it decays
+//     exponentially, the same time again squares what it has decayed by;
 //   - five autocorrelation times of the slowest parameter after that,
 //
 // but at most half of the rows. A chain so short that the half decides is too
@@ -34,12 +36,12 @@ func burnIn(logp Draws, parameters []Draws) int {
 	}
 	longest := 0.0
 	for _, d := range parameters {
-		if tau := measure(d.after(drop)).tau; !math.IsNaN(tau) {
+		if tau := measure(d.after(2 * drop)).tau; !math.IsNaN(tau) {
 			longest = max(longest, tau)
 		}
 	}
 	need := math.Ceil(burnTimes * longest / float64(logp.spacing))
-	return int(min(max(need, float64(drop)), float64(half)))
+	return int(min(max(need, 2*float64(drop)), float64(half)))
 }
 
 // stepMeans returns the mean over all ensembles and walkers at each step.

@@ -60,7 +60,7 @@ func standing(d Density, best, lo, hi []float64, root *mat.TriDense, lowest floa
 		}
 		for range 30 {
 			y := displaced(best, root, v)
-			reflect(y, lo, hi)
+			mirror(y, lo, hi)
 			if d(y) >= lowest {
 				return y
 			}
@@ -72,8 +72,8 @@ func standing(d Density, best, lo, hi []float64, root *mat.TriDense, lowest floa
 	return nil
 }
 
-// reflect folds x into a box as by mirrors at its sides.
-func reflect(x, lo, hi []float64) {
+// mirror folds x into a box as by mirrors at its sides.
+func mirror(x, lo, hi []float64) {
 	for i := range x {
 		side := hi[i] - lo[i]
 		t := math.Mod(math.Abs(x[i]-lo[i]), 2*side)

@@ -12,9 +12,12 @@ type target struct {
 	name   string
 	new    func() Density
 	lo, hi []float64
-	mean   []float64
-	sd     []float64
-	corr   [][3]float64 // i, j, correlation
+
+	walkers int // 0 for the default
+
+	mean []float64
+	sd   []float64
+	corr [][3]float64 // i, j, correlation
 }
 
 // gaussian has standard deviations 1e-3, 1, 1e3 and strong correlations.
@@ -40,6 +43,13 @@ func gaussian() target {
 		sd:   sd,
 		corr: [][3]float64{{0, 1, r}, {0, 2, s}, {1, 2, r * s}},
 	}
+}
+
+// small is a gaussian with few walkers, for tests of how a run goes.
+func small() target {
+	g := gaussian()
+	g.walkers = 8
+	return g
 }
 
 // ridge is curved: x ~ N(0, 1), y = x² + N(0, 0.3²).
@@ -87,11 +97,15 @@ func (g target) newChain(tb testing.TB, ensembles int, seed uint64, every, recor
 	if err != nil {
 		tb.Fatal(err)
 	}
+	walkers := g.walkers
+	if walkers == 0 {
+		walkers = DefaultWalkers(len(best))
+	}
 	densities := make([]Density, ensembles)
 	start := make([][]float64, ensembles)
 	for m := range start {
 		densities[m] = g.new()
-		start[m], err = Scatter(densities[m], best, g.lo, g.hi, DefaultWalkers(len(best)), seed, m)
+		start[m], err = Scatter(densities[m], best, g.lo, g.hi, walkers, seed, m)
 		if err != nil {
 			tb.Fatal(err)
 		}
