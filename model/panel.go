@@ -16,6 +16,7 @@ const maxDepth = 50
 type panelRule struct {
 	x, w [order]float64
 	coef [order][order]float64 // c_m = Σ_k coef[m][k] f(x_k)
+	last [order / 2][6]float64 // coef[order-6 … order-1][k] by columns, for the first half of the nodes
 }
 
 // panel is the one rule of the package: constant tables, computed once.
@@ -28,6 +29,9 @@ func newPanelRule() (p panelRule) {
 		legendre(x, &leg)
 		for m := range order {
 			p.coef[m][k] = (float64(m) + 0.5) * p.w[k] * leg[m]
+			if k < order/2 && m >= order-6 {
+				p.last[k][m-order+6] = p.coef[m][k]
+			}
 		}
 	}
 	return p
@@ -71,29 +75,34 @@ func (p *panelRule) series(f, c *[order]float64) {
 	}
 }
 
-// omitted estimates the first Legendre coefficients of f beyond the twelve that a panel holds, by the decay from
-// the last but one pair to the last. Pairs, because a single coefficient may vanish by symmetry. This is the
+// omitted estimates the first Legendre coefficients of f beyond the twelve that a panel holds, by the slower of
+// the decays over its last three pairs. Pairs, because a single coefficient may vanish by symmetry. This is the
 // relative error of the expansion near the ends of the panel; that of the integral is about its square.
 func (p *panelRule) omitted(f *[order]float64) float64 {
-	var c8, c9, c10, c11 float64
-	for k, v := range f {
-		c8 += p.coef[order-4][k] * v
-		c9 += p.coef[order-3][k] * v
-		c10 += p.coef[order-2][k] * v
-		c11 += p.coef[order-1][k] * v
+	var c6, c7, c8, c9, c10, c11 float64
+	for k := range order / 2 {
+		even, odd := f[k]+f[order-1-k], f[k]-f[order-1-k] // the nodes are symmetric, so are the polynomials
+		t := &p.last[k]
+		c6 += t[0] * even
+		c7 += t[1] * odd
+		c8 += t[2] * even
+		c9 += t[3] * odd
+		c10 += t[4] * even
+		c11 += t[5] * odd
 	}
-	before, last := math.Abs(c8)+math.Abs(c9), math.Abs(c10)+math.Abs(c11)
-	if last >= before {
+	first, second, last := math.Abs(c6)+math.Abs(c7), math.Abs(c8)+math.Abs(c9), math.Abs(c10)+math.Abs(c11)
+	if first == 0 || second == 0 {
 		return last
 	}
-	return last * last / before
+	decay := math.Min(1, math.Max(last/second, second/first))
+	return decay * math.Max(last, second*decay)
 }
 
 // The estimates of omitted, relative to the mean, below which a panel is not halved: for its integral to be
 // good to rounding, and for its expansion to be good to 1e-10 anywhere in it.
 const (
 	integralTail = 1e-7
-	denseTail    = 3e-11
+	denseTail    = 1e-11
 )
 
 // rounding is a generous bound on the relative rounding error of a sum, in units of its largest term.

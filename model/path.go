@@ -7,8 +7,8 @@ import (
 )
 
 // panelWidth is the greatest width in ln(1+z) of the panels of a Path. The integrand's nearest singularity is
-// about 1 away in a universe like ours; with 0.4 the twelve terms of a panel are then good to 1e-11.
-const panelWidth = 0.4
+// about 1 away in a universe like ours; with 0.3 the twelve terms of a panel are then good to 1e-13.
+const panelWidth = 0.3
 
 // Path is a line of sight to a fixed, ascending list of redshifts, prepared for many universes. The integral of
 // (1+z)/E over ln(1+z) is expanded in Legendre polynomials on a few panels; the weights with which a panel's

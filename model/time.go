@@ -49,8 +49,9 @@ func (e *expansion) rootRate(x float64) (v, noise float64) {
 	if !e.lambda {
 		de = e.ol * math.Exp((4-e.p)*math.Log(a)+e.b*(a-1))
 	}
-	v = 2 * x * a / math.Sqrt(rest+de)
-	return v, rounding * v * (1 + (math.Abs(de)+a*a*math.Abs(e.ok))/(rest+de))
+	w := 1 / math.Sqrt(rest+de)
+	v = 2 * x * a * w
+	return v, rounding * v * (1 + (math.Abs(de)+a*a*math.Abs(e.ok))*w*w)
 }
 
 // untilTurnaround is the time from ln a = s to the zero of E² at st > s.

@@ -119,7 +119,7 @@ func (e *expansion) inverse(x, y, a float64) (v, noise float64) {
 	e2 := e.squared(x, y, a)
 	v = 1 / math.Sqrt(e2)
 	terms := ((math.Abs(e.or)*x+math.Abs(e.om))*x + math.Abs(e.ok)) * x * x
-	return v, rounding * v * (1 + terms/e2)
+	return v, rounding * v * (1 + terms*v*v)
 }
 
 // reduced is r = a²E² = (ȧ/H0)² at s = ln a, and dr/ds, whose sign is that of the acceleration.
