@@ -35,13 +35,14 @@ func DrawConvergence(in Convergence, width Width) (*Figure, error) {
 		return nil, err
 	}
 	n := len(in.Traces)
-	const trace, lower, gap = 42., 66., 22.
+	const trace, lower = 42., 62.
+	below, above := belowAxis(axis{title: Plain("step")}), aboveAxis+3.
 	rows := float64(n)*(trace+6) + 6
 	lowerRows := 1.
 	if width == Column {
 		lowerRows = 3
 	}
-	height := rows + lowerRows*(lower+gap+19) + 26
+	height := 14 + rows + lowerRows*(lower+below+above) + below
 	f := newFigure("Convergence of the chain", width, height)
 	left := 38.
 	top := f.h - 14
@@ -50,13 +51,13 @@ func DrawConvergence(in Convergence, width Width) (*Figure, error) {
 		in.trace(f, r, i, steps, i == n-1)
 		top -= trace + 6
 	}
-	top -= gap + 19
+	top -= below + above - 6
 	third := (f.w - 8 - left - 2*44) / 3
 	x0 := left
 	for _, draw := range []func(*Figure, rect, float64){in.autocorrelation, in.rhat, in.ess} {
 		if width == Column {
 			draw(f, rect{left, top - lower, f.w - 8, top}, steps)
-			top -= lower + gap + 19
+			top -= lower + below + above
 			continue
 		}
 		draw(f, rect{x0, top - lower, x0 + third, top}, steps)
@@ -97,7 +98,7 @@ func (in *Convergence) trace(f *Figure, r rect, i int, steps float64, last bool)
 		}
 	}
 	y := padded(lo, hi, 0.05)
-	y.ticks = linearTicks(y.lo, y.hi, 3)
+	y.ticks = someTicks(y.lo, y.hi, 2, 2)
 	x := axis{lo: 0, hi: steps, ticks: linearTicks(0, steps, 6), bare: !last}
 	if last {
 		x.title = Plain("step")
@@ -152,14 +153,14 @@ func envelope(l line) []line {
 func (in *Convergence) autocorrelation(f *Figure, r rect, _ float64) {
 	most := 0
 	for _, t := range in.Traces {
-		for k, v := range t.Autocorrelation {
-			if v > 0.02 {
-				most = max(most, k+1)
-			}
+		k := 0
+		for k < len(t.Autocorrelation) && t.Autocorrelation[k] > 0.02 {
+			k++
 		}
+		most = max(most, k)
 	}
-	hi := max(float64(most)*1.3, 4) * in.Every
-	p := &panel{r, axis{lo: 0, hi: hi, ticks: linearTicks(0, hi, 4), title: Plain("lag (steps)")},
+	hi := max(float64(most)*1.6, 4) * in.Every
+	p := &panel{r, axis{lo: 0, hi: hi, ticks: linearTicks(0, hi, 5), title: Plain("lag (steps)")},
 		axis{lo: -0.15, hi: 1, ticks: linearTicks(0, 1, 2), title: Plain("autocorrelation")}}
 	f.curve(p, []float64{0, hi}, []float64{0, 0}, pen{ink: inkRule, width: 0.5})
 	taken := newOccupied(r)
@@ -194,7 +195,7 @@ func (in *Convergence) rhat(f *Figure, r rect, steps float64) {
 			hi = max(hi, 1+1.1*(c.Rhat-1))
 		}
 	}
-	p := &panel{r, axis{lo: 0, hi: steps, ticks: linearTicks(0, steps, 3), title: Plain("step")},
+	p := &panel{r, axis{lo: 0, hi: steps, ticks: linearTicks(0, steps, 5), title: Plain("step")},
 		axis{lo: 1 - 0.04*(hi-1), hi: hi, ticks: linearTicks(1, hi, 3), title: Markup("largest *~R*")}}
 	in.goal(f, p, in.RhatGoal, "goal")
 	f.curve(p, x, y, pen{ink: lineInk(0), width: 0.9})
@@ -211,7 +212,7 @@ func (in *Convergence) ess(f *Figure, r rect, steps float64) {
 		}
 	}
 	hi = max(hi*1.1, 10)
-	p := &panel{r, axis{lo: 0, hi: steps, ticks: linearTicks(0, steps, 3), title: Plain("step")},
+	p := &panel{r, axis{lo: 0, hi: steps, ticks: linearTicks(0, steps, 5), title: Plain("step")},
 		axis{lo: 0, hi: hi, ticks: linearTicks(0, hi, 3), title: Plain("effective samples (least)")}}
 	in.goal(f, p, in.ESSGoal, "goal")
 	f.curve(p, x, y, pen{ink: lineInk(0), width: 0.9})
@@ -224,5 +225,5 @@ func (in *Convergence) goal(f *Figure, p *panel, v float64, name string) {
 		return
 	}
 	f.curve(p, []float64{p.x.lo, p.x.hi}, []float64{v, v}, pen{ink: inkSoft, width: 0.6, dash: []float64{3, 2}})
-	f.text(Plain(name), p.x1, p.at(p.x.lo, v).y+2.5, textStyle{size: noteSize, ink: inkSoft, h: 1})
+	f.text(Plain(name), p.x0+3, p.at(p.x.lo, v).y+2.5, textStyle{size: noteSize, ink: inkSoft})
 }

@@ -34,17 +34,17 @@ func DrawFates(in Fates, width Width) (*Figure, error) {
 		return nil, err
 	}
 	n := len(in.Series)
-	bar := 7.
-	pitch := float64(n)*bar + 8
-	if n == 1 {
-		bar, pitch = 9, 17
+	const bar = 9.5
+	pitch := max(float64(n)*bar+6, 20)
+	left, lines := 0.0, make([][]Label, len(in.Rows))
+	for i, r := range in.Rows {
+		lines[i] = r.wrap(0.34*width.points(), tickSize)
+		for _, l := range lines[i] {
+			left = max(left, l.measure(tickSize))
+		}
 	}
-	left := 0.0
-	for _, r := range in.Rows {
-		left = max(left, r.measure(tickSize))
-	}
-	left = min(left, 0.45*width.points()) + 6
-	x := in.axis()
+	left = min(left, 0.5*width.points()) + 9
+	x := in.axis(width.points() - left - in.room())
 	bottom := belowAxis(x) + 1
 	key := 11.
 	if n > 1 {
@@ -61,12 +61,15 @@ func DrawFates(in Fates, width Width) (*Figure, error) {
 			f.segment(at, p.y0, at, p.y1, pen{ink: inkRule, width: 0.35})
 		}
 	}
-	for r, name := range in.Rows {
+	for r := range in.Rows {
 		middle := p.y1 - pitch*(float64(r)+0.5)
-		f.text(name, p.x0-6, middle, textStyle{size: tickSize, ink: inkText, h: 1, v: 0.5})
+		for k, l := range lines[r] {
+			y := middle + 8.6*(float64(len(lines[r])-1)/2-float64(k))
+			f.text(l, p.x0-6, y, textStyle{size: tickSize, ink: inkText, h: 1, v: 0.5})
+		}
 		for s := range in.Series {
 			y := middle + bar*(float64(n-1)/2-float64(s))
-			f.probability(p, in.Series[s].Values[r], y, bar*0.78, s)
+			f.probability(p, in.Series[s].Values[r], y, bar*0.66, s)
 		}
 	}
 	f.segment(p.x0, p.y0, p.x0, p.y1, pen{ink: inkText, width: axisWidth})
@@ -96,7 +99,7 @@ func (in *Fates) check() error {
 }
 
 // axis runs from 0 to 1, or over the decades down to the smallest value.
-func (in *Fates) axis() axis {
+func (in *Fates) axis(w float64) axis {
 	least := 1.0
 	for _, s := range in.Series {
 		for _, v := range s.Values {
@@ -110,7 +113,7 @@ func (in *Fates) axis() axis {
 		return axis{lo: 0, hi: 1, ticks: linearTicks(0, 1, 5), title: title}
 	}
 	lo := math.Pow(10, math.Floor(math.Log10(max(least, 1e-12))-0.3))
-	return axis{lo: lo, hi: 1, log: true, ticks: logTicks(lo, 1), title: title}
+	return axis{lo: lo, hi: 1, log: true, ticks: logTicks(lo, 1, w), title: title}
 }
 
 func (in *Fates) hasLimit() bool {
@@ -179,7 +182,11 @@ func scientific(v float64, digits int) Label {
 
 // probability draws one bar: filled with an error, or open with an arrow to the left for a limit.
 func (f *Figure) probability(p *panel, v Probability, y, h float64, series int) {
-	f.text(v.label(), p.x1+6, y, textStyle{size: tickSize, ink: inkText, v: 0.5})
+	k := inkText
+	if math.IsNaN(v.P) {
+		k = inkSoft
+	}
+	f.text(v.label(), p.x1+6, y, textStyle{size: tickSize, ink: k, v: 0.5})
 	if math.IsNaN(v.P) || v.P <= 0 {
 		return
 	}

@@ -119,20 +119,19 @@ func DrawHubble(in Hubble, width Width) (*Figure, error) {
 			panels[i] *= 1.35
 		}
 	}
-	const gap = 25
-	height := 33. + 8
+	const gap = aboveAxis + 10
+	x := in.redshifts(width.points() - 42)
+	height := 1 + belowAxis(x) + 2
 	for _, h := range panels {
 		height += h + gap
 	}
-	f := newFigure("Hubble diagram", width, height-gap+aboveAxis)
-	lo, hi := in.redshifts()
+	f := newFigure("Hubble diagram", width, height-10)
 	top := f.h - aboveAxis - 2
 	next := func(h float64) rect {
-		r := rect{36, top - h, f.w - 6, top}
+		r := rect{31, top - h, f.w - 6, top}
 		top -= h + gap
 		return r
 	}
-	x := axis{lo: lo, hi: hi, log: true, ticks: logTicks(lo, hi)}
 	if sn {
 		in.drawDiagram(f, next(panels[0]), x)
 		in.drawResiduals(f, next(panels[1]), x, !bao)
@@ -169,9 +168,9 @@ func (in *Hubble) check() error {
 	return nil
 }
 
-// redshifts is the range of the data with a margin.
-func (in *Hubble) redshifts() (lo, hi float64) {
-	lo, hi = math.Inf(1), 0
+// redshifts is the axis over the range of the data with a margin, w points long.
+func (in *Hubble) redshifts(w float64) axis {
+	lo, hi := math.Inf(1), 0.
 	add := func(p Points) {
 		for _, z := range p.Z {
 			lo, hi = min(lo, z), max(hi, z)
@@ -184,7 +183,9 @@ func (in *Hubble) redshifts() (lo, hi float64) {
 		add(b.Points)
 	}
 	margin := math.Pow(hi/lo, 0.04) * 1.06
-	return lo / margin, hi * margin
+	lo, hi = lo/margin, hi*margin
+	title := append(Plain("redshift "), Markup("*z*")...)
+	return axis{lo: lo, hi: hi, log: true, ticks: logTicks(lo, hi, w), title: title}
 }
 
 func (in *Hubble) drawDiagram(f *Figure, r rect, x axis) {
@@ -196,12 +197,18 @@ func (in *Hubble) drawDiagram(f *Figure, r rect, x axis) {
 	}
 	y := padded(lo, hi, 0.05)
 	y.ticks, y.title = linearTicks(y.lo, y.hi, 5), in.Magnitude
-	x.bare = true
+	x.bare, x.title = true, nil
 	p := &panel{r, x, y}
 	f.bands(p, &in.Model, 0)
 	f.curve(p, in.Model.X, in.Model.Best, pen{ink: inkText, width: 0.8})
 	for i := range in.Supernovae {
-		in.Supernovae[i].draw(f, p, i, in.many(), func(k int) float64 { return in.Supernovae[i].Value[k] })
+		s := &in.Supernovae[i]
+		s.draw(f, p, i, in.many(), func(k int) float64 { return s.Value[k] })
+		if in.many() {
+			r := s.residuals(&in.Model)
+			b := r.binned()
+			b.draw(f, p, i, false, func(k int) float64 { return in.Model.best(b.Z[k]) + b.Value[k] })
+		}
 	}
 	f.axes(p)
 	in.legend(f, p)
@@ -222,12 +229,16 @@ func (in *Hubble) legend(f *Figure, p *panel) {
 	for i, s := range in.Supernovae {
 		w := s.Name.measure(tickSize)
 		f.text(s.Name, p.x1-4, y, textStyle{size: tickSize, ink: inkText, h: 1})
-		f.marks([]pt{{p.x1 - 4 - w - 6, y + 2.6}}, markers(i), 3.6, lineInk(i))
+		at := pt{p.x1 - 4 - w - 6, y + 2.6}
+		if in.many() {
+			f.dots([]pt{{at.x - 7, at.y + 1}, {at.x - 8.5, at.y - 1.2}, {at.x - 10.5, at.y + 0.4}}, 1.1, fillInk(i), 0.6)
+		}
+		f.marks([]pt{at}, markers(i), 3.4, lineInk(i))
 		y -= 10
 	}
-	note := "best fit, 68% and 95% bands"
-	if in.many() {
-		note = "binned points on single ones; best fit, 68% and 95%"
+	note := "line: best fit"
+	if in.Model.Lo68 != nil {
+		note += "; bands: 68% and 95%"
 	}
 	f.text(Plain(note), p.x1-4, y, textStyle{size: noteSize, ink: inkSoft, h: 1})
 }
@@ -270,12 +281,10 @@ func (in *Hubble) drawResiduals(f *Figure, r rect, x axis, last bool) {
 		sets = append(sets, s)
 	}
 	y := axis{lo: -1.08 * most, hi: 1.08 * most, title: Plain("residual (mag)")}
-	y.ticks = linearTicks(y.lo, y.hi, 3)
-	if last {
-		x.title = WithUnit(Plain("redshift "), nil)
-		x.title = append(x.title, Markup("*z*")...)
+	y.ticks = someTicks(y.lo, y.hi, 2, 3)
+	if !last {
+		x.bare, x.title = true, nil
 	}
-	x.bare = !last
 	p := &panel{r, x, y}
 	rel := in.Model.relative(func(v, best float64) float64 { return v - best })
 	f.bands(p, &rel, 0)
@@ -288,7 +297,7 @@ func (in *Hubble) drawResiduals(f *Figure, r rect, x axis, last bool) {
 			b := sets[i].binned()
 			b.draw(f, p, i, false, func(k int) float64 { return b.Value[k] })
 		}
-		f.text(Plain("bins: errors without correlations"), p.x1-4, p.y1+5, textStyle{size: noteSize, ink: inkSoft, h: 1})
+		f.text(Plain("binned; errors without correlations"), p.x1-4, p.y1+7, textStyle{size: noteSize, ink: inkSoft, h: 1})
 	}
 	f.axes(p)
 }
@@ -368,12 +377,18 @@ func (in *Hubble) drawBAO(f *Figure, r rect, x axis) {
 		rel = append(rel, q)
 	}
 	y := axis{lo: 1 - 1.1*most, hi: 1 + 1.1*most, title: Plain("BAO: measured / best fit")}
-	y.ticks = linearTicks(y.lo, y.hi, 4)
-	x.title = append(Plain("redshift "), Markup("*z*")...)
+	y.ticks = someTicks(y.lo, y.hi, 3, 3)
 	p := &panel{r, x, y}
 	for i := range in.BAO {
 		b := in.BAO[i].Model.relative(func(v, best float64) float64 { return v / best })
-		f.bands(p, &b, i+1)
+		if b.Lo68 != nil && b.Hi68 != nil {
+			f.band(p, b.X, b.Lo68, b.Hi68, fillInk(i+1), 0.2)
+		}
+		for _, e := range [][]float64{b.Lo95, b.Hi95} {
+			if e != nil { // bands of several quantities overlap; the outer ones are lines
+				f.curve(p, b.X, e, pen{ink: lineInk(i + 1), width: 0.45, dash: dashes(i + 1)})
+			}
+		}
 	}
 	f.curve(p, []float64{x.lo, x.hi}, []float64{1, 1}, pen{ink: inkText, width: 0.6})
 	for i := range rel {

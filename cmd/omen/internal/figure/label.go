@@ -89,7 +89,7 @@ func group(r []rune) (string, int) {
 func Symbol(name string) (symbol, unit Label) {
 	s, ok := map[string][2]string{
 		"Om": {"Ω_m"}, "OL": {"Ω_Λ"}, "Ok": {"Ω_k"}, "Or": {"Ω_r"},
-		"H0": {"*H*_0", "km s^{−1} Mpc^{−1}"},
+		"H0": {"*H*_0", "km/s/Mpc"},
 		"w0": {"*w*_0"}, "wa": {"*w*_a"}, "w": {"*w*"}, "q0": {"*q*_0"},
 		"rd": {"*r*_d", "Mpc"}, "hrd": {"*h r*_d", "Mpc"}, "ob": {"Ω_b *h*^2"},
 		"M": {"*M*", "mag"}, "mu": {"*μ*", "mag"}, "mag": {"*m*", "mag"},
@@ -113,6 +113,25 @@ func WithUnit(symbol, unit Label) Label {
 	l = append(l, run{text: " ("})
 	l = append(l, unit...)
 	return append(l, run{text: ")"})
+}
+
+// wrap breaks a plain label wider than w into two lines at the blank nearest to its middle.
+func (l Label) wrap(w, size float64) []Label {
+	if len(l) != 1 || l.measure(size) <= w {
+		return []Label{l}
+	}
+	words := strings.Fields(l[0].text)
+	best, at := w*10, 0
+	for i := 1; i < len(words); i++ {
+		a, b := Plain(strings.Join(words[:i], " ")), Plain(strings.Join(words[i:], " "))
+		if v := max(a.measure(size), b.measure(size)); v < best {
+			best, at = v, i
+		}
+	}
+	if at == 0 {
+		return []Label{l}
+	}
+	return []Label{Plain(strings.Join(words[:at], " ")), Plain(strings.Join(words[at:], " "))}
 }
 
 // String is the label in plain characters, for alternative texts.

@@ -87,6 +87,7 @@ type matrix struct {
 	bottom float64 // of the last row
 	w, h   float64 // of a panel
 	lines  int     // of axis titles: 1, or 2 with the unit below the symbol
+	turned bool    // labels of the horizontal axes stand upright to fit
 }
 
 const matrixGap = 5.
@@ -96,14 +97,22 @@ func (m *matrix) lay(width Width) {
 	total := width.points()
 	m.left = 30 // a first guess, to choose ticks
 	m.w = (total - m.left - 4 - (n-1)*matrixGap) / n
-	for i := range m.axes {
-		m.axes[i].ticks = fittingTicks(m.axes[i], m.w)
+	for _, turned := range []bool{false, true} {
+		m.turned = turned
+		least := mostParameters
+		for i := range m.axes {
+			m.axes[i].ticks = fittingTicks(m.axes[i], m.w, turned)
+			least = min(least, len(m.axes[i].ticks))
+		}
+		if least > 1 {
+			break
+		}
 	}
 	label := 0.0
 	for _, a := range m.axes[1:] {
 		label = max(label, leftOfAxis(a))
 	}
-	m.left = label + 4 + titleSize + 2
+	m.left = label + 7 + titleSize
 	if n == 1 {
 		m.left = 6
 	}
@@ -118,29 +127,46 @@ func (m *matrix) lay(width Width) {
 			m.lines = 2
 		}
 	}
-	m.bottom = belowAxis(m.axes[0]) + float64(m.lines-1)*9
+	m.bottom = m.belowTicks() + belowAxis(m.axes[0]) + float64(m.lines-1)*9
 	title := "Marginal posterior densities"
-	m.f = newFigure(title, width, m.bottom+n*m.h+(n-1)*matrixGap+11)
+	m.f = newFigure(title, width, m.bottom+n*m.h+(n-1)*matrixGap+5)
 }
 
-// fittingTicks are as many as leave room between their labels, away from the corners of the panel.
-func fittingTicks(a axis, w float64) []tick {
+// belowTicks is the extra height of labels that stand upright.
+func (m *matrix) belowTicks() float64 {
+	if !m.turned {
+		return 0
+	}
+	w := 0.0
+	for _, a := range m.axes {
+		for _, t := range a.ticks {
+			w = max(w, t.label.measure(tickSize))
+		}
+	}
+	return w - capHeight*tickSize
+}
+
+// fittingTicks are at most n that leave room between their labels, and those away from the corners of the panel.
+// Labels that stand upright, turned, take a line's height instead of their width.
+func fittingTicks(a axis, w float64, turned bool) []tick {
 	for n := 5; n > 0; n-- {
 		var inner []tick
-		room := 0.0
+		widest := 0.0
 		for _, t := range linearTicks(a.lo, a.hi, n) {
 			half := t.label.measure(tickSize) / 2
-			if at := a.fraction(t.at) * w; at > half-3 && at < w-half+3 {
+			if turned {
+				half = 0.4 * tickSize
+			}
+			if at := a.fraction(t.at) * w; at > half-1.5 && at < w-half+1.5 {
 				inner = append(inner, t)
-				room += 2*half + 5
+				widest = max(widest, 2*half)
 			}
 		}
-		if len(inner) > 0 && room <= w+5 {
+		if len(inner) == 1 || len(inner) > 1 && (inner[1].at-inner[0].at)/(a.hi-a.lo)*w > widest+3.5 {
 			return inner
 		}
 	}
-	middle := linearTicks(a.lo, a.hi, 3)
-	return middle[len(middle)/2 : len(middle)/2+1]
+	return nil
 }
 
 // panel is the one in column col and row row, counted from the top left.
@@ -191,14 +217,14 @@ func stretch(c *density.Curve, v density.Interval) (x, y []float64) {
 
 // below draws the ticks under a panel, with labels and title in the last row.
 func (m *matrix) below(q *panel, i int, last bool) {
-	q.x.bare = !last
+	q.x.bare, q.x.turned = !last, m.turned
 	m.f.ticksBelow(q, pen{ink: inkText, width: axisWidth})
 	if !last {
 		return
 	}
 	p := &m.in.Parameters[i]
 	at := (q.x0 + q.x1) / 2
-	y := q.y0 - belowAxis(m.axes[i]) + 2.5
+	y := q.y0 - m.belowTicks() - belowAxis(m.axes[i]) + 2.5
 	both := WithUnit(p.Symbol, p.Unit)
 	style := textStyle{size: titleSize, ink: inkText, h: 0.5}
 	switch {
@@ -246,7 +272,7 @@ func (m *matrix) pair(col, row int) error {
 		if title.measure(titleSize) > q.h()+matrixGap {
 			title = b.Symbol
 		}
-		m.f.text(title, titleSize-1, (q.y0+q.y1)/2, textStyle{size: titleSize, ink: inkText, h: 0.5, angle: math.Pi / 2})
+		m.f.text(title, titleSize+0.5, (q.y0+q.y1)/2, textStyle{size: titleSize, ink: inkText, h: 0.5, angle: math.Pi / 2})
 	}
 	return nil
 }
@@ -258,7 +284,7 @@ func (m *matrix) key() {
 		return
 	}
 	x := m.panel(1, 0, axis{}, axis{}).x0 + 6
-	y := m.f.h - 20
+	y := m.f.h - 14
 	f := m.f
 	note := textStyle{size: noteSize, ink: inkText, v: 0.5}
 	swatch := func(text string, draw func(r rect)) {

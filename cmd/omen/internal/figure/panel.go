@@ -11,6 +11,7 @@ type axis struct {
 	title  Label
 	ticks  []tick
 	bare   bool // no tick labels
+	turned bool // tick labels below stand upright
 }
 
 func (a axis) fraction(v float64) float64 {
@@ -39,13 +40,35 @@ func (p *panel) path(x, y []float64) line {
 	return l
 }
 
+// paths is path in stretches of finite values.
+func (p *panel) paths(x, y []float64) []line {
+	var out []line
+	for i := 0; i < len(x); {
+		j := i
+		for j < len(x) && finite(y[j]) {
+			j++
+		}
+		out = append(out, p.path(x[i:j], y[i:j]))
+		i = j + 1
+	}
+	return out
+}
+
 // curve strokes a line of values inside the panel.
 func (c *canvas) curve(p *panel, x, y []float64, k pen) {
-	c.stroke(clipStroke(thin([]line{p.path(x, y)}), p.rect), k)
+	c.stroke(clipStroke(thin(p.paths(x, y)), p.rect), k)
 }
 
 // band fills between two lines of values, in stretches where both are finite.
 func (c *canvas) band(p *panel, x, lo, hi []float64, k ink, alpha float64) {
+	for _, l := range p.between(x, lo, hi) {
+		c.fill(thin([]line{l}), k, alpha)
+	}
+}
+
+// between is the area between two lines of values.
+func (p *panel) between(x, lo, hi []float64) []line {
+	var out []line
 	for i := 0; i < len(x); {
 		j := i
 		for j < len(x) && finite(lo[j]) && finite(hi[j]) {
@@ -58,10 +81,11 @@ func (c *canvas) band(p *panel, x, lo, hi []float64, k ink, alpha float64) {
 				l.pts = append(l.pts, up.pts[n])
 			}
 			l.closed = true
-			c.fill(thin(clipFill([]line{l}, p.rect)), k, alpha)
+			out = append(out, clipFill([]line{l}, p.rect)...)
 		}
 		i = j + 1
 	}
+	return out
 }
 
 func finite(v float64) bool { return !math.IsNaN(v) && !math.IsInf(v, 0) }
@@ -85,7 +109,7 @@ func (c *canvas) axes(p *panel) {
 		c.text(p.x.title, (p.x0+p.x1)/2, p.y0-belowAxis(p.x)+2.5, textStyle{size: titleSize, ink: inkText, h: 0.5})
 	}
 	if len(p.y.title) > 0 {
-		c.text(p.y.title, p.x0-leftOfAxis(p.y), p.y1+5, textStyle{size: titleSize, ink: inkText})
+		c.text(p.y.title, p.x0-leftOfAxis(p.y), p.y1+7, textStyle{size: titleSize, ink: inkText})
 	}
 }
 
@@ -97,8 +121,12 @@ func (c *canvas) ticksBelow(p *panel, k pen) {
 			n *= 0.6
 		}
 		c.segment(at.x, p.y0, at.x, p.y0-n, k)
+		s := textStyle{size: tickSize, ink: inkText, h: 0.5, v: 1}
+		if p.x.turned {
+			s.h, s.v, s.angle = 1, 0.5, math.Pi/2
+		}
 		if !p.x.bare {
-			c.text(t.label, at.x, p.y0-tickLength-tickGap, textStyle{size: tickSize, ink: inkText, h: 0.5, v: 1})
+			c.text(t.label, at.x, p.y0-tickLength-tickGap, s)
 		}
 	}
 }
@@ -141,4 +169,4 @@ func belowAxis(a axis) float64 {
 }
 
 // aboveAxis is the room that the title of the vertical axis takes on top.
-const aboveAxis = 5 + titleSize
+const aboveAxis = 7 + titleSize

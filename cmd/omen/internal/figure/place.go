@@ -69,14 +69,18 @@ type spot struct {
 	x, y    float64
 	style   textStyle
 	penalty float64
+	leader  *pt // where a thin line to what is named starts; nil for none
 }
 
 // put draws the label at the cheapest of the spots and marks it as taken. Spots where it would leave the frame
 // are out; false if none is left or all cost more than most.
 func (c *canvas) put(o *occupied, l Label, spots []spot, most float64) bool {
+	if len(l) == 0 {
+		return false
+	}
 	best, price := -1, most
 	for i, s := range spots {
-		if v := o.price(labelBox(l, s)) + s.penalty; v < price {
+		if v := o.price(labelBox(l, s)) + o.leaderPrice(s) + s.penalty; v < price {
 			best, price = i, v
 		}
 	}
@@ -84,9 +88,38 @@ func (c *canvas) put(o *occupied, l Label, spots []spot, most float64) bool {
 		return false
 	}
 	s := spots[best]
-	o.area([]line{labelBox(l, s)}, 1)
+	o.area([]line{labelBox(l, s)}, 3)
+	o.lines([]line{labelBox(l, s).closedUp()}, 3)
+	if s.leader != nil {
+		o.lines([]line{{pts: []pt{*s.leader, {s.x, s.y}}}}, 3)
+		d := math.Hypot(s.x-s.leader.x, s.y-s.leader.y)
+		end := along(*s.leader, pt{s.x, s.y}, 1-2/d)
+		c.segment(s.leader.x, s.leader.y, end.x, end.y, pen{ink: s.style.ink, width: 0.4})
+	}
 	c.text(l, s.x, s.y, s.style)
 	return true
+}
+
+// leaderPrice keeps the line from a label to what it names from crossing others.
+func (o *occupied) leaderPrice(s spot) float64 {
+	if s.leader == nil {
+		return 0
+	}
+	sum := 0.0
+	const n = 30
+	for k := 4; k <= n; k++ { // it starts on a line
+		q := along(*s.leader, pt{s.x, s.y}, float64(k)/n)
+		i, j := int((q.x-o.frame.x0)/rasterStep), int((q.y-o.frame.y0)/rasterStep)
+		if o.frame.holds(q) && i < o.nx && j < o.ny && o.cost[j*o.nx+i] >= 3 {
+			sum += 0.03
+		}
+	}
+	return sum
+}
+
+// closedUp is a polygon as a line that returns to its start.
+func (l line) closedUp() line {
+	return line{pts: append(l.pts[:len(l.pts):len(l.pts)], l.pts[0])}
 }
 
 func labelBox(l Label, s spot) line {

@@ -126,7 +126,7 @@ func (in *Plane) draw(f *Figure, p *panel, sets []outlines) {
 			f.fill(area, inkRule, 0.18)
 			f.stroke(hatch(area, math.Pi/4, 4), pen{ink: inkRule, width: 0.35})
 		}
-		taken.lines([]line{p.path(d.X, d.Y)}, 1)
+		taken.lines([]line{p.path(d.X, d.Y)}, 5)
 	}
 	for _, d := range in.Dividers {
 		f.curve(p, d.X, d.Y, pen{ink: inkSoft, width: 0.55, dash: []float64{3, 2}})
@@ -135,6 +135,9 @@ func (in *Plane) draw(f *Figure, p *panel, sets []outlines) {
 		f.region(p, s.r95, i, 0.28)
 		f.region(p, s.r68, i, 0.42)
 		taken.area(loops(p, s.r95), 0.8)
+		for _, l := range loops(p, append(append([]density.Loop(nil), s.r95...), s.r68...)) {
+			taken.lines([]line{l.closedUp()}, 3)
+		}
 	}
 	for i, s := range sets {
 		f.regionLines(p, s, i)
@@ -196,7 +199,7 @@ func (in *Plane) nameSets(f *Figure, p *panel, sets []outlines, taken *occupied)
 				spots = append(spots, around(l.pts[k], lineInk(i))...)
 			}
 		}
-		if !f.put(taken, s.name, spots, 0.6) {
+		if !f.put(taken, s.name, spots, 0.9) {
 			f.put(taken, s.name, corners(p, lineInk(i)), 10)
 		}
 	}
@@ -205,11 +208,15 @@ func (in *Plane) nameSets(f *Figure, p *panel, sets []outlines, taken *occupied)
 // around are places for a label beside a point of an outline, the nearer ones preferred.
 func around(c pt, k ink) []spot {
 	var out []spot
-	for _, d := range [3]float64{4, 8, 14} {
+	for _, d := range [7]float64{4, 8, 14, 24, 36, 50, 70} {
 		for a := range 8 {
 			sin, cos := math.Sincos(float64(a) * math.Pi / 4)
 			s := textStyle{size: titleSize, ink: k, h: 0.5 - 0.5*cos, v: 0.5 - 0.5*sin}
-			out = append(out, spot{c.x + d*cos, c.y + d*sin, s, d * 0.004})
+			q := spot{x: c.x + d*cos, y: c.y + d*sin, style: s, penalty: d * 0.006}
+			if d > 10 {
+				q.leader = &pt{c.x, c.y}
+			}
+			out = append(out, q)
 		}
 	}
 	return out
@@ -218,23 +225,34 @@ func around(c pt, k ink) []spot {
 func corners(p *panel, k ink) []spot {
 	s := textStyle{size: titleSize, ink: k}
 	return []spot{
-		{p.x1 - 5, p.y1 - 5, textStyle{size: s.size, ink: k, h: 1, v: 1}, 0},
-		{p.x0 + 5, p.y1 - 5, textStyle{size: s.size, ink: k, v: 1}, 0.01},
-		{p.x1 - 5, p.y0 + 5, textStyle{size: s.size, ink: k, h: 1}, 0.02},
-		{p.x0 + 5, p.y0 + 5, s, 0.03},
+		{x: p.x1 - 5, y: p.y1 - 5, style: textStyle{size: s.size, ink: k, h: 1, v: 1}},
+		{x: p.x0 + 5, y: p.y1 - 5, style: textStyle{size: s.size, ink: k, v: 1}, penalty: 0.01},
+		{x: p.x1 - 5, y: p.y0 + 5, style: textStyle{size: s.size, ink: k, h: 1}, penalty: 0.02},
+		{x: p.x0 + 5, y: p.y0 + 5, style: s, penalty: 0.03},
 	}
 }
 
-// nameSides writes what lies on either side of a divider along it.
+// nameSides writes what lies on either side of a divider along it, both at the same place.
 func (f *Figure) nameSides(p *panel, d Divider, taken *occupied) {
 	l := clipStroke([]line{p.path(d.X, d.Y)}, p.rect)
-	for _, side := range [2]struct {
-		name Label
-		sign float64
-	}{{d.Left, 1}, {d.Right, -1}} {
-		if len(side.name) > 0 {
-			f.put(taken, side.name, alongLine(l, side.sign, side.name.measure(noteSize)), 0.3)
+	w := max(d.Left.measure(noteSize), d.Right.measure(noteSize))
+	left, right := alongLine(l, 1, w), alongLine(l, -1, w)
+	best, price := -1, 0.9
+	for i := range left {
+		v := left[i].penalty
+		if len(d.Left) > 0 {
+			v += taken.price(labelBox(d.Left, left[i]))
 		}
+		if len(d.Right) > 0 {
+			v += taken.price(labelBox(d.Right, right[i]))
+		}
+		if v < price {
+			best, price = i, v
+		}
+	}
+	if best >= 0 {
+		f.put(taken, d.Left, left[best:best+1], math.Inf(1))
+		f.put(taken, d.Right, right[best:best+1], math.Inf(1))
 	}
 }
 
@@ -259,9 +277,9 @@ func alongLine(path []line, sign, w float64) []spot {
 			}
 			d := 2.8 + bend
 			// The middle of the line is preferred a little.
-			out = append(out, spot{m.x + d*off.x, m.y + d*off.y,
-				textStyle{size: noteSize, ink: inkSoft, h: 0.5, v: v, angle: angle},
-				0.02*bend + 0.03*math.Abs(2*s/total-1)})
+			out = append(out, spot{x: m.x + d*off.x, y: m.y + d*off.y,
+				style:   textStyle{size: noteSize, ink: inkSoft, h: 0.5, v: v, angle: angle, halo: true},
+				penalty: 0.02*bend + 0.03*math.Abs(2*s/total-1)})
 		}
 	}
 	return out

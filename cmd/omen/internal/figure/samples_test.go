@@ -3,7 +3,6 @@ package figure
 import (
 	"math"
 	"math/rand/v2"
-	"slices"
 
 	"omen/cmd/omen/internal/density"
 )
@@ -31,23 +30,6 @@ func modulus(z, om, ol float64) float64 {
 		sum = math.Sin(s*sum) / s
 	}
 	return 5*math.Log10((1+z)*sum*299792.458/70) + 25
-}
-
-// envelopeOf makes bands around f from draws of two parameters.
-func envelopeOf(x []float64, f func(x, a, b float64) float64) Band {
-	r := random(7)
-	b := Band{X: x}
-	for _, v := range x {
-		var s []float64
-		for range 60 {
-			s = append(s, f(v, 0.31+0.03*r.NormFloat64(), 0.68+0.05*r.NormFloat64()))
-		}
-		slices.Sort(s)
-		b.Best = append(b.Best, f(v, 0.31, 0.68))
-		b.Lo95, b.Lo68 = append(b.Lo95, s[1]), append(b.Lo68, s[10])
-		b.Hi68, b.Hi95 = append(b.Hi68, s[49]), append(b.Hi95, s[58])
-	}
-	return b
 }
 
 // smoothBand is a band of relative width w(x) about f.
@@ -98,7 +80,7 @@ func baoSample(name string, z []float64, f func(float64) float64, stream uint64)
 		b.Err = append(b.Err, e)
 		b.Value = append(b.Value, f(v)+e*r.NormFloat64())
 	}
-	b.Model = smoothBand(logSpace(0.1, 3, 100), f, func(x float64) float64 { return 0.006 * f(x) })
+	b.Model = smoothBand(logSpace(0.1, 3, 100), f, func(x float64) float64 { return (0.003 + 0.0015*float64(stream-4)*x) * f(x) })
 	return b
 }
 
@@ -273,7 +255,7 @@ func historyForever() History {
 func historyCrunch() History {
 	var b Band
 	nan := math.NaN()
-	for _, t := range span(-1, 4.2, 400) {
+	for _, t := range span(-1, 4.6, 500) {
 		at := func(w float64) float64 { // a cycloid-like arch of length 4.4+w
 			u := (t + 0.72) / (4.4 + w)
 			if u < 0 || u > 1 {
@@ -283,8 +265,14 @@ func historyCrunch() History {
 		}
 		b.X = append(b.X, t)
 		b.Best = append(b.Best, at(0))
-		b.Lo68, b.Hi68 = append(b.Lo68, at(-0.1)), append(b.Hi68, at(0.12))
-		b.Lo95, b.Hi95 = append(b.Lo95, at(-0.18)), append(b.Hi95, at(0.3))
+		life := func(w float64) float64 {
+			if v := at(w); v > 0 {
+				return v
+			}
+			return 0
+		}
+		b.Lo68, b.Hi68 = append(b.Lo68, life(-0.03*(1+t))), append(b.Hi68, life(0.03*(1+t)))
+		b.Lo95, b.Hi95 = append(b.Lo95, life(-0.06*(1+t))), append(b.Hi95, life(0.08*(1+t)))
 	}
 	return History{Scale: b, Unit: Markup("1/*H*_0"), Coasting: 1, Top: 2.6, Unfinished: true,
 		Moments: []Moment{{Name: Plain("big crunch"), Time: 3.68, Lo68: 3.5, Hi68: 3.9}, {Name: Plain("big bang"), Time: -0.72, Lo68: nan, Hi68: nan}}}

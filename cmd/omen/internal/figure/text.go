@@ -14,7 +14,7 @@ import (
 
 // Sizes of text in points. Nothing is smaller than smallest, subscripts included.
 const (
-	titleSize = 8.5 // axis titles, names in the plot
+	titleSize = 9 // axis titles, names in the plot
 	tickSize  = 7.5
 	noteSize  = 7
 	smallest  = 7
@@ -104,9 +104,9 @@ func (l Label) layout(size float64) ([]piece, float64) {
 		}
 		if r.level != 0 {
 			p.size = max(smallest, 0.76*size)
-			p.dy = float64(r.level) * size * 0.3
+			p.dy = 0.36 * size
 			if r.level < 0 {
-				p.dy = -size * 0.17
+				p.dy = -0.2 * size
 			}
 		}
 		p.width = advance(p.font, p.text) * p.size

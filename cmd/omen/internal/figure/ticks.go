@@ -26,6 +26,17 @@ func linearTicks(lo, hi float64, n int) []tick {
 	return out
 }
 
+// someTicks are linear ticks, at least so many.
+func someTicks(lo, hi float64, n, least int) []tick {
+	for {
+		t := linearTicks(lo, hi, n)
+		if len(t) >= least || n > 12 {
+			return t
+		}
+		n++
+	}
+}
+
 // niceStep is the smallest of 1, 2, 5 times a power of ten not below v.
 func niceStep(v float64) float64 {
 	p := math.Pow(10, math.Floor(math.Log10(v)))
@@ -46,11 +57,12 @@ func decimal(v float64, decimals int) string {
 	return strings.Replace(s, "-", "−", 1)
 }
 
-// logTicks labels powers of ten, and 2 and 5 times them where the axis spans less than two decades.
-func logTicks(lo, hi float64) []tick {
+// logTicks labels powers of ten on an axis w points long, and 2 and 5 times them where it spans less than two
+// decades.
+func logTicks(lo, hi, w float64) []tick {
 	var out []tick
 	decades := math.Log10(hi / lo)
-	every := max(1, int(math.Ceil(decades/7)))
+	every := max(1, int(math.Ceil(decades*26/w))) // a label takes 26 points at most
 	for e := int(math.Floor(math.Log10(lo) - 1e-9)); e <= int(math.Ceil(math.Log10(hi)))+1; e++ {
 		for m := 1; m < 10; m++ {
 			v := float64(m) * math.Pow(10, float64(e))
@@ -61,7 +73,7 @@ func logTicks(lo, hi float64) []tick {
 			switch {
 			case m == 1 && e%every == 0, decades < 2 && (m == 2 || m == 5):
 				t.label = power(m, e)
-			case m != 1 && decades > 7:
+			case m != 1 && decades > w/25:
 				continue
 			}
 			out = append(out, t)

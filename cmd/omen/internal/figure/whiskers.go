@@ -50,7 +50,7 @@ func DrawWhiskers(in Whiskers, width Width) (*Figure, error) {
 		bottom += 9
 	}
 	h := pitch * float64(len(in.Runs))
-	f := newFigure("Constraints of each run", width, bottom+h+12)
+	f := newFigure("Constraints of each run", width, bottom+h+10)
 	for i, r := range in.Runs {
 		y := bottom + h - pitch*(float64(i)+0.5)
 		f.marks([]pt{{left - 12, y}}, markers(i), 3.8, lineInk(i))
@@ -83,7 +83,7 @@ func (q *Quantity) draw(f *Figure, r rect, pitch, gap float64) {
 	x := axis{lo: 0, hi: 1}
 	if hi > lo {
 		x = padded(lo, hi, 0.08)
-		x.ticks = fittingTicks(x, r.w())
+		x.ticks = fittingTicks(x, r.w(), false)
 	}
 	p := &panel{r, x, axis{lo: 0, hi: 1}}
 	for _, t := range x.ticks {
@@ -97,9 +97,9 @@ func (q *Quantity) draw(f *Figure, r rect, pitch, gap float64) {
 			continue
 		}
 		f.segment(p.at(c.Lo95, 0).x, y, p.at(c.Hi95, 0).x, y, pen{ink: lineInk(i), width: 0.7})
-		f.segment(p.at(c.Lo68, 0).x, y, p.at(c.Hi68, 0).x, y, pen{ink: lineInk(i), width: 2.2})
-		f.marks([]pt{{p.at(c.Median, 0).x, y}}, markers(i), 5.6, inkPaper)
-		f.marks([]pt{{p.at(c.Median, 0).x, y}}, markers(i), 4, lineInk(i))
+		f.segment(p.at(c.Lo68, 0).x, y, p.at(c.Hi68, 0).x, y, pen{ink: lineInk(i), width: 2.6})
+		f.marks([]pt{{p.at(c.Median, 0).x, y}}, markers(i), 4.4, inkPaper)
+		f.marks([]pt{{p.at(c.Median, 0).x, y}}, markers(i), 3, lineInk(i))
 	}
 	f.segment(r.x0, r.y0, r.x1, r.y0, pen{ink: inkText, width: axisWidth})
 	f.ticksBelow(p, pen{ink: inkText, width: axisWidth})
