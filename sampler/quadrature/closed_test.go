@@ -37,16 +37,23 @@ func randomGaussian(rng *rand.Rand, d int) *gaussian {
 
 func (g *gaussian) density() Density {
 	d := len(g.mean)
-	diff, sol := mat.NewVecDense(d, nil), mat.NewVecDense(d, nil)
+	var l, inv mat.TriDense
+	g.chol.LTo(&l)
+	if err := inv.InverseTri(&l); err != nil {
+		panic(err)
+	}
+	rows := mat.DenseCopyOf(&inv).RawMatrix().Data
 	norm := -float64(d)/2*math.Log(2*math.Pi) - g.chol.LogDet()/2
 	return func(x []float64) float64 {
-		for i, m := range g.mean {
-			diff.SetVec(i, x[i]-m)
+		var chi2 float64
+		for i := range d {
+			var z float64
+			for j := range i + 1 {
+				z += rows[i*d+j] * (x[j] - g.mean[j])
+			}
+			chi2 += z * z
 		}
-		if err := g.chol.SolveVecTo(sol, diff); err != nil {
-			return math.NaN()
-		}
-		return norm - mat.Dot(diff, sol)/2
+		return norm - chi2/2
 	}
 }
 
@@ -102,7 +109,7 @@ func fixed(d Density) func() Density { return func() Density { return d } }
 
 func TestGaussianEvidenceAndMarginals(t *testing.T) {
 	rng := rand.New(rand.NewPCG(1, 2))
-	for trial := range 9 {
+	for trial := range 6 {
 		g := randomGaussian(rng, 1+trial%3)
 		lo, hi := g.box()
 		r := integrate(t, Problem{Density: g.density, Lo: lo, Hi: hi}, DefaultOptions())
@@ -126,7 +133,7 @@ func TestGaussianEvidenceAndMarginals(t *testing.T) {
 
 func TestTruncatedByTheBox(t *testing.T) {
 	rng := rand.New(rand.NewPCG(3, 4))
-	for trial := range 9 {
+	for trial := range 6 {
 		g := randomGaussian(rng, 1+trial%3)
 		lo, hi := g.box()
 		i := rng.IntN(len(lo))

@@ -161,15 +161,17 @@ func (l *level) cores() []core { return coresOf(l.pieces) }
 // sum applies the rule to the integrals within.
 func (l *level) sum(q *piece) {
 	var f [points]vec
-	var t, peak [points]float64
+	p := profile{}
+	p.t[0], p.t[points+1] = q.a, q.b
+	p.y[0], p.y[points+1] = q.ends[0].peak, q.ends[1].peak
 	for k := range q.within {
-		f[k], peak[k] = q.within[k].val, q.within[k].peak
-		t[k], _ = q.node(k)
+		f[k] = q.within[k].val
+		p.t[1+k], _ = q.node(k)
+		p.y[1+k] = q.within[k].peak
 	}
 	q.sumRule(&f, l.slots)
-	if top, bound, k := foreseen(&t, &peak); bound > top {
-		_, scale := q.node(k)
-		q.err[0] += l.hiddenMass(bound) * l.scale[l.at+1][0] * scale * kronrod[k]
+	if top, bound, i := p.foreseen(); bound > top {
+		q.err[0] += l.hiddenMass(bound) * l.scale[l.at+1][0] * (p.t[i] - p.t[i-1])
 	}
 }
 

@@ -1,6 +1,9 @@
 package quadrature
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // outside is the label of a point without support; the others are classes (0 when there are none asked for).
 const outside int8 = -1
@@ -18,11 +21,16 @@ type node struct {
 
 // linePiece is a piece of an innermost line: the samples behind its core.
 type linePiece struct {
-	t      [points]float64
-	logp   [points]float64
-	label  [points]int8
-	la, lb int8    // labels just inside the ends
-	end    float64 // the larger ln p there
+	profile
+	label [points + 2]int8
+}
+
+// newLinePiece is a piece of which only the ends are known.
+func newLinePiece(a, b, va, vb float64, la, lb int8) (p linePiece) {
+	const last = points + 1
+	p.t[0], p.y[0], p.label[0] = a, va, la
+	p.t[last], p.y[last], p.label[last] = b, vb, lb
+	return p
 }
 
 // line integrates along the innermost coordinate, the others being fixed in w.x.
@@ -39,7 +47,7 @@ func (w *worker) line() integral {
 			edge -= nudge // a density may exclude the edge of its own box
 		}
 		vb, lb := w.at(edge)
-		w.place(cuts[i], b, linePiece{la: la, lb: lb, end: math.Max(va, vb)}, 0)
+		w.place(newLinePiece(cuts[i], b, va, vb, la, lb), 0)
 		va, la = vb, lb
 	}
 	w.refineLine(level)
@@ -55,13 +63,12 @@ func (w *worker) refineLine(level int) {
 		if i < 0 {
 			return
 		}
-		c, p := w.cores[i], w.pieces[i]
-		last := len(w.cores) - 1
+		p, last := w.pieces[i], len(w.cores)-1
 		w.cores[i], w.pieces[i] = w.cores[last], w.pieces[last]
 		w.cores, w.pieces = w.cores[:last], w.pieces[:last]
-		mid, label, end := (c.a+c.b)/2, p.label[points/2], math.Max(p.end, p.logp[points/2])
-		w.place(c.a, mid, linePiece{la: p.la, lb: label, end: end}, 0)
-		w.place(mid, c.b, linePiece{la: label, lb: p.lb, end: end}, 0)
+		const mid, end = 1 + points/2, points + 1
+		w.place(newLinePiece(p.t[0], p.t[mid], p.y[0], p.y[mid], p.label[0], p.label[mid]), 0)
+		w.place(newLinePiece(p.t[mid], p.t[end], p.y[mid], p.y[end], p.label[mid], p.label[end]), 0)
 	}
 }
 
@@ -91,64 +98,59 @@ func (w *worker) classOf() int8 {
 	return int8(w.slots - 1)
 }
 
-// place samples the piece [a, b] and keeps it, after splitting it at the borders it contains.
-func (w *worker) place(a, b float64, p linePiece, depth int) {
-	h, mid := (b-a)/2, (a+b)/2
-	mixed := p.la != p.lb
+// place samples a piece of which the ends are known and keeps it, after splitting it at the borders it
+// contains.
+func (w *worker) place(p linePiece, depth int) {
+	a, b := p.t[0], p.t[points+1]
+	mixed := p.label[0] != p.label[points+1]
 	for i, u := range abscissa {
-		p.t[i] = mid + h*u
-		p.logp[i], p.label[i] = w.at(p.t[i])
-		mixed = mixed || p.label[i] != p.la
+		t := (a+b)/2 + (b-a)/2*u
+		p.t[1+i] = t
+		p.y[1+i], p.label[1+i] = w.at(t)
+		mixed = mixed || p.label[1+i] != p.label[0]
 	}
-	if mixed && depth < maxSplits && w.matters(&p, b-a) {
-		w.splitLine(a, b, &p, depth)
+	if mixed && depth < maxSplits && w.matters(&p) {
+		w.splitLine(&p, depth)
 		return
 	}
-	w.keep(a, b, &p)
+	w.keep(&p)
 }
 
 // matters tells whether a border inside the piece could make a difference at the tolerance of the line.
-func (w *worker) matters(p *linePiece, width float64) bool {
-	top, _, _ := foreseen(&p.t, &p.logp)
-	top = math.Max(top, p.end)
+func (w *worker) matters(p *linePiece) bool {
 	least := w.tol[0]
 	for s := 1; s < w.slots; s++ {
 		least = math.Min(least, w.tol[s])
 	}
-	return math.Exp(top-w.ref)*width > 0.01*least
+	return math.Exp(slices.Max(p.y[:])-w.ref)*(p.t[points+1]-p.t[0]) > negligible*least
 }
 
 // splitLine finds the borders between neighbouring samples with different labels and places the parts. Parts
 // without support need no samples.
-func (w *worker) splitLine(a, b float64, p *linePiece, depth int) {
-	from, left := a, a // start of the current part, latest point known to carry its label
-	label, level := p.la, p.end
-	for i := 0; i <= points; i++ {
-		right, rl, rv := b, p.lb, p.end
-		if i < points {
-			right, rl, rv = p.t[i], p.label[i], p.logp[i]
+func (w *worker) splitLine(p *linePiece, depth int) {
+	from, at, value, label := p.t[0], p.t[0], p.y[0], p.label[0]
+	start := value // at from
+	part := func(to, end float64) {
+		if label != outside && to > from {
+			w.place(newLinePiece(from, to, start, end, label, label), depth+1)
 		}
-		for n := 0; rl != label && n < maxSplits; n++ {
-			border, next := w.border(left, right, label, rl, math.Max(level, rv))
-			w.part(from, border, label, depth)
-			from, left, label = border, border, next
+	}
+	for i := 1; i < len(p.t); i++ {
+		for n := 0; p.label[i] != label && n < maxSplits; n++ {
+			border, next := w.border(at, p.t[i], label, p.label[i], math.Max(value, p.y[i]))
+			part(border, math.Inf(-1))
+			from, at, label, start = border, border, next, math.Inf(-1)
 		}
-		left, label, level = right, rl, rv
+		at, value, label = p.t[i], p.y[i], p.label[i]
 	}
-	w.part(from, b, label, depth)
-}
-
-func (w *worker) part(a, b float64, label int8, depth int) {
-	if label != outside && b > a {
-		w.place(a, b, linePiece{la: label, lb: label, end: math.Inf(-1)}, depth+1)
-	}
+	part(p.t[points+1], p.y[points+1])
 }
 
 // border bisects between p, labelled lp, and q, labelled lq, until the mass in between does not matter, and
 // returns the border and the label beyond it. Between two classes only the classifier is asked.
 func (w *worker) border(p, q float64, lp, lq int8, logp float64) (t float64, beyond int8) {
 	least := min(w.tol[0], w.tol[1+max(lp, 0)], w.tol[1+max(lq, 0)])
-	enough := 0.01 * least / math.Exp(logp-w.ref)
+	enough := negligible * least / math.Exp(logp-w.ref)
 	for n := 0; n < 50 && q-p > enough; n++ {
 		t = (p + q) / 2
 		var l int8
@@ -168,21 +170,22 @@ func (w *worker) border(p, q float64, lp, lq int8, logp float64) (t float64, bey
 }
 
 // keep computes the integrals of a sampled piece and adds it to the line.
-func (w *worker) keep(a, b float64, p *linePiece) {
+func (w *worker) keep(p *linePiece) {
 	var f [points]vec
-	for i, l := range p.label {
+	for i := range f {
+		l := p.label[1+i]
 		if l == outside {
 			continue
 		}
-		f[i][0] = math.Exp(p.logp[i] - w.ref)
-		if s := int(l) + 1; w.class != nil && s < w.slots {
-			f[i][s] = f[i][0]
+		f[i][0] = math.Exp(p.y[1+i] - w.ref)
+		if w.class != nil {
+			f[i][l+1] = f[i][0]
 		}
 	}
-	c := core{a: a, b: b}
+	c := core{a: p.t[0], b: p.t[points+1]}
 	c.sumRule(&f, w.slots)
-	if top, bound, i := foreseen(&p.t, &p.logp); bound > top {
-		c.err[0] += w.hiddenMass(bound) * (b - a) / 2 * kronrod[i]
+	if top, bound, i := p.foreseen(); bound > top {
+		c.err[0] += w.hiddenMass(bound) * (p.t[i] - p.t[i-1])
 	}
 	w.cores, w.pieces = append(w.cores, c), append(w.pieces, *p)
 }
@@ -197,7 +200,7 @@ func (w *worker) closeLine() (r integral) {
 			r.val[s] += c.val[s]
 			r.err[s] += c.err[s]
 		}
-		_, bound, _ := foreseen(&p.t, &p.logp)
+		_, bound, _ := p.foreseen()
 		r.peak = math.Max(r.peak, math.Min(bound, w.ref+3))
 		w.closePiece(c, p, &r, axis)
 	}
@@ -210,19 +213,20 @@ const faintest = 60
 // closePiece adds the moments of a piece and hands on its nodes.
 func (w *worker) closePiece(c *core, p *linePiece, r *integral, axis int) {
 	h := (c.b - c.a) / 2
-	for i, l := range p.label {
-		if l == outside || p.logp[i] < w.ref-faintest {
+	for i := range points {
+		l, v, t := p.label[1+i], p.y[1+i], p.t[1+i]
+		if l == outside || v < w.ref-faintest {
 			continue
 		}
-		first := h * kronrod[i] * math.Exp(p.logp[i]-w.ref) * p.t[i]
+		first := h * kronrod[i] * math.Exp(v-w.ref) * t
 		r.moment[0][axis] += first
 		if w.class != nil {
 			r.moment[l+1][axis] += first
 		}
 		if w.record {
-			n := node{w: h * kronrod[i], coarse: h * gauss[i], logp: p.logp[i], label: l}
+			n := node{w: h * kronrod[i], coarse: h * gauss[i], logp: v, label: l}
 			copy(n.x[:], w.x)
-			n.x[axis], n.half[axis] = p.t[i], h*kronrod[i]/2
+			n.x[axis], n.half[axis] = t, h*kronrod[i]/2
 			w.out[w.dim-1] = append(w.out[w.dim-1], n)
 		}
 	}

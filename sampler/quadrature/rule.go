@@ -1,6 +1,9 @@
 package quadrature
 
-import "math"
+import (
+	"math"
+	"slices"
+)
 
 // points is the size of the 15-point Kronrod extension of the 7-point Gauss–Legendre rule.
 const points = 15
@@ -132,24 +135,23 @@ func (c *core) sumRule(f *[points]vec, slots int) {
 	}
 }
 
-// foreseen looks for a peak hidden between the nodes t by what ln p does beside it: ln p, unlike p, can be
-// seen from a long way off. It returns the largest of the values y and the highest point where the secants of
-// the nodes to the left and to the right meet within one interval: an upper bound where ln p is concave. A
-// bound far above the values at the nodes beside it (at is one of them) says that they are too far apart.
-func foreseen(t, y *[points]float64) (largest, bound float64, at int) {
-	largest = y[0]
-	for i, v := range y {
-		if v > largest {
-			largest, at = v, i
-		}
-	}
+// profile is what is known of ln p along a piece: at its ends (-Inf where it is not known) and at the nodes.
+type profile struct{ t, y [points + 2]float64 }
+
+// foreseen looks for a peak hidden between the nodes by what ln p does beside it: ln p, unlike p, can be seen
+// from a long way off. It returns the largest of the values and the highest point where the secants of the
+// values to the left and to the right meet within one interval: an upper bound where ln p is concave. A bound
+// above the largest value says that two positions, the second of them at, are too far apart.
+func (p *profile) foreseen() (largest, bound float64, at int) {
+	t, y := &p.t, &p.y
+	largest = slices.Max(y[:])
 	bound = largest
 	offer := func(v float64, i int) {
-		if v > bound && v > math.Max(y[i], y[i-1])+hidden {
+		if v > bound && v > math.Max(y[i], y[i-1])+hidden && !math.IsInf(v, 0) {
 			bound, at = v, i
 		}
 	}
-	const last = points - 1
+	last := len(t) - 1
 	for i := 2; i < last; i++ {
 		sl, sr := (y[i-1]-y[i-2])/(t[i-1]-t[i-2]), (y[i+1]-y[i])/(t[i+1]-t[i])
 		if sl > 0 && sr < 0 && !math.IsInf(sl, 0) && !math.IsInf(sr, 0) {
@@ -157,9 +159,8 @@ func foreseen(t, y *[points]float64) (largest, bound float64, at int) {
 			offer(y[i-1]+sl*(min(max(x, t[i-1]), t[i])-t[i-1]), i)
 		}
 	}
-	gap := 0.01 * (t[last] - t[0]) // from the outer nodes to the outer nodes of the next pieces
-	offer(y[0]+gap*(y[0]-y[1])/(t[1]-t[0]), 1)
-	offer(y[last]+gap*(y[last]-y[last-1])/(t[last]-t[last-1]), last)
+	offer(y[1]+(y[1]-y[2])/(t[2]-t[1])*(t[1]-t[0]), 1)
+	offer(y[last-1]+(y[last-1]-y[last-2])/(t[last-1]-t[last-2])*(t[last]-t[last-1]), last)
 	return largest, bound, at
 }
 

@@ -61,8 +61,8 @@ func (p *pass) runLine(w *worker) (o outcome, err error) {
 	o.integral = w.integrate(0)
 	for i, c := range w.cores {
 		q := curvePiece{core: c}
-		for k, l := range w.pieces[i].logp {
-			q.f[k] = math.Exp(l - p.ref)
+		for k := range q.f {
+			q.f[k] = math.Exp(w.pieces[i].y[1+k] - p.ref)
 		}
 		o.curve = append(o.curve, q)
 	}
