@@ -43,7 +43,7 @@ func (f *Forecast) toGoal(u Update) time.Duration {
 		return 0
 	}
 	last, rate := f.checks[len(f.checks)-1], f.rate()
-	if rate <= 0 || u.Goal <= last.effective {
+	if rate <= 0 {
 		return 0
 	}
 	total := float64(last.elapsed) + (u.Goal-last.effective)/rate

@@ -41,8 +41,13 @@ const (
 	frame     = 200 * time.Millisecond // between two bars
 	firstLine = 5 * time.Second        // before the first plain line
 	nextLine  = time.Minute            // between two plain lines
-	fullBar   = 30                     // columns
-	shortBar  = 8
+)
+
+// The length of a bar, in columns. The shortest leaves room for all there is
+// to say on a terminal of 80.
+const (
+	fullBar  = 30
+	shortBar = 5
 )
 
 // Meter shows the progress of one run. Its methods may be called from
@@ -149,13 +154,10 @@ func (m *Meter) Close(u Update) {
 // the words leave room for.
 func bar(u Update, width int) string {
 	const around = len(" 100% [] ")
-	if u.Goal < 1 {
-		return fit(u.words(), width)
-	}
 	words := fit(u.words(), width-around-shortBar)
 	length := min(fullBar, width-around-len([]rune(words)))
-	if length < 1 {
-		return words
+	if u.Goal < 1 || length < 1 {
+		return string([]rune(words)[:min(len([]rune(words)), max(0, width))])
 	}
 	b := progressbar.NewOptions64(int64(u.Goal),
 		progressbar.OptionSetWriter(io.Discard),

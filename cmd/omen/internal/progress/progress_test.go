@@ -73,14 +73,20 @@ func TestSilent(t *testing.T) {
 }
 
 func TestBarFits(t *testing.T) {
+	night := after(2480 * time.Second)
+	night.Slowest, night.Left = "hrd", 7*time.Hour+59*time.Minute
+	if got, want := bar(night, 79), "62% [###...] 49.6k steps, hrd 2480/4000, R 1.004, acc 31%, 412k/s, 7h59m left"; got != want {
+		t.Errorf("a long night:\n%s, want\n%s", got, want)
+	}
 	u := after(2480 * time.Second)
 	for width, want := range map[int]string{
 		180: "62% [##################............] 49.6k steps, 2480 of 4000 effective (Om), R-hat 1.004, 31% accepted, 412k evaluations/s, 25m left",
 		100: "62% [##################............] 49.6k steps, Om 2480/4000, R 1.004, acc 31%, 412k/s, 25m left",
 		79:  "62% [#####....] 49.6k steps, Om 2480/4000, R 1.004, acc 31%, 412k/s, 25m left",
-		60:  "62% [#####....] 49.6k steps, Om 2480/4000, R 1.004, 25m left",
-		40:  "62% [#######.....] Om 2480/4000, 25m left",
+		60:  "62% [####...] 49.6k steps, Om 2480/4000, R 1.004, 25m left",
+		40:  "62% [#####....] Om 2480/4000, 25m left",
 		20:  "Om 2480/4000",
+		8:   "Om 2480/",
 	} {
 		got := bar(u, width)
 		if got != want {
@@ -96,8 +102,8 @@ func TestBarEnds(t *testing.T) {
 	for effective, want := range map[float64]string{
 		0:          "0% [..............................] 0 steps",
 		math.NaN(): "0% [..............................] 0 steps",
-		4000:       "100% [##############################] 0 steps, 4000/4000",
-		1e9:        "100% [##############################] 0 steps, 1000000000/4000",
+		4000:       "100% [####################] 0 steps, 4000 of 4000 effective",
+		1e9:        "100% [##############] 0 steps, 1000000000 of 4000 effective",
 	} {
 		if got := bar(Update{Effective: effective, Goal: 4000}, 60); got != want {
 			t.Errorf("%g: %q, want %q", effective, got, want)
@@ -123,7 +129,7 @@ func TestBarOnTerminal(t *testing.T) {
 	want := []string{
 		"first",
 		"second",
-		"100% [########] 80.0k steps, Om 4000/4000, R 1.002, acc 31%, 412k/s",
+		"100% [###################] 80.0k steps, Om 4000/4000, R 1.002, acc 31%, 412k/s",
 		"",
 	}
 	if diff := cmp.Diff(want, screen); diff != "" {
@@ -218,7 +224,7 @@ func TestWordsForNumbers(t *testing.T) {
 func TestJSON(t *testing.T) {
 	u := after(100 * time.Second)
 	u.MaxSteps, u.MaxElapsed, u.Note = 7, time.Hour, "a note"
-	u.Left += 123456789
+	u.Left = 4100 * time.Microsecond // 0.0041 s is a little less in binary
 	b, err := json.Marshal(u)
 	if err != nil {
 		t.Fatal(err)
