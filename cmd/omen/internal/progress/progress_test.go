@@ -224,7 +224,7 @@ func TestWordsForNumbers(t *testing.T) {
 func TestJSON(t *testing.T) {
 	u := after(100 * time.Second)
 	u.MaxSteps, u.MaxElapsed, u.Note = 7, time.Hour, "a note"
-	u.Left = 4100 * time.Microsecond // 0.0041 s is a little less in binary
+	u.Left = 8030 * time.Millisecond // in binary a little less than 8.03 s
 	b, err := json.Marshal(u)
 	if err != nil {
 		t.Fatal(err)
