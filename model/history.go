@@ -38,6 +38,7 @@ type history struct {
 type clock struct {
 	rate   func(pos float64) (rate, noise float64) // dt/dpos > 0
 	pos, t float64
+	limit  float64 // positions lie below this
 }
 
 func (u Universe) newHistory() *history {
@@ -47,13 +48,14 @@ func (u Universe) newHistory() *history {
 		return h
 	}
 	today := h.e.sinceBigBang(1)
-	h.rise = clock{rate: h.e.timeRate, pos: 0, t: today}
+	h.rise = clock{rate: h.e.timeRate, t: today, limit: math.Inf(1)}
 	switch u.Future() {
 	case Recollapse:
 		h.st = math.Log(h.e.futureZero())
 		h.turn = today + h.e.untilTurnaround(0, h.st)
 		h.end = 2 * h.turn
-		h.crest = clock{rate: h.e.turnaroundRate(h.st)}
+		h.rise.limit = h.st
+		h.crest = clock{rate: h.e.turnaroundRate(h.st), limit: math.Inf(1)}
 	case BigRip:
 		h.end = today + u.Rip()/u.HubbleTime()
 	}
@@ -105,7 +107,7 @@ func (c *clock) seekLog(t float64) float64 {
 
 // newton takes steps of at most 1, kept inside a bracket that closes on the position of time t.
 func (c *clock) newton(t float64, step func(rate float64) float64) float64 {
-	lo, hi := math.Inf(-1), math.Inf(1)
+	lo, hi := math.Inf(-1), c.limit
 	for range 200 {
 		switch {
 		case c.t == t:
@@ -117,13 +119,13 @@ func (c *clock) newton(t float64, step func(rate float64) float64) float64 {
 		}
 		rate, _ := c.rate(c.pos)
 		next := c.pos + math.Max(-1, math.Min(step(rate), 1))
-		if (next <= lo || next >= hi) && hi-lo < math.Inf(1) {
+		if next == c.pos {
+			return c.pos
+		}
+		if !(next > lo && next < hi) {
 			next = (lo + hi) / 2
 		}
 		moved := next - c.pos
-		if moved == 0 {
-			return c.pos
-		}
 		c.t += integrate(c.rate, c.pos, next)
 		c.pos = next
 		if math.Abs(moved) < 1e-6 { // the next step would be of the order of its square
