@@ -178,12 +178,12 @@ func (r *destinyReport) write(w io.Writer) error {
 	r.writeHead(&b)
 	r.writeTimes(&b)
 	if len(r.Distances) > 0 {
-		b.WriteString("\n     z      DC      DM      DA      DL      DH      DV       mu  lookback   age\n")
-		b.WriteString("           Mpc     Mpc     Mpc     Mpc     Mpc     Mpc      mag       Gyr   Gyr\n")
+		b.WriteString("\n     z      DC      DM      DA       DL      DH      DV      mu lookback     age\n")
+		b.WriteString("           Mpc     Mpc     Mpc      Mpc     Mpc     Mpc     mag      Gyr     Gyr\n")
 	}
 	for _, d := range r.Distances {
-		fmt.Fprintf(&b, "%6.4g %s %s %s %s %s %s %s  %s %s\n", d.Z, cell(d.DC, 7, 1), cell(d.DM, 7, 1), cell(d.DA, 7, 1),
-			cell(d.DL, 7, 1), cell(d.DH, 7, 1), cell(d.DV, 7, 1), cell(d.Mu, 8, 4), cell(d.Lookback, 8, 3), cell(d.Age, 5, 2))
+		fmt.Fprintf(&b, "%6.4g%s%s%s%s%s%s%s%s%s\n", d.Z, cell(d.DC, 8), cell(d.DM, 8), cell(d.DA, 8), cell(d.DL, 9),
+			cell(d.DH, 8), cell(d.DV, 8), cell(d.Mu, 8), cell(d.Lookback, 9), cell(d.Age, 8))
 	}
 	_, err := io.WriteString(w, b.String())
 	return err
@@ -196,6 +196,9 @@ func (r *destinyReport) writeHead(b *strings.Builder) {
 		fmt.Fprintf(b, ", w0 %g, wa %g", u.W0, u.Wa)
 	}
 	fmt.Fprintf(b, "\n\nFate: %s\n", r.Fate)
+	if !r.BigBang {
+		fmt.Fprintf(b, "      from today on: %s\n", r.u.Future())
+	}
 	if r.FateHeldW != "" {
 		fmt.Fprintf(b, "      %s, if w stays at today's value\n", r.FateHeldW)
 		b.WriteString("      For wa ≠ 0 the far future extrapolates w(a) = w0 + wa (1-a).\n")
@@ -239,10 +242,17 @@ func zero(x float64) float64 {
 	return x
 }
 
-// cell formats a number in a column, a dash where there is none.
-func cell(n number, width, decimals int) string {
+// cell formats a number in a column with as many of six digits as leave a
+// blank before it, a dash where there is no number.
+func cell(n number, width int) string {
 	if math.IsNaN(float64(n)) {
 		return fmt.Sprintf("%*s", width, "–")
 	}
-	return fmt.Sprintf("%*.*f", width, decimals, float64(n))
+	text := ""
+	for digits := 6; digits > 0; digits-- {
+		if text = strconv.FormatFloat(float64(n), 'g', digits, 64); len(text) < width {
+			break
+		}
+	}
+	return fmt.Sprintf("%*s", width, text)
 }

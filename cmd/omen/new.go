@@ -140,8 +140,7 @@ func recognise(kind, path, dir string) (*newTable, error) {
 	if kind == "supernovae" && found["mu"] == "" && found["mag"] == "" {
 		t.Missing = append(t.Missing, "mag")
 	}
-	t.Keep = "z > 0.01"
-	if found["z"] != "" {
+	if kind == "supernovae" && found["z"] != "" {
 		t.Keep = found["z"] + " > 0.01"
 	}
 	return t, nil
@@ -161,7 +160,7 @@ func relative(path, dir string) string {
 	return filepath.ToSlash(rel)
 }
 
-// toml quotes what goes between quotation marks in the template.
+// quoted escapes what goes between quotation marks in the template.
 func (t newTable) quoted() newTable {
 	q := func(s string) string { return strings.Trim(strconv.Quote(s), `"`) }
 	t.Path, t.Covariance, t.Keep = q(t.Path), q(t.Covariance), q(t.Keep)

@@ -10,7 +10,6 @@ import (
 	"strings"
 
 	"omen/cmd/omen/internal/job"
-	"omen/data"
 	"omen/likelihood"
 
 	"gonum.org/v1/gonum/floats"
@@ -210,18 +209,26 @@ func residuals(b *strings.Builder, t *job.Table, p *likelihood.Prediction) {
 			beyond++
 		}
 	}
-	line(b, "residuals", "%d of %d beyond 3 errors (%.1f expected); the largest from the best fit:", beyond, len(all), 0.0027*float64(len(all)))
+	line(b, "residuals", "%d of %d beyond 3 errors (%.1f expected); the largest, in errors:", beyond, len(all), 0.0027*float64(len(all)))
 	for _, i := range order[:min(shown, len(order))] {
 		r := all[i]
-		line(b, "", "%-24s z %-7.4g %9.4f, expected %9.4f: %+.1f errors", label(t.Selection(), i), r.Z, r.Measured, r.Predicted, r.Sigmas)
+		line(b, "", "%-21s z %-7.4g %8.4f, best fit %8.4f: %+.1f", label(t, i), r.Z, r.Measured, r.Predicted, r.Sigmas)
 	}
 }
 
-// label names a row: its name and line.
-func label(s data.Selection, i int) string {
-	name := s.Label(i)
-	if r := []rune(name); len(r) > 24 {
-		name = "…" + string(r[len(r)-23:])
+// label names a row: its name or quantity, and its line in the file.
+func label(t *job.Table, i int) string {
+	name := ""
+	switch {
+	case t.Supernovae != nil && t.Supernovae.Name != nil:
+		name = t.Supernovae.Name[i]
+	case t.BAO != nil:
+		name = t.BAO.Quantity[i].String()
+	case t.Ages != nil && t.Ages.Name != nil:
+		name = t.Ages.Name[i]
 	}
-	return name
+	if r := []rune(name); len(r) > 14 {
+		name = string(r[:13]) + "…"
+	}
+	return strings.TrimSpace(fmt.Sprintf("%s line %d", name, t.Selection().Lines[i]))
 }
