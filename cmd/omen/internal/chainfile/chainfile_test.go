@@ -9,6 +9,7 @@ import (
 	"math/rand/v2"
 	"os"
 	"path/filepath"
+	"reflect"
 	"strings"
 	"testing"
 	"time"
@@ -99,8 +100,8 @@ func recoverSame(t testing.TB, dir string) (Recovered, error) {
 	n := 0
 	rec, err := Recover(dir, state(t, dir), func(s Step) error {
 		n++
-		if diff := cmp.Diff(testStep(testRun(), n), s); diff != "" {
-			t.Fatalf("step %d was changed: %s", n, diff)
+		if want := testStep(testRun(), n); !reflect.DeepEqual(s, want) {
+			t.Fatalf("step %d came back as %v, want %v", n, s, want)
 		}
 		return nil
 	})
@@ -175,8 +176,6 @@ func TestCutAtEveryByte(t *testing.T) {
 	before := read(t, dir, StateName)
 	for cut := range chain {
 		put(t, dir, ChainName, chain[:cut])
-		put(t, dir, SumsName, sums)
-		put(t, dir, StateName, before)
 		rec, err := recoverSame(t, dir)
 		if want := completeSteps(chain[:cut]); rec.Steps != want || rec.Reason == "" {
 			t.Fatalf("cut at %d: %+v, want %d steps", cut, rec, want)
@@ -190,13 +189,14 @@ func TestCutAtEveryByte(t *testing.T) {
 		if rec.Lost != n-rec.Steps || rec.Bytes+rec.Dropped != int64(cut) {
 			t.Fatalf("cut at %d: %+v", cut, rec)
 		}
-		if cut%29 != 0 { // syncing takes its time
+		if cut%97 != 0 { // syncing takes its time
 			continue
 		}
 		resumeTo(t, dir, n)
 		if !bytes.Equal(read(t, dir, ChainName), chain) || !bytes.Equal(read(t, dir, SumsName), sums) {
 			t.Fatalf("cut at %d: the resumed chain differs", cut)
 		}
+		put(t, dir, StateName, before)
 	}
 }
 
@@ -212,8 +212,8 @@ func TestKilledAnywhere(t *testing.T) {
 	before, safeChain, safeSums := read(t, dir, StateName), len(read(t, dir, ChainName)), len(read(t, dir, SumsName))
 	whole := write(t, testRun(), n)
 	chain, sums := read(t, whole, ChainName), read(t, whole, SumsName)
-	for i := safeChain; i <= len(chain); i += 61 {
-		for j := safeSums; j <= len(sums); j += 17 {
+	for i := safeChain; i <= len(chain); i += 67 {
+		for j := safeSums; j <= len(sums); j += 23 {
 			put(t, dir, ChainName, chain[:i])
 			put(t, dir, SumsName, sums[:j])
 			put(t, dir, StateName, before)

@@ -123,7 +123,7 @@ type reader struct {
 func newReader(chain, sums io.Reader, run Run) *reader {
 	return &reader{
 		run:   run,
-		chain: bufio.NewReaderSize(chain, max(1<<18, run.maxRow(), len(run.header()))),
+		chain: bufio.NewReaderSize(chain, max(1<<16, run.maxRow(), len(run.header()))),
 		sums:  bufio.NewReaderSize(sums, 1<<14),
 		step:  run.newStep(),
 	}
