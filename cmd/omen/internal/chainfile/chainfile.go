@@ -4,15 +4,15 @@
 // The folder holds
 //
 //	chain.csv   every recorded step: ensemble,step,walker,<parameters>,log_posterior
-//	chain.sums  one line per recorded step: its checksum and accepted moves
+//	chain.sums  a checksum and the accepted moves of every recorded step
 //	run.json    what the run was started from and how far it was at the last sync
 //	run.lock    who is writing, while somebody is
 //
-// The first three are written in this order at every sync. Line n of
-// chain.sums vouches for everything in chain.csv up to the n-th recorded
-// step, so a step is either confirmed byte for byte or not used at all.
-// Both files depend on nothing but the run and its steps: those of a run that was
-// killed and resumed are the bytes of an undisturbed one.
+// The first three are written in this order at every sync. The first line of
+// chain.sums vouches for the header of chain.csv, every other for all that
+// stands there up to one recorded step: a step is confirmed byte for byte or
+// not used at all. Both files depend on nothing but the run and its steps, so
+// those of a run that was killed and resumed are those of an undisturbed one.
 //
 // To start:  [Acquire], [Create], [Writer.Append] …, [Writer.Close].
 // To resume: [Acquire], [ReadState], [Compare], [Recover], [Resume], ….

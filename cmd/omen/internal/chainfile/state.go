@@ -115,16 +115,23 @@ func parseState(b []byte) (s State, err error) {
 	return s, nil
 }
 
-// writeState replaces run.json in one move: a reader, or whoever comes after
-// a crash, finds the old content or the new, never a mixture.
+// writeState replaces run.json.
 func writeState(dir string, s State) error {
 	b, err := json.MarshalIndent(s, "", "  ")
 	if err != nil {
 		return err
 	}
-	path := filepath.Join(dir, StateName)
-	temp := path + ".new"
-	if err := writeSynced(temp, append(b, '\n')); err != nil {
+	return Replace(filepath.Join(dir, StateName), append(b, '\n'))
+}
+
+// temporary ends the name of a file that is not complete yet.
+const temporary = ".new"
+
+// Replace writes a file in one move: a reader, or whoever comes after a crash,
+// finds the old content or the new, never a mixture.
+func Replace(path string, content []byte) error {
+	temp := path + temporary
+	if err := writeSynced(temp, content); err != nil {
 		os.Remove(temp)
 		return err
 	}
@@ -132,7 +139,7 @@ func writeState(dir string, s State) error {
 		os.Remove(temp)
 		return err
 	}
-	return syncDir(dir)
+	return syncDir(filepath.Dir(path))
 }
 
 func writeSynced(path string, b []byte) error {
