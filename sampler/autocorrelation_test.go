@@ -12,12 +12,12 @@ func TestAutocorrelationTimeOfAR1(t *testing.T) {
 		rho, tau  float64
 		series, n int
 	}{
-		{0, 1, 1, 200000},
+		{0, 1, 1, 50000},
 		{0.5, 3, 4, 50000},
-		{0.9, 19, 1, 400000},
-		{0.9, 19, 4, 100000},
+		{0.9, 19, 1, 200000},
+		{0.9, 19, 4, 50000},
 		{-0.5, 1.0 / 3, 4, 50000},
-		{0.99, 199, 8, 100000},
+		{0.99, 199, 8, 30000},
 	} {
 		rng := rand.New(rand.NewPCG(7, 11))
 		tau := AutocorrelationTime(ar1(rng, c.rho, c.series, c.n)...)

@@ -198,9 +198,6 @@ func (c *Chain) Acceptance() float64 {
 	return float64(c.accepted) / float64(c.last*len(c.x)*c.walkers)
 }
 
-// Accepted returns the number of proposals accepted so far.
-func (c *Chain) Accepted() int { return c.accepted }
-
 // View returns the whole record as it is now. Later steps do not change it.
 func (c *Chain) View() View {
 	return View{
@@ -232,7 +229,7 @@ type View struct {
 	stride       int // rows of x from one row of the view to the next
 	n            int // rows
 	x, logp      [][]float64
-	accepted     []int // since the row before; known for the rows of an Observer alone
+	accepted     []int // by row, since the row before; nil if not known
 }
 
 // After returns the part of a view later than a step: what remains when that
@@ -254,7 +251,7 @@ func (v View) skip(drop int) View {
 	}
 	v.first += drop * v.spacing
 	v.n -= drop
-	v.x, v.logp = x, logp
+	v.x, v.logp, v.accepted = x, logp, nil
 	return v
 }
 
@@ -291,9 +288,15 @@ func (v View) Step(i int) (x, logp [][]float64) {
 	return x, logp
 }
 
-// Accepted returns how many proposals were accepted between the i-th step of a
-// view that an [Observer] got and the recorded step before, over all ensembles.
-func (v View) Accepted(i int) int { return v.accepted[i] }
+// Accepted returns how many proposals of all ensembles were accepted since the
+// step before, for use with [Chain.Append]. Only the rows that an [Observer]
+// gets know it; it is −1 for others.
+func (v View) Accepted(i int) int {
+	if v.accepted == nil {
+		return -1
+	}
+	return v.accepted[i]
+}
 
 // Spacing returns the number of steps of the run from one step of the view to
 // the next.

@@ -37,10 +37,10 @@ func TestESSOfWalkersThatMoveTogether(t *testing.T) {
 
 func TestESSCountsSteps(t *testing.T) {
 	rng := rand.New(rand.NewPCG(5, 6))
-	d := NewDraws(1, ar1(rng, 0.9, 4, 50000)...)
-	near(t, "ESS of AR(1)", ESS(d), 4*50000/19.0, 1200)
+	d := NewDraws(1, ar1(rng, 0.9, 4, 20000)...)
+	near(t, "ESS of AR(1)", ESS(d), 4*20000/19.0, 800)
 	d.spacing = 10
-	near(t, "τ at a spacing of 10", Summarize(d).Tau, 190, 25)
+	near(t, "τ at a spacing of 10", measure(d).tau, 190, 30)
 }
 
 // Ensembles that sit in different places know the mean no better than their

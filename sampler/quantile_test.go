@@ -78,6 +78,10 @@ func TestIntervalsOfTheExponential(t *testing.T) {
 	// Densest where the density is highest: from zero on.
 	near(t, "lower HDI", s.HDI68[0], 0, 1e-4)
 	near(t, "upper HDI", s.HDI68[1], -math.Log(0.32), 1e-3)
+	// And where it rises instead, at the other end.
+	s = Summarize(grid(20000, math.Log))
+	near(t, "lower HDI of the mirrored", s.HDI68[0], math.Log(0.32), 1e-3)
+	near(t, "upper HDI of the mirrored", s.HDI68[1], 0, 1e-4)
 }
 
 // The error of a quantile of n independent draws is √(p(1−p)/n)/density.

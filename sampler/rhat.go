@@ -46,7 +46,7 @@ func split(d Draws) [][]float64 {
 	}
 	var halves [][]float64
 	for _, x := range d.x {
-		for _, first := range []int{n%stride + stride - 1, n - 1 - (half-1)*stride} {
+		for _, first := range []int{0, n - 1 - (half-1)*stride} {
 			part := make([]float64, 0, half*d.walkers)
 			for s := range half {
 				at := (first + s*stride) * d.walkers

@@ -257,7 +257,7 @@ func (r *runner) rows(first int) View {
 func (r *runner) append(rows View) error {
 	for i := range rows.n {
 		x, logp := rows.Step(i)
-		if err := r.chain.Append(rows.Number(i), x, logp, rows.accepted[i]); err != nil {
+		if err := r.chain.Append(rows.Number(i), x, logp, rows.Accepted(i)); err != nil {
 			return err
 		}
 	}

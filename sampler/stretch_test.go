@@ -110,6 +110,45 @@ func TestStepIsAffineInvariant(t *testing.T) {
 	}
 }
 
+// A walker moves along the line to one of the other half: with the halves a
+// thousand apart, hardly a proposal stays near its own.
+func TestHalvesMoveAgainstEachOther(t *testing.T) {
+	start := []float64{0, 0.3, 0.7, 1, 1000, 1000.3, 1000.7, 1001}
+	var proposals []float64
+	d := func(x []float64) float64 {
+		proposals = append(proposals, x[0])
+		if len(proposals) > len(start) {
+			return math.Inf(-1) // refuse, so that the halves stay where they are
+		}
+		return 0
+	}
+	e, err := NewEnsemble(d, 1, 0, 1, start)
+	if err != nil {
+		t.Fatal(err)
+	}
+	near := 0
+	for range 250 {
+		e.Step()
+	}
+	for i, y := range proposals[len(start):] {
+		home := 0.0
+		if i%8 >= 4 {
+			home = 1000
+		}
+		// From half way to the other half to as far again beyond.
+		if along := (y - home) / (1000 - 2*home); along < -1.01 || along > 0.51 {
+			t.Fatalf("walker %d, at %v, proposes %v", i%8, home, y)
+		}
+		if math.Abs(y-home) < 3 {
+			near++
+		}
+	}
+	// z within 0.3% of 1 has a probability of 0.4%.
+	if near > 30 {
+		t.Errorf("%d of 2000 proposals stay with their own half", near)
+	}
+}
+
 // NaN, −Inf and +Inf are no places to go.
 func TestWalkersStayWhereTheDensityIsFinite(t *testing.T) {
 	for _, outside := range []float64{math.NaN(), math.Inf(-1), math.Inf(1)} {

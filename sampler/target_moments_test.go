@@ -83,7 +83,7 @@ func (z zScores) check(t *testing.T, least, most, mean float64) {
 // seeds, deviations in units of their error have mean square one.
 func TestErrorsCoverAR1(t *testing.T) {
 	z := zScores{}
-	for seed := range uint64(250) {
+	for seed := range uint64(150) {
 		// Five walkers per ensemble, each a series of its own: 300 τ in all.
 		rng := rand.New(rand.NewPCG(seed, 5))
 		x := make([][]float64, 4)
@@ -97,8 +97,8 @@ func TestErrorsCoverAR1(t *testing.T) {
 		z.add("84%", s.Interval68[1], 0.994457883, s.MCSE68[1])
 		z.add("2.5%", s.Interval95[0], -1.959963985, s.MCSE95[0])
 	}
-	// 250 squares of unit normals have a mean of 1 ± 0.09.
-	z.check(t, 0.75, 1.35, 0.22)
+	// 150 squares of unit normals have a mean of 1 ± 0.12.
+	z.check(t, 0.7, 1.5, 0.28)
 }
 
 // interleave turns series of single walkers into steps × walkers.
@@ -130,7 +130,7 @@ func TestErrorsCoverRuns(t *testing.T) {
 		walkers: 8,
 	}
 	z := zScores{}
-	for seed := range uint64(32) {
+	for seed := range uint64(24) {
 		s := DefaultSettings()
 		s.Seed, s.Effective = seed, 800
 		_, out := g.run(t, s)
@@ -142,5 +142,5 @@ func TestErrorsCoverRuns(t *testing.T) {
 		z.add("median", a.Median, 0, a.MCSEMedian)
 		z.add("median", b.Median, math.Ln2, b.MCSEMedian)
 	}
-	z.check(t, 0.5, 1.9, 0.5)
+	z.check(t, 0.45, 2, 0.55)
 }
