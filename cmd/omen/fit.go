@@ -11,13 +11,13 @@ import (
 	"strconv"
 	"strings"
 
+	"omen/cmd/omen/internal/chainfile"
 	"omen/cmd/omen/internal/explore"
 	"omen/cmd/omen/internal/inspect"
 	"omen/cmd/omen/internal/job"
 	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
 	"omen/cmd/omen/internal/runfile"
-	"omen/sampler"
 
 	"github.com/spf13/pflag"
 )
@@ -27,26 +27,31 @@ const fitHelp = `omen fit explores the posterior of a run file and reports const
   omen fit fate.toml
   omen fit fate.toml -o curved --seed 7
   omen fit fate.toml --set universe.geometry=flat --set prior.OL=none
+  omen fit fate.toml --effective-samples 20000 --max-time 8h --quiet
 
 The result goes to standard output, the chain and everything else to a folder:
 -o, or the run file's name with a number. --set changes a key of the run file;
 data.1 is the first [[data]] table, and the value none removes a key.
+
+The run ends when the goal is met. Interrupt it (Ctrl-C) and it finishes the step
+under way, writes the result so far, marked as unfinished, and ends with status 3;
+so it does at --max-time or --max-steps. Interrupt it twice and it ends at once.
+Whatever ends it, omen resume DIR goes on; omen status DIR looks at it meanwhile.
 `
 
 type fitOptions struct {
-	dir     string
-	seed    uint64
-	sets    []string
-	explore explore.Options
+	limits
+	dir  string
+	seed uint64
+	list []string
 }
 
 func fitFlags(o *fitOptions) *pflag.FlagSet {
 	f := newFlags("fit", fitHelp)
 	f.StringVarP(&o.dir, "output", "o", "", "folder for the result; it must not exist")
 	f.Uint64Var(&o.seed, "seed", 0, "seed of the random numbers, in place of the run file's")
-	f.StringArrayVar(&o.sets, "set", nil, "change a key of the run file, as key=value; may be repeated")
-	f.IntVar(&o.explore.Threads, "threads", 0, "ensembles that run at the same time; 0: one per processor")
-	f.BoolVar(&o.explore.Quiet, "quiet", false, "show no progress")
+	f.StringArrayVar(&o.list, "set", nil, "change a key of the run file, as key=value; may be repeated")
+	o.add(f)
 	return f
 }
 
@@ -56,22 +61,24 @@ func runFit(ctx context.Context, args []string, stdout, stderr io.Writer) error 
 	if done, err := parse(f, args, stdout, 1); done || err != nil {
 		return err
 	}
+	sets := append(o.list, o.sets(f)...)
 	if f.Changed("seed") {
-		o.sets = append(o.sets, "sampling.seed="+strconv.FormatUint(o.seed, 10))
+		sets = append(sets, "sampling.seed="+strconv.FormatUint(o.seed, 10))
 	}
-	j, err := load(f.Arg(0), o.sets)
+	j, err := load(f.Arg(0), sets)
 	if err != nil {
 		return err
 	}
+	dir := filepath.Clean(o.dir)
 	if o.dir == "" {
-		o.dir = freeFolder(f.Arg(0))
+		dir = freeFolder(f.Arg(0))
 	}
 	o.explore.Version = version()
-	run, err := explore.Start(ctx, j, o.dir, o.explore, stderr)
+	run, err := explore.Start(ctx, j, dir, o.explore, stderr)
 	if err != nil {
 		return err
 	}
-	return conclude(run, o.dir, stdout)
+	return conclude(run, dir, o.noReport, stdout)
 }
 
 // load reads a run file and everything that it names.
@@ -98,34 +105,25 @@ func freeFolder(file string) string {
 	}
 }
 
-// conclude writes the summary of a run to its folder and to stdout.
-func conclude(run *result.Run, dir string, stdout io.Writer) error {
+// conclude writes the result of a run to its folder and to stdout.
+func conclude(run *result.Run, dir string, noReport bool, stdout io.Writer) error {
 	s := result.Build(*run)
 	var text bytes.Buffer
 	if err := report.JSON(&text, s); err != nil {
 		return err
 	}
-	if err := writeWhole(filepath.Join(dir, "summary.json"), text.Bytes()); err != nil {
-		return err
+	if err := chainfile.Replace(filepath.Join(dir, "summary.json"), text.Bytes()); err != nil {
+		return fmt.Errorf("%w; the chain is safe, omen resume %s writes the result again", err, dir)
 	}
+	// Figures and pages go here, unless noReport.
 	if err := report.Text(stdout, s); err != nil {
 		return err
 	}
 	fmt.Fprintf(stdout, "\nIn %s: chain.csv, summary.json, run.toml\n", dir)
-	if run.Outcome.Stop == sampler.Interrupted {
-		return errUnfinished
+	if why := run.Ended(); why != "" {
+		return &unfinished{why, run.Chain.Steps(), dir}
 	}
 	return nil
-}
-
-// writeWhole writes a file that appears complete or not at all.
-func writeWhole(name string, content []byte) error {
-	temp := name + ".new"
-	if err := os.WriteFile(temp, content, 0o644); err != nil {
-		os.Remove(temp)
-		return err
-	}
-	return os.Rename(temp, name)
 }
 
 const inspectHelp = `omen inspect says what a run file reads, and what looks odd in it.

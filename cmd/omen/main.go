@@ -3,13 +3,17 @@
 //
 //	omen new DIR                    begin: a commented run file that works
 //	omen fit RUN.toml               constraints and fates from a run file
+//	omen resume DIR                 go on with a run that stopped
+//	omen status DIR                 how far a run is
 //	omen inspect RUN.toml           what was read, and what looks odd in it
 //	omen fate --Om 0.3 --OL 0.7     what one universe does
 //
 // Every command explains itself and gives an example with --help.
 //
 // Exit status: 0 done; 1 it failed while running; 2 a mistake in the command
-// line, a run file or a table; 3 interrupted, with what there is kept.
+// line, a run file, a table or the choice of a folder; 3 a run stopped before
+// its goal, because it was interrupted or reached its limit of time or steps:
+// its result is marked as unfinished, and omen resume goes on.
 package main
 
 import (
@@ -22,6 +26,7 @@ import (
 	"strings"
 	"syscall"
 
+	"omen/cmd/omen/internal/explore"
 	"omen/cmd/omen/internal/runfile"
 	"omen/data"
 
@@ -32,6 +37,8 @@ const help = `omen: from measured distances to constraints on the universe and i
 
   omen new DIR                    begin: a commented run file that works
   omen fit RUN.toml               constraints and fates from a run file
+  omen resume DIR                 go on with a run that stopped
+  omen status DIR                 how far a run is
   omen inspect RUN.toml           what was read, and what looks odd in it
   omen fate --Om 0.3 --OL 0.7     what one universe does
 
@@ -40,7 +47,7 @@ Every command explains itself with --help.
 
 func main() {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
-	defer stop()
+	context.AfterFunc(ctx, stop) // the second signal is the system's to deal with
 	err := run(ctx, os.Args[1:], os.Stdout, os.Stderr)
 	if err != nil && err.Error() != "" {
 		fmt.Fprintln(os.Stderr, "omen:", err)
@@ -57,6 +64,10 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 	switch rest := args[1:]; args[0] {
 	case "fit":
 		return runFit(ctx, rest, stdout, stderr)
+	case "resume":
+		return runResume(ctx, rest, stdout, stderr)
+	case "status":
+		return runStatus(rest, stdout)
 	case "fate":
 		return runFate(rest, stdout)
 	case "inspect":
@@ -69,7 +80,7 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 		fmt.Fprintln(stdout, "omen", version())
 		return nil
 	}
-	commands := []string{"fit", "fate", "inspect", "new", "help", "version"}
+	commands := []string{"fit", "resume", "status", "fate", "inspect", "new", "help", "version"}
 	return usagef("unknown command %q; the nearest is %q (known: %s)", args[0], data.Nearest(args[0], commands), strings.Join(commands, ", "))
 }
 
@@ -90,20 +101,30 @@ func usagef(format string, args ...any) error {
 	return &usageError{fmt.Sprintf(format, args...)}
 }
 
-// errUnfinished ends a run that was interrupted and kept what there was.
-var errUnfinished = errors.New("interrupted: the result is that of an unfinished run")
+// unfinished is the end of a run before its goal. Its result has been written.
+type unfinished struct {
+	why   string
+	steps int
+	dir   string
+}
+
+func (u *unfinished) Error() string {
+	return fmt.Sprintf("unfinished (%s) after %d steps; omen resume %s goes on", u.why, u.steps, u.dir)
+}
 
 // status is the exit status of an error; see the package comment.
 func status(err error) int {
 	var usage *usageError
 	var table *data.Error
 	var file *runfile.Error
+	var folder *explore.Refused
+	var early *unfinished
 	switch {
 	case err == nil:
 		return 0
-	case errors.As(err, &usage), errors.As(err, &table), errors.As(err, &file):
+	case errors.As(err, &usage), errors.As(err, &table), errors.As(err, &file), errors.As(err, &folder):
 		return 2
-	case errors.Is(err, errUnfinished):
+	case errors.As(err, &early), errors.Is(err, explore.ErrTooEarly):
 		return 3
 	}
 	return 1

@@ -22,6 +22,19 @@ type Run struct {
 	Seconds float64
 	Threads int // 0: one per processor; no result depends on it
 	Version string
+
+	OutOfTime bool // interrupted by the run's own limit of time
+}
+
+// Ended says in a word or two why a run is unfinished, nothing if it is not.
+func (r Run) Ended() string {
+	switch {
+	case r.OutOfTime:
+		return "time limit"
+	case r.Outcome.Stop == sampler.Converged:
+		return ""
+	}
+	return r.Outcome.Stop.String()
 }
 
 // Build makes the summary of a run.

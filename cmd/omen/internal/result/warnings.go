@@ -14,11 +14,8 @@ import (
 func warnings(r Run, s *Summary, view sampler.View) []string {
 	var out []string
 	add := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
-	switch r.Outcome.Stop {
-	case sampler.StepLimit:
-		add("not converged: the limit of %d steps came before the goal; raise max-steps", r.Job.Run.Sampling.MaxSteps)
-	case sampler.Interrupted:
-		add("not converged: the run was interrupted after %d steps", r.Chain.Steps())
+	if why := r.Ended(); why != "" {
+		add("unfinished: %s after %d steps, before the goal was met; omen resume goes on", why, r.Chain.Steps())
 	}
 	check := r.Outcome.Check
 	if rhat := check.RHat(); !(rhat < 1.01) {

@@ -1,0 +1,43 @@
+package result
+
+import (
+	"math"
+
+	"omen/cmd/omen/internal/job"
+	"omen/sampler"
+)
+
+// How much larger than that of a parameter at its goal the Monte Carlo error of
+// a derived quantity or a probability may be, relative to its own spread: a run
+// need not wait for a quantity that is a little slower than all parameters.
+const slack = 1.5
+
+// enoughSteps is how many steps of a converged sample are looked at, at least. The
+// shortest that passes is some 25 autocorrelation times long, so that its steps
+// still repeat each other; of a longer one, four draws are taken for every
+// effective one that is asked for.
+const enoughSteps = 256
+
+// Enough tells whether a sample is enough for everything that is reported beyond
+// the parameters themselves: the Monte Carlo error of every derived quantity is
+// within slack of sd/√goal, that of every probability within slack of the
+// error of an even chance, 0.5/√goal.
+func Enough(j *job.Job, threads int) func(sampler.View) bool {
+	goal := float64(j.Run.Sampling.EffectiveSamples)
+	return func(v sampler.View) bool {
+		steps := max(enoughSteps, int(4*goal)/(v.Ensembles()*v.Walkers()))
+		d := derive(j.Space, v.Thin(max(1, v.Steps()/steps)), threads)
+		for _, draws := range d.draws {
+			if sampler.ESS(draws) < goal/(slack*slack) { // MCSE = sd/√ESS; NaN of a constant passes
+				return false
+			}
+		}
+		fates, held, today := d.fates(goal)
+		for _, f := range append(append(fates, held...), today...) {
+			if float64(f.Error) > slack*0.5/math.Sqrt(goal) {
+				return false
+			}
+		}
+		return true
+	}
+}

@@ -1,0 +1,42 @@
+package main
+
+import (
+	"strconv"
+	"time"
+
+	"omen/cmd/omen/internal/explore"
+
+	"github.com/spf13/pflag"
+)
+
+// limits are the flags that fit and resume share.
+type limits struct {
+	effective, steps int
+	time             time.Duration
+	noReport         bool
+	explore          explore.Options
+}
+
+func (l *limits) add(f *pflag.FlagSet) {
+	f.IntVar(&l.effective, "effective-samples", 0, "goal: effective samples of the slowest parameter")
+	f.DurationVar(&l.time, "max-time", 0, "stop after this long, such as 8h or 90m; 0: no limit")
+	f.IntVar(&l.steps, "max-steps", 0, "stop at this many steps in all")
+	f.BoolVar(&l.explore.Quiet, "quiet", false, "show no progress")
+	f.BoolVar(&l.noReport, "no-report", false, "leave out figures and pages; the text and summary.json remain")
+	f.IntVar(&l.explore.Threads, "threads", 0, "ensembles that run at the same time; 0: one per processor")
+}
+
+// sets are the flags that were given as settings of the run file.
+func (l *limits) sets(f *pflag.FlagSet) []string {
+	var out []string
+	for _, key := range []struct{ name, value string }{
+		{"effective-samples", strconv.Itoa(l.effective)},
+		{"max-time", l.time.String()},
+		{"max-steps", strconv.Itoa(l.steps)},
+	} {
+		if f.Changed(key.name) {
+			out = append(out, "sampling."+key.name+"="+key.value)
+		}
+	}
+	return out
+}
