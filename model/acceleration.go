@@ -25,7 +25,7 @@ func (u Universe) AccelerationOnset() float64 {
 		}
 		hi = a
 	}
-	lo := math.Max(start, 1e-30)
+	lo := max(start, 1e-30)
 	if accelerates(lo) > 0 {
 		return math.Inf(1)
 	}

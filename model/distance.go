@@ -16,7 +16,7 @@ func (e *expansion) comoving(y float64) float64 {
 	if y == 0 {
 		return 0
 	}
-	return integrate(func(y float64) (v, noise float64) {
+	return whole.integrate(func(y float64) (v, noise float64) {
 		x := math.Exp(y)
 		v, noise = e.inverse(x, y, 1/x)
 		return x * v, x * noise

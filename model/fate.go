@@ -56,7 +56,8 @@ func (u Universe) Fate() Fate {
 // one, dark energy that grows is a BigRip: OL > 0 with w0 < -1 (wa = 0), or with wa > 0 whatever w0, because
 // the formula then grows as e^(3wa a). With wa < 0 dark energy dies away and matter and curvature decide. Both
 // are extrapolations of a formula made for the past; Frozen gives the fate with w as it is today. What is left
-// accelerates if OL > 0 and w0 < -1/3 (wa = 0), and decelerates if not.
+// accelerates if OL > 0 and w0 < -1/3 (wa = 0), and decelerates if not, which includes dark energy that
+// behaves like matter or curvature: Critical and Coasting ask for OL = 0.
 //
 // For a cosmological constant this is the boundary of Carroll, Press & Turner 1992 and Felten & Isaacman 1986
 // (RMP 58, 689). On the boundary itself the universe approaches a static state for ever: Decelerating.

@@ -36,7 +36,7 @@ type history struct {
 
 // clock is a monotonic relation between a position and a time, known at one point and by its slope.
 type clock struct {
-	rate   func(pos float64) (rate, noise float64) // dt/dpos > 0
+	rate   integrand // dt/dpos > 0
 	pos, t float64
 	limit  float64 // positions lie below this
 }
@@ -89,7 +89,7 @@ func (h *history) anchor(t float64) {
 			return
 		}
 		rate, _ := c.rate(c.pos)
-		c.pos += math.Max(-5, math.Log(t/c.t)*c.t/rate)
+		c.pos += max(-5, math.Log(t/c.t)*c.t/rate)
 		c.t = h.e.sinceBigBang(math.Exp(c.pos))
 	}
 }
@@ -118,7 +118,7 @@ func (c *clock) newton(t float64, step func(rate float64) float64) float64 {
 			hi = c.pos
 		}
 		rate, _ := c.rate(c.pos)
-		next := c.pos + math.Max(-1, math.Min(step(rate), 1))
+		next := c.pos + max(-1, min(step(rate), 1))
 		if next == c.pos {
 			return c.pos
 		}
@@ -126,7 +126,7 @@ func (c *clock) newton(t float64, step func(rate float64) float64) float64 {
 			next = (lo + hi) / 2
 		}
 		moved := next - c.pos
-		c.t += integrate(c.rate, c.pos, next)
+		c.t += panel.integrate(c.rate, c.pos, next)
 		c.pos = next
 		if math.Abs(moved) < 1e-6 { // the next step would be of the order of its square
 			break

@@ -134,8 +134,8 @@ func (p *Path) fillPanel(e *expansion, g *pathPanel, chi float64, valid int, dm 
 	for k := range f {
 		f[k] = g.x[k] / math.Sqrt(e.squared(g.x[k], g.y[k], g.a[k]))
 	}
-	mean := panel.mean(&f)
-	if !(panel.omitted(&f) <= denseTail*mean) {
+	mean := panel.mean(f[:])
+	if !(panel.omitted(f[:]) <= denseTail*mean) {
 		return p.refine(e, g.lo, g.hi, chi, g.first, g.last, dm, maxDepth)
 	}
 	for i := g.first; i < g.last; i++ {
@@ -159,10 +159,10 @@ func (p *Path) refine(e *expansion, lo, hi, chi float64, first, last int, dm []f
 		x := math.Exp(y)
 		v, noise := e.inverse(x, y, 1/x)
 		f[k] = x * v
-		worst = math.Max(worst, x*noise)
+		worst = max(worst, x*noise)
 	}
-	mean := panel.mean(&f)
-	tail := panel.omitted(&f) - worst
+	mean := panel.mean(f[:])
+	tail := panel.omitted(f[:]) - worst
 	// Without a redshift inside only the integral over the panel matters.
 	good := tail <= denseTail*mean || first == last && tail <= integralTail*mean
 	if !good && depth > 0 && tail == tail {

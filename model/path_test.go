@@ -213,7 +213,7 @@ func TestPathWork(t *testing.T) {
 			evaluations := 0
 			e := u.expansion()
 			y := math.Min(7, e.reach())
-			integrate(func(y float64) (v, noise float64) {
+			whole.integrate(func(y float64) (v, noise float64) {
 				evaluations++
 				x := math.Exp(y)
 				return e.inverse(x, y, 1/x)

@@ -15,16 +15,17 @@ func (e *expansion) between(s1, s2 float64) float64 {
 	if s1 == s2 {
 		return 0
 	}
-	return integrate(e.timeRate, s1, s2)
+	return whole.integrate(e.timeRate, s1, s2)
 }
 
-// sinceBigBang is the time from the big bang to the scale factor a, in a universe that had one. In the variable
-// x = √a its integrand 2x³/√(a⁴E²) is smooth down to x = 0 if dark energy is or nearly is a cosmological
-// constant: with w0+wa ≤ -2/3 it adds a term a⁻ᵖ with p ≤ 1 to the a⁻³ of matter. For other dark energy the
-// integral runs over ln a in steps, and what is left is a pure power law.
+// sinceBigBang is the time from the big bang to the scale factor a, in a universe that had one. If dark energy is
+// or nearly is a cosmological constant the integral runs over the conformal time η that a universe of this
+// matter and radiation alone would have, a = √Or η + Om η²/4, in which the integrand is smooth down to η = 0; with
+// w0+wa ≤ -2/3 dark energy adds a term a⁻ᵖ with p ≤ 1 to the a⁻³ of matter. For other dark energy the integral runs
+// over ln a in steps, and what is left is a pure power law.
 func (e *expansion) sinceBigBang(a float64) float64 {
-	if e.om > 0 && (e.lambda || e.p <= 1) {
-		return integrate(e.rootRate, 0, math.Sqrt(a))
+	if e.om >= 0 && e.or >= 0 && e.om+e.or > 0 && (e.lambda || e.p <= 1) {
+		return whole.integrate(e.conformalRate, 0, 2*a/(math.Sqrt(e.or+e.om*a)+math.Sqrt(e.or)))
 	}
 	const step, steps = 2, 20
 	s, t := math.Log(a), 0.0
@@ -41,28 +42,29 @@ func (e *expansion) sinceBigBang(a float64) float64 {
 	return t + 2/n*rate
 }
 
-// rootRate is dt/dx for x = √a, and its rounding error.
-func (e *expansion) rootRate(x float64) (v, noise float64) {
-	a := x * x
-	rest := e.or + a*(e.om+a*e.ok)
-	de := e.ol * a * a * a * a
+// conformalRate is dt/dη = a√((Or + Om a)/(a⁴E²)), and its rounding error.
+func (e *expansion) conformalRate(eta float64) (v, noise float64) {
+	a := eta * (math.Sqrt(e.or) + e.om*eta/4)
+	free := e.or + e.om*a
+	curved := e.ok * a * a
+	dark := e.ol * a * a * a * a
 	if !e.lambda {
-		de = e.ol * math.Exp((4-e.p)*math.Log(a)+e.b*(a-1))
+		dark = e.ol * math.Exp((4-e.p)*math.Log(a)+e.b*(a-1))
 	}
-	w := 1 / math.Sqrt(rest+de)
-	v = 2 * x * a * w
-	return v, rounding * v * (1 + (math.Abs(de)+a*a*math.Abs(e.ok))*w*w)
+	rest := 1 + (curved+dark)/free
+	v = a / math.Sqrt(rest)
+	return v, rounding * v * (1 + (math.Abs(curved)+math.Abs(dark))/(free*rest))
 }
 
 // untilTurnaround is the time from ln a = s to the zero of E² at st > s.
 func (e *expansion) untilTurnaround(s, st float64) float64 {
-	return integrate(e.turnaroundRate(st), 0, math.Sqrt(st-s))
+	return whole.integrate(e.turnaroundRate(st), 0, math.Sqrt(st-s))
 }
 
 // turnaroundRate returns -dt/dv and its rounding error for v = √(st - ln a) and a zero of E² at ln a = st, where
 // 1/E has an integrable singularity which this variable removes. E² is evaluated as its difference from the
 // value 0 at the zero, term by term with expm1, so it keeps its relative accuracy as it vanishes.
-func (e *expansion) turnaroundRate(st float64) func(v float64) (rate, noise float64) {
+func (e *expansion) turnaroundRate(st float64) integrand {
 	at := math.Exp(st)
 	x := 1 / at
 	rad, m, q := e.or*x*x, e.om*x, e.p-2
@@ -168,18 +170,20 @@ func (u Universe) Rip() float64 {
 	}
 	e := u.expansion()
 	s, t := 0.0, 0.0
-	for range 400 {
+	if e.b == 0 {
+		// Constant w: beyond a = e⁴⁰ all else is below rounding, and the integral is that of a power law.
+		for ; s < 40; s++ {
+			t += e.between(s, s+1)
+		}
+		rate, _ := e.timeRate(s)
+		return u.HubbleTime() * (t - 2/e.p*rate)
+	}
+	for ; s < 600; s++ {
 		dt := e.between(s, s+1)
-		s++
 		t += dt
-		if e.b > 0 && dt < 1e-15*t {
+		if dt < 1e-15*t {
 			return u.HubbleTime() * t
 		}
-		if e.b == 0 && s >= 40 {
-			break
-		}
 	}
-	// Constant w: all else is below rounding at a = e⁴⁰, and the rest of the integral is that of a power law.
-	rate, _ := e.timeRate(s)
-	return u.HubbleTime() * (t - 2/e.p*rate)
+	return math.NaN() // wa > 0 so small that it does nothing before a overflows
 }

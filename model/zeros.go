@@ -90,7 +90,6 @@ func (e *expansion) pastZero() float64 {
 		if e.sign(lo) <= 0 {
 			return e.zero(lo, hi)
 		}
-		lo = math.Min(lo, 0.5)
 	}
 	return 0
 }
@@ -158,7 +157,7 @@ func (e *expansion) zero(lo, hi float64) float64 {
 		if !(next > l && next < h) {
 			next = (l + h) / 2
 		}
-		if math.Abs(next-s) <= 1e-16*math.Max(1, math.Abs(s)) {
+		if math.Abs(next-s) <= 1e-16*max(1, math.Abs(s)) {
 			s = next
 			break
 		}
@@ -173,7 +172,7 @@ func (e *expansion) zero(lo, hi float64) float64 {
 // coefficients are tiny, as they are for wa near zero; a formula by radicals does not.
 func cubicRoots(c [4]float64, lo, hi float64) (roots [3]float64, n int) {
 	if math.IsInf(hi, 1) {
-		hi = math.Max(rootBound(c), 2*lo)
+		hi = max(rootBound(c), 2*lo)
 	}
 	cut := [4]float64{lo, hi, hi, hi}
 	k := 1
@@ -211,9 +210,9 @@ func rootBound(c [4]float64) float64 {
 	}
 	m := 0.0
 	for i := range d {
-		m = math.Max(m, math.Abs(c[i]/c[d]))
+		m = max(m, math.Abs(c[i]/c[d]))
 	}
-	return math.Min(1+m, 1e90)
+	return min(1+m, 1e90)
 }
 
 // cubicRoot finds the root between l and h, where the cubic changes sign, to a relative 1e-12: far more than a
