@@ -174,20 +174,28 @@ func clipSegment(a, b pt, r rect) (pt, pt, bool) {
 	return ca, cb, true
 }
 
-// thin drops points closer together than a print can show.
+// thin drops points closer together than a print can show, corners excepted.
 func thin(path []line) []line {
 	const step = 0.35
 	out := make([]line, 0, len(path))
 	for _, l := range path {
 		var p []pt
 		for i, q := range l.pts {
-			if len(p) == 0 || i == len(l.pts)-1 || math.Hypot(q.x-p[len(p)-1].x, q.y-p[len(p)-1].y) >= step {
+			if len(p) == 0 || i == len(l.pts)-1 || corner(p[len(p)-1], q, l.pts[i+1]) ||
+				math.Hypot(q.x-p[len(p)-1].x, q.y-p[len(p)-1].y) >= step {
 				p = append(p, q)
 			}
 		}
 		out = append(out, line{pts: p, closed: l.closed})
 	}
 	return out
+}
+
+// corner tells whether a path turns by more than about 17 degrees at b.
+func corner(a, b, c pt) bool {
+	u, v := pt{b.x - a.x, b.y - a.y}, pt{c.x - b.x, c.y - b.y}
+	dot, cross := u.x*v.x+u.y*v.y, u.x*v.y-u.y*v.x
+	return math.Abs(cross) > 0.3*dot
 }
 
 // hatch returns parallel lines across the polygons, at the angle (radians) and distance given.

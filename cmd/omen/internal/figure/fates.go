@@ -46,14 +46,14 @@ func DrawFates(in Fates, width Width) (*Figure, error) {
 	left = min(left, 0.5*width.points()) + 9
 	x := in.axis(width.points() - left - in.room())
 	bottom := belowAxis(x) + 1
-	key := 11.
+	key := 0.
 	if n > 1 {
 		key = 11 * float64(n)
 	}
 	if in.hasLimit() {
 		key += 11
 	}
-	f := newFigure("Probability of each fate", width, bottom+pitch*float64(len(in.Rows))+key+10)
+	f := newFigure("Probability of each fate", width, bottom+pitch*float64(len(in.Rows))+key+9)
 	p := &panel{rect{left, bottom, f.w - in.room(), bottom + pitch*float64(len(in.Rows))}, x, axis{lo: 0, hi: 1}}
 	for _, t := range x.ticks {
 		if t.label != nil && t.at > x.lo {

@@ -52,6 +52,6 @@ func (f *Figure) Write(w io.Writer, format string) error {
 // stampUnfinished notes in the top right corner that the run has not ended.
 func (f *Figure) stampUnfinished(unfinished bool) {
 	if unfinished {
-		f.text(Plain("unfinished run"), f.w-2, f.h-2, textStyle{size: noteSize, ink: inkWarn, h: 1, v: 1})
+		f.text(Plain("unfinished run"), f.w-2, f.h-1.5, textStyle{size: noteSize, ink: inkWarn, h: 1, v: 1})
 	}
 }

@@ -135,6 +135,12 @@ func (in *History) moments(f *Figure, p *panel, taken *occupied) {
 					q.leader = &pt{at.x, at.y}
 				}
 				spots = append(spots, q)
+				if a == 2 {
+					q.style.h = 0
+					spots = append(spots, q)
+					q.style.h = 1
+					spots = append(spots, q)
+				}
 			}
 		}
 		f.put(taken, m.Name, spots, math.Inf(1))

@@ -46,10 +46,16 @@ func (f *Figure) pdfOp(d *fpdf.Fpdf, o op) {
 		d.SetTextColor(r, g, b)
 		f.pdfText(d, o)
 	case len(o.dots) > 0:
-		d.SetFillColor(r, g, b)
+		d.SetDrawColor(r, g, b)
+		d.SetLineWidth(o.width)
+		d.SetDashPattern(nil, 0)
+		d.SetLineCapStyle("round") // lines of no length become discs, in one path, which do not darken each other
 		for _, p := range o.dots {
-			d.Circle(p.x, f.h-p.y, o.width/2, "F")
+			d.MoveTo(p.x, f.h-p.y)
+			d.LineTo(p.x, f.h-p.y)
 		}
+		d.DrawPath("D")
+		d.SetLineCapStyle("butt")
 	case o.width > 0:
 		d.SetDrawColor(r, g, b)
 		d.SetLineWidth(o.width)

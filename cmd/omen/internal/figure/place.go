@@ -72,15 +72,16 @@ type spot struct {
 	leader  *pt // where a thin line to what is named starts; nil for none
 }
 
-// put draws the label at the cheapest of the spots and marks it as taken. Spots where it would leave the frame
+// put draws the label at the cheapest of the spots, which have one size of text, and marks it as taken. Spots where it would leave the frame
 // are out; false if none is left or all cost more than most.
 func (c *canvas) put(o *occupied, l Label, spots []spot, most float64) bool {
-	if len(l) == 0 {
+	if len(l) == 0 || len(spots) == 0 {
 		return false
 	}
 	best, price := -1, most
+	w := l.measure(spots[0].style.size)
 	for i, s := range spots {
-		if v := o.price(labelBox(l, s)) + o.leaderPrice(s) + s.penalty; v < price {
+		if v := o.price(labelBox(w, s)) + o.leaderPrice(s) + s.penalty; v < price {
 			best, price = i, v
 		}
 	}
@@ -88,8 +89,8 @@ func (c *canvas) put(o *occupied, l Label, spots []spot, most float64) bool {
 		return false
 	}
 	s := spots[best]
-	o.area([]line{labelBox(l, s)}, 3)
-	o.lines([]line{labelBox(l, s).closedUp()}, 3)
+	o.area([]line{labelBox(w, s)}, 3)
+	o.lines([]line{labelBox(w, s).closedUp()}, 3)
 	if s.leader != nil {
 		o.lines([]line{{pts: []pt{*s.leader, {s.x, s.y}}}}, 3)
 		d := math.Hypot(s.x-s.leader.x, s.y-s.leader.y)
@@ -122,8 +123,8 @@ func (l line) closedUp() line {
 	return line{pts: append(l.pts[:len(l.pts):len(l.pts)], l.pts[0])}
 }
 
-func labelBox(l Label, s spot) line {
-	w := l.measure(s.style.size)
+// labelBox outlines a label of width w.
+func labelBox(w float64, s spot) line {
 	sin, cos := math.Sincos(s.style.angle)
 	dx, dy := -s.style.h*w, -s.style.v*capHeight*s.style.size
 	return textBox(pt{s.x + dx*cos - dy*sin, s.y + dx*sin + dy*cos}, w, s.style)

@@ -143,6 +143,7 @@ func (in *Plane) draw(f *Figure, p *panel, sets []outlines) {
 		f.regionLines(p, s, i)
 	}
 	f.axes(p)
+	f.text(Plain("regions of 68% and 95%"), p.x1, p.y1+4, textStyle{size: noteSize, ink: inkSoft, h: 1})
 	in.nameSets(f, p, sets, taken)
 	for _, d := range in.Dividers {
 		f.nameSides(p, d, taken)
@@ -235,16 +236,16 @@ func corners(p *panel, k ink) []spot {
 // nameSides writes what lies on either side of a divider along it, both at the same place.
 func (f *Figure) nameSides(p *panel, d Divider, taken *occupied) {
 	l := clipStroke([]line{p.path(d.X, d.Y)}, p.rect)
-	w := max(d.Left.measure(noteSize), d.Right.measure(noteSize))
-	left, right := alongLine(l, 1, w), alongLine(l, -1, w)
+	wl, wr := d.Left.measure(noteSize), d.Right.measure(noteSize)
+	left, right := alongLine(l, 1, max(wl, wr)), alongLine(l, -1, max(wl, wr))
 	best, price := -1, 0.9
 	for i := range left {
 		v := left[i].penalty
 		if len(d.Left) > 0 {
-			v += taken.price(labelBox(d.Left, left[i]))
+			v += taken.price(labelBox(wl, left[i]))
 		}
 		if len(d.Right) > 0 {
-			v += taken.price(labelBox(d.Right, right[i]))
+			v += taken.price(labelBox(wr, right[i]))
 		}
 		if v < price {
 			best, price = i, v

@@ -32,7 +32,7 @@ func (f *Figure) writeSVG(w io.Writer) error {
 	fmt.Fprintf(s, `<?xml version="1.0" encoding="UTF-8"?>`+"\n")
 	fmt.Fprintf(s, `<svg xmlns="http://www.w3.org/2000/svg" width="%smm" height="%smm" viewBox="0 0 %s %s" role="img">`+"\n",
 		num(f.w/millimetre), num(f.h/millimetre), num(f.w), num(f.h))
-	fmt.Fprintf(s, "<title>%s</title>\n", html.EscapeString(f.Title))
+	fmt.Fprintf(s, "<title>%s</title>\n", escape(f.Title))
 	fmt.Fprintf(s, `<rect width="%s" height="%s" fill="#fff"/>`+"\n", num(f.w), num(f.h))
 	for _, o := range f.ops {
 		s.op(o)
@@ -56,7 +56,7 @@ func (f *Figure) WriteInlineSVG(w io.Writer, idPrefix, alt string) error {
 		`style="max-width:100%%;height:auto" role="img" aria-labelledby="%[1]s-title %[1]s-desc">`+"\n",
 		idPrefix, num(f.w), num(f.h))
 	fmt.Fprintf(s, "<title id=\"%[1]s-title\">%[2]s</title>\n<desc id=\"%[1]s-desc\">%[3]s</desc>\n",
-		idPrefix, html.EscapeString(f.Title), html.EscapeString(alt))
+		idPrefix, escape(f.Title), escape(alt))
 	s.style(idPrefix)
 	for _, o := range f.ops {
 		s.op(o)
@@ -82,6 +82,16 @@ func (s svg) style(id string) {
 		}
 	}
 	s.WriteString("}\n</style>\n")
+}
+
+// escape makes any string a text of XML and HTML; characters that XML cannot hold become blanks.
+func escape(s string) string {
+	return html.EscapeString(strings.Map(func(r rune) rune {
+		if r < ' ' && r != '\n' && r != '\t' || r >= 0x7f && r < 0xa0 || r == 0xfffe || r == 0xffff {
+			return ' '
+		}
+		return r
+	}, s))
 }
 
 func hex(c color.NRGBA) string { return fmt.Sprintf("#%02x%02x%02x", c.R, c.G, c.B) }
@@ -205,7 +215,7 @@ func (s svg) characters(o op) {
 			slant = ` font-style="italic"`
 		}
 		fmt.Fprintf(s, `<tspan x="%s" y="%s" font-size="%s" textLength="%s" lengthAdjust="spacingAndGlyphs"%s>%s</tspan>`,
-			num(p.dx), num(-p.dy), num(p.size), num(p.width), slant, html.EscapeString(p.text))
+			num(p.dx), num(-p.dy), num(p.size), num(p.width), slant, escape(p.text))
 	}
 	s.WriteString("</text>\n")
 }

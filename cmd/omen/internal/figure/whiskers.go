@@ -26,8 +26,8 @@ type Whiskers struct {
 	Unfinished bool
 }
 
-// DrawWhiskers draws one column per parameter and one row per run: the median, a thick bar for 68% and a thin one
-// for 95%.
+// DrawWhiskers draws one column per parameter and one row per run: the median as a tick, a thick bar for 68% and
+// a thin one for 95%.
 func DrawWhiskers(in Whiskers, width Width) (*Figure, error) {
 	if len(in.Runs) == 0 || len(in.Quantities) == 0 {
 		return nil, errors.New("figure: nothing to compare")
@@ -97,9 +97,10 @@ func (q *Quantity) draw(f *Figure, r rect, pitch, gap float64) {
 			continue
 		}
 		f.segment(p.at(c.Lo95, 0).x, y, p.at(c.Hi95, 0).x, y, pen{ink: lineInk(i), width: 0.7})
-		f.segment(p.at(c.Lo68, 0).x, y, p.at(c.Hi68, 0).x, y, pen{ink: lineInk(i), width: 2.6})
-		f.marks([]pt{{p.at(c.Median, 0).x, y}}, markers(i), 4.4, inkPaper)
-		f.marks([]pt{{p.at(c.Median, 0).x, y}}, markers(i), 3, lineInk(i))
+		f.segment(p.at(c.Lo68, 0).x, y, p.at(c.Hi68, 0).x, y, pen{ink: lineInk(i), width: 3})
+		at := p.at(c.Median, 0).x
+		f.segment(at, y-4, at, y+4, pen{ink: inkPaper, width: 2.4})
+		f.segment(at, y-4, at, y+4, pen{ink: lineInk(i), width: 1.1})
 	}
 	f.segment(r.x0, r.y0, r.x1, r.y0, pen{ink: inkText, width: axisWidth})
 	f.ticksBelow(p, pen{ink: inkText, width: axisWidth})
