@@ -85,6 +85,9 @@ func (g *gaussian) along(a []float64) func(x []float64) float64 {
 	}
 }
 
+// oneSigma is the probability within one standard deviation of a normal distribution, erf(1/√2).
+const oneSigma = 0.6826894921370859
+
 // upper is the probability of a standard normal above z.
 func upper(z float64) float64 { return math.Erfc(z/math.Sqrt2) / 2 }
 
@@ -120,10 +123,10 @@ func TestGaussianEvidenceAndMarginals(t *testing.T) {
 		for i := range g.mean {
 			m := &r.Marginals[i]
 			sd := g.sd(i)
-			off := m.Disagreement(g.mean[i], sd, g.mean[i]-sd, g.mean[i], g.mean[i]+sd)
+			off := m.Disagreement(g.mean[i], sd, g.mean[i], oneSigma, g.mean[i]-sd, g.mean[i]+sd)
 			l, u := m.Interval(0.95)
 			l95, u95 := (l-g.mean[i])/sd+1.959963984540054, (u-g.mean[i])/sd-1.959963984540054
-			hl, hu := m.HighestDensity(Central68)
+			hl, hu := m.HighestDensity(oneSigma)
 			if off > 1e-5 || math.Abs(l95)+math.Abs(u95) > 2e-5 || math.Abs(hu-hl-2*sd) > 1e-4*sd {
 				t.Errorf("%d dim, coordinate %d: off by %.2g, 95%% ends by %.2g %.2g, highest density [%g %g]", len(lo), i, off, l95, u95, hl, hu)
 			}

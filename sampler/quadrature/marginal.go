@@ -8,9 +8,6 @@ import (
 	"gonum.org/v1/gonum/integrate/quad"
 )
 
-// Central68 is the probability within one standard deviation of a normal distribution, erf(1/√2).
-const Central68 = 0.6826894921370859
-
 // gridSize is the number of points a marginal is tabulated at: some 50 per standard deviation.
 const gridSize = 513
 
@@ -252,11 +249,12 @@ func (m *Marginal) HighestDensity(p float64) (lower, upper float64) {
 }
 
 // Disagreement compares a summary of a sample with the marginal: the largest difference in mean, standard
-// deviation, median and the ends of the central 68.27% interval, in units of the standard deviation.
-func (m *Marginal) Disagreement(mean, sd, lower, median, upper float64) float64 {
-	l, u := m.Interval(Central68)
+// deviation, median and the ends of the central interval of probability p, in units of the marginal's
+// standard deviation.
+func (m *Marginal) Disagreement(mean, sd, median, p, lower, upper float64) float64 {
+	l, u := m.Interval(p)
 	var worst float64
-	for _, d := range [...]float64{mean - m.Mean, sd - m.SD, lower - l, median - m.Median(), upper - u} {
+	for _, d := range [...]float64{mean - m.Mean, sd - m.SD, median - m.Median(), lower - l, upper - u} {
 		worst = math.Max(worst, math.Abs(d)/m.SD)
 	}
 	return worst

@@ -35,7 +35,7 @@ type Options struct {
 
 // DefaultOptions returns options good for publication.
 func DefaultOptions() Options {
-	return Options{Tolerance: 1e-6, ClassTolerance: 1e-3, Rarest: 1e-12, MaxEvaluations: 4_000_000}
+	return Options{Tolerance: 1e-6, ClassTolerance: 1e-3, Rarest: 1e-12, MaxEvaluations: 3_000_000}
 }
 
 // Estimate is a number and its standard or, for a quadrature, estimated largest error.

@@ -88,10 +88,15 @@ func TestSameForAnyNumberOfWorkers(t *testing.T) {
 	o := DefaultOptions()
 	o.Tolerance, o.ClassTolerance = 1e-2, 1e-1
 	for dim := 2; dim <= 3; dim++ {
+		p := cut(dim)
+		if dim == 3 {
+			p.Lo, p.Hi = []float64{-0.4, -0.2, 0.2}, []float64{0.2, 0.6, 1} // little more than the mass: it is slow
+		}
 		o.Workers = 1
-		want := integrate(t, cut(dim), o)
+		want := integrate(t, p, o)
 		o.Workers = 3
-		got := integrate(t, cut(dim), o)
+		got := integrate(t, p, o)
+		t.Log(want.Evaluations)
 		if d := cmp.Diff(want, got, cmp.AllowUnexported(Nodes{}), cmpopts.EquateNaNs()); d != "" {
 			t.Errorf("%d dimensions: 3 workers differ from 1: %.300s", dim, d)
 		}
@@ -153,7 +158,7 @@ func TestDerived(t *testing.T) {
 			if err != nil {
 				t.Fatal(err)
 			}
-			if d := m.Disagreement(0, 1, -1, 0, 1); d > 0.01 {
+			if d := m.Disagreement(0, 1, 0, oneSigma, -1, 1); d > 0.01 {
 				t.Errorf("%d dim, mostly along %d: off by %.2g standard deviations", dim, axis, d)
 			}
 		}
