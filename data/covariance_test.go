@@ -149,6 +149,21 @@ func TestSmallestEigen(t *testing.T) {
 	}
 }
 
+func TestDominant(t *testing.T) {
+	for _, test := range []struct {
+		v    []float64
+		want string
+	}{
+		{[]float64{0.1, -0.9, 0.4, 0.2}, "[1 2]"},
+		{[]float64{-0.5, 0.5, 0.5, 0.5}, "[0 1 2]"},
+		{[]float64{0.2, 1}, "[1]"},
+	} {
+		if got := fmt.Sprint(dominant(mat.NewVecDense(len(test.v), test.v))); got != test.want {
+			t.Errorf("%v: %s, want %s", test.v, got, test.want)
+		}
+	}
+}
+
 func TestTemplates(t *testing.T) {
 	in := "calibration dust\n0.01 0.02\n# pause\n0.03 -0.04\n0.05 1e-3\n"
 	got, err := ReadTemplates(strings.NewReader(in), "s.txt", ofThree(0, 2))

@@ -7,12 +7,12 @@ import (
 	"github.com/google/go-cmp/cmp"
 )
 
-const cutTable = `id survey z mag 3rdvar flag
-1 A 0.1 20 0.5 yes
-2 A 0.2 21 ""  no
-3 B 0.3 22 1.5 yes
-4 C 0.4 23 nan no
-5 B 0.5 24 2.5 yes
+const cutTable = `id survey z mag 3rdvar flag note
+1 A 0.1 20 0.5 yes ""
+2 A 0.2 21 ""  no  ""
+3 B 0.3 22 1.5 yes ""
+4 C 0.4 23 nan no  ""
+5 B 0.5 24 2.5 yes ""
 `
 
 func TestCuts(t *testing.T) {
@@ -35,6 +35,7 @@ func TestCuts(t *testing.T) {
 		{`$env["3rdvar"] > 1`, []int{2, 4}, []CutCount{{`$env["3rdvar"] > 1`, 3}}},
 		{`$env["3rdvar"] <= 1`, []int{0}, []CutCount{{`$env["3rdvar"] <= 1`, 4}}},
 		{"flag startsWith 'y'", []int{0, 2, 4}, []CutCount{{`flag startsWith "y"`, 2}}},
+		{"note == ''", []int{0, 1, 2, 3, 4}, []CutCount{{`note == ""`, 0}}},
 		{"true", []int{0, 1, 2, 3, 4}, []CutCount{{"true", 0}}},
 	}
 	for _, test := range tests {

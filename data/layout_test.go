@@ -16,7 +16,7 @@ func TestLayouts(t *testing.T) {
 		"comma":                {"name,z,mu,mu_err\nSN a,0.1,38.3,0.1\nb,0.2,40,0.12\n", []int{2, 3}},
 		"comma and blanks":     {"name, z, mu, mu_err\nSN a, 0.1 , 38.3,0.1\nb,\t0.2,40,0.12 \n", []int{2, 3}},
 		"semicolon":            {"name;z;mu;mu_err\nSN a;0.1;38.3;0.1\nb;0.2;40;0.12", []int{2, 3}},
-		"semicolon and comma":  {"name;z;mu;mu_err;note\nSN a;0.1;38.3;0.1;x, y\nb;0.2;40;0.12;\n", []int{2, 3}},
+		"semicolon and comma":  {"name;z;mu;mu_err;note, long\nSN a;0.1;38.3;0.1;x, y\nb;0.2;40;0.12;\n", []int{2, 3}},
 		"tab":                  {"name\tz\tmu\tmu_err\nSN a\t0.1\t38.3\t0.1\nb\t0.2\t40\t0.12\n", []int{2, 3}},
 		"tab, empty cell":      {"name\tnote\tz\tmu\tmu_err\nSN a\t\t0.1\t38.3\t0.1\nb\t\t0.2\t40\t0.12\n", []int{2, 3}},
 		"blanks":               {"  name  z   mu mu_err  \n\"SN a\" 0.1 38.3\t0.1\n\n  b  0.2 40  0.12\n", []int{2, 4}},
@@ -47,6 +47,13 @@ func TestLayouts(t *testing.T) {
 }
 
 var unexported = cmp.FilterPath(func(p cmp.Path) bool { return p.Last().String() == ".names" }, cmp.Ignore())
+
+func TestQuotesBetweenBlanks(t *testing.T) {
+	row, ok := splitBlanks(nil, "  \"a \"\"b\"\" c\" 1 \"\"\t\"\"\"\"\n")
+	if diff := cmp.Diff([]string{`a "b" c`, "1", "", `"`}, row); diff != "" || !ok {
+		t.Errorf("%v %s", ok, diff)
+	}
+}
 
 func TestHeaderWithSurplusName(t *testing.T) {
 	sn, err := ReadSupernovae(strings.NewReader("#z mag set\n0.1 20\n0.2 21\n"), "t.txt", Options{})
@@ -104,13 +111,14 @@ func TestBAO(t *testing.T) {
 }
 
 func TestAges(t *testing.T) {
-	in := "name z age error bound\nA 1.55 3.5 0.5 lower\nB 0 12.6 0.6 measured\n"
+	in := "name z age error bound\nA 1.55 3.5 0.5 lower\nB 0 12.6 0.6 measured\nC 0.5 6 1 \"\"\n"
 	a, err := ReadAges(strings.NewReader(in), "a.txt", Options{})
 	if err != nil {
 		t.Fatal(err)
 	}
-	want := &Ages{Name: []string{"A", "B"}, Z: []float64{1.55, 0}, Age: []float64{3.5, 12.6}, Err: []float64{0.5, 0.6}, Bound: []Bound{LowerBound, Measured},
-		Selection: Selection{File: "a.txt", Read: 2, Kept: []int{0, 1}, Lines: []int{2, 3}}}
+	want := &Ages{Name: []string{"A", "B", "C"}, Z: []float64{1.55, 0, 0.5}, Age: []float64{3.5, 12.6, 6}, Err: []float64{0.5, 0.6, 1},
+		Bound:     []Bound{LowerBound, Measured, Measured},
+		Selection: Selection{File: "a.txt", Read: 3, Kept: []int{0, 1, 2}, Lines: []int{2, 3, 4}}}
 	if diff := cmp.Diff(want, a, unexported); diff != "" {
 		t.Errorf("(-want +got):\n%s", diff)
 	}
@@ -152,6 +160,7 @@ func TestRecognise(t *testing.T) {
 		{"name zcmb zhel dz mb dmb", map[string]string{"name": "name", "z": "zcmb", "z_hel": "zhel", "mag": "mb", "mag_err": "dmb"}},
 		{"zhd mu MUERR", map[string]string{"z": "zhd", "mu": "mu", "mu_err": "MUERR"}},
 		{"zHD MU MUERR mag", map[string]string{"z": "zHD", "mag": "mag"}},
+		{"Z z mag", map[string]string{"z": "z", "mag": "mag"}},
 		{"z zHD H error", map[string]string{"z": "z", "H": "H", "error": "error"}},
 		{"x y", map[string]string{}},
 	}

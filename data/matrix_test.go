@@ -125,11 +125,12 @@ func TestMatrixLargerThanBuffer(t *testing.T) {
 }
 
 func TestMatrixRounding(t *testing.T) {
-	m, err := ReadMatrix(strings.NewReader("1 0.30000001\n0.3 4\n"), "c.cov")
+	m, err := ReadMatrix(strings.NewReader("9 0.3000003 0\n0.3 4 0\n0 0 0.01\n"), "c.cov")
 	if err != nil {
 		t.Fatal(err)
 	}
-	if m.At(0, 1) != 0.300000005 || math.Abs(m.Asymmetry-0.5e-8) > 1e-14 {
+	// 3e-7 in units of √(9·4)
+	if m.At(0, 1) != 0.30000015 || math.Abs(m.Asymmetry-0.5e-7) > 1e-15 {
 		t.Errorf("mean %v, asymmetry %v", m.At(0, 1), m.Asymmetry)
 	}
 }
@@ -149,6 +150,8 @@ func TestMatrixErrors(t *testing.T) {
 		{"2\n1 0\n0 nan\n", `c.cov:3: found NaN in row 2, column 2, expected finite numbers; correct the matrix`},
 		{"2\n1 -inf\n0 1\n", `c.cov:2: found -Inf in row 1, column 2, expected finite numbers; correct the matrix`},
 		{"4 1 0.5\n1.1 3 -0.25\n0.5 0.75 2\n", `c.cov:3: found 0.75 in row 3, column 2 but -0.25 in row 2, column 3, expected a symmetric matrix; check that it is complete and in the right order`},
+		{"4 1 0.5\n2.5 3 -0.25\n0.5 -0.15 2\n", `c.cov:2: found 2.5 in row 2, column 1 but 1 in row 1, column 2, expected a symmetric matrix; check that it is complete and in the right order`},
+		{"4 1 0.5\n", `c.cov: found 1 row of 3 numbers, expected as many rows as columns; check that the matrix is complete`},
 		{"2\n" + strings.Repeat("1", 2000), `c.cov:2: found "1111111111111111111111111111111111111111…", expected a number; correct the matrix; it has no header`},
 		{gzipped("2\n1 0\n0 1\n")[:20], `c.cov: found a damaged or cut-off file, expected a whole one; copy or download it again`},
 		{asNPY(t, mat.NewDense(2, 3, nil)), `c.cov: found an array of shape [2 3], expected N×N, or the N(N+1)/2 numbers of its upper triangle; save the matrix in one of these shapes`},
@@ -157,6 +160,8 @@ func TestMatrixErrors(t *testing.T) {
 		{asNPY(t, []float64{1, 0, math.NaN()}), `c.cov: found NaN in row 2, column 2, expected finite numbers; correct the matrix`},
 		{asNPY(t, mat.NewDense(2, 2, []float64{1, 0, 0.5, 1})), `c.cov: found 0.5 in row 2, column 1 but 0 in row 1, column 2, expected a symmetric matrix; check that it is complete and in the right order`},
 		{asNPY(t, make([]float64, 6))[:115], `c.cov: found a damaged or cut-off file, expected a whole one; copy or download it again`},
+		{asNPY(t, make([]float64, 6))[:len(asNPY(t, make([]float64, 5)))], `c.cov: found a damaged or cut-off file, expected a whole one; copy or download it again`},
+		{"\x93NUMPY\x01\x00\x02\x00{}", `c.cov: found a damaged NumPy header ("it is no dictionary"), expected an array as numpy.save writes it; write it again`},
 		{"\x93NUMPY\x09\x00", `c.cov: found a damaged NumPy header ("npy: invalid major version number (9)"), expected an array as numpy.save writes it; write it again`},
 		{asNPZ(t, map[string]any{"a.npy": []float64{1, 0, 1}, "b.npy": []float64{1, 0, 1}})[:60], `c.cov: found a damaged or cut-off file, expected a whole one; copy or download it again`},
 		{asNPZ(t, map[string]any{"a.npy": []float64{1, 0, 1}, "b.npy": []float64{1, 0, 1}}), `c.cov: found 2 arrays (a.npy, b.npy), expected one; save the covariance alone`},

@@ -26,8 +26,8 @@ func (w wholeReads) Read(p []byte) (int, error) {
 // openNPY reads the header of an array. npyio panics on some headers that NumPy never writes.
 func openNPY(r io.Reader, file string) (_ *npy.Reader, err error) {
 	defer func() {
-		if p := recover(); p != nil {
-			err = badHeader(file, fmt.Sprint(p))
+		if recover() != nil {
+			err = badHeader(file, "it is no dictionary")
 		}
 	}()
 	n, err := npy.NewReader(wholeReads{r})
