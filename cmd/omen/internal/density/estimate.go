@@ -87,7 +87,7 @@ func estimate2(x, y, w []float64, wsum, ess float64, ax, ay axis, shape sym2) (*
 			continue
 		}
 		// Below about one node per standard deviation the sampled kernel would ring.
-		p, self := f.smooth(kernel.atLeast(0.9*ax.dx, 0.9*ay.dx))
+		p, self := f.smooth(kernel.atLeast(0.9*ax.dx, 0.9*ay.dx), ess)
 		return &Surface{X: ax.nodes(), Y: ay.nodes(), P: p}, self
 	}
 }

@@ -183,8 +183,13 @@ func transpose(z []complex128, n int) {
 	}
 }
 
-// smooth convolves with the Gaussian of covariance k; see smooth1 for the results.
-func (f *field) smooth(k sym2) (p, self []float64) {
+// fewDraws is how many draws under the kernel make the slope of the local linear estimate as good as none. Towards
+// fewer the estimate goes over to the plain one, or noise would fray the outlines where they meet an edge.
+const fewDraws = 10
+
+// smooth convolves with the Gaussian of covariance k the draws worth ess independent ones; see smooth1 for the
+// results.
+func (f *field) smooth(k sym2, ess float64) (p, self []float64) {
 	nx, ny := f.ax.n, f.ay.n
 	p, self = make([]float64, nx*ny), make([]float64, nx*ny)
 	peak := 1 / (2 * math.Pi * math.Sqrt(k.det()))
@@ -210,7 +215,9 @@ func (f *field) smooth(k sym2) (p, self []float64) {
 	for j := range ny {
 		for i := range nx {
 			plain, linear, own := local(m, j*f.size+i, scale)
-			p[j*nx+i], self[j*nx+i] = positive(plain, linear), own*peak
+			draws := ess * plain * 2 / peak // under the kernel, 4π√det times the density
+			trust := draws / (draws + fewDraws)
+			p[j*nx+i], self[j*nx+i] = positive(plain, plain+trust*(linear-plain)), own*peak
 		}
 	}
 	return p, self

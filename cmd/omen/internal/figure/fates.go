@@ -147,12 +147,18 @@ func (v Probability) label() Label {
 		return Plain("–")
 	case v.Limit:
 		return append(Plain("< "), scientific(v.P, 1)...)
+	case v.Err > 0 && v.P < 1e-3 && v.P > 0:
+		e := math.Floor(math.Log10(v.P))
+		unit := math.Pow(10, e)
+		d := decimalsOf(v.Err / unit)
+		return Markup(fmt.Sprintf("(%s ± %s)×10^{−%g}", decimal(v.P/unit, d), decimal(v.Err/unit, d), -e))
 	case v.Err > 0:
 		d := decimalsOf(v.Err)
-		if v.P < 1e-3 {
-			return scientific(v.P, 2)
-		}
 		return Plain(decimal(v.P, d) + " ± " + decimal(v.Err, d))
+	case v.P > 0.9 && v.P < 1: // the digits that matter are those of 1-P
+		return Plain(decimal(v.P, min(8, decimalsOf(1-v.P))))
+	case v.P == 1:
+		return Plain("1")
 	}
 	return scientific(v.P, 2)
 }
@@ -251,7 +257,7 @@ func (in *Fates) key(f *Figure, p *panel) {
 			f.stroke(hatch([]line{r.outline()}, math.Pi/4, 2.4), pen{ink: lineInk(s), width: 0.4})
 		}
 		f.stroke([]line{r.outline()}, pen{ink: lineInk(s), width: 0.5})
-		f.text(in.Series[s].Name, r.x1+5, y, textStyle{size: noteSize, ink: inkText, v: 0.5})
+		f.text(in.Series[s].Name.shorten(f.w-r.x1-7, noteSize), r.x1+5, y, textStyle{size: noteSize, ink: inkText, v: 0.5})
 		y += 11
 	}
 }

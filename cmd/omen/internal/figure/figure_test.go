@@ -16,11 +16,13 @@ var (
 	look   = flag.String("look", "", "write every figure in every format to this folder")
 )
 
-// drawings are all figures, by the name of their golden.
-var drawings = []struct {
+type drawing struct {
 	name string
 	draw func() (*Figure, error)
-}{
+}
+
+// drawings are all figures, by the name of their golden.
+var drawings = []drawing{
 	{"hubble-few-column", func() (*Figure, error) { return DrawHubble(hubbleFew(), Column) }},
 	{"hubble-many-column", func() (*Figure, error) { return DrawHubble(hubbleMany(), Column) }},
 	{"hubble-many-page", func() (*Figure, error) { return DrawHubble(hubbleMany(), Page) }},

@@ -100,6 +100,9 @@ type Hubble struct {
 // manyPoints is how many supernovae are drawn one by one with errors; more are drawn faintly below binned points.
 const manyPoints = 150
 
+// hubbleRoom is for the tick labels at the left of every panel, so that the titles above them line up.
+const hubbleRoom = 24.
+
 // DrawHubble draws the Hubble diagram, residuals from the best fit below it, and BAO ratios to the best fit
 // in a panel of their own.
 func DrawHubble(in Hubble, width Width) (*Figure, error) {
@@ -196,7 +199,7 @@ func (in *Hubble) drawDiagram(f *Figure, r rect, x axis) {
 		}
 	}
 	y := padded(lo, hi, 0.05)
-	y.ticks, y.title = linearTicks(y.lo, y.hi, 5), in.Magnitude
+	y.ticks, y.title, y.room = linearTicks(y.lo, y.hi, 5), in.Magnitude, hubbleRoom
 	x.bare, x.title = true, nil
 	p := &panel{r, x, y}
 	f.bands(p, &in.Model, 0)
@@ -227,8 +230,9 @@ func (in *Hubble) many() bool {
 func (in *Hubble) legend(f *Figure, p *panel) {
 	y := p.y0 + 5 + 10*float64(len(in.Supernovae))
 	for i, s := range in.Supernovae {
-		w := s.Name.measure(tickSize)
-		f.text(s.Name, p.x1-4, y, textStyle{size: tickSize, ink: inkText, h: 1})
+		name := s.Name.shorten(0.6*p.w(), tickSize)
+		w := name.measure(tickSize)
+		f.text(name, p.x1-4, y, textStyle{size: tickSize, ink: inkText, h: 1})
 		at := pt{p.x1 - 4 - w - 6, y + 2.6}
 		if in.many() {
 			f.dots([]pt{{at.x - 7, at.y + 1}, {at.x - 8.5, at.y - 1.2}, {at.x - 10.5, at.y + 0.4}}, 1.1, fillInk(i), 0.6)
@@ -280,7 +284,7 @@ func (in *Hubble) drawResiduals(f *Figure, r rect, x axis, last bool) {
 		}
 		sets = append(sets, s)
 	}
-	y := axis{lo: -1.08 * most, hi: 1.08 * most, title: Plain("residual (mag)")}
+	y := axis{lo: -1.08 * most, hi: 1.08 * most, room: hubbleRoom, title: Plain("residual (mag)")}
 	y.ticks = someTicks(y.lo, y.hi, 2, 3)
 	if !last {
 		x.bare, x.title = true, nil
@@ -376,7 +380,8 @@ func (in *Hubble) drawBAO(f *Figure, r rect, x axis) {
 		}
 		rel = append(rel, q)
 	}
-	y := axis{lo: 1 - 1.1*most, hi: 1 + 1.1*most, title: Plain("BAO: measured / best fit")}
+	// The names stand in the strip left free below the points.
+	y := axis{lo: 1 - 1.5*most, hi: 1 + 1.1*most, room: hubbleRoom, title: Plain("BAO: measured / best fit")}
 	y.ticks = someTicks(y.lo, y.hi, 3, 3)
 	p := &panel{r, x, y}
 	for i := range in.BAO {

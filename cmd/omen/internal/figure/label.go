@@ -115,10 +115,31 @@ func WithUnit(symbol, unit Label) Label {
 	return append(l, run{text: ")"})
 }
 
-// wrap breaks a plain label wider than w into two lines at the blank nearest to its middle.
+// shorten cuts a label at the end until it is at most w wide, and says so by an ellipsis.
+func (l Label) shorten(w, size float64) Label {
+	if l.measure(size) <= w {
+		return l
+	}
+	out := append(Label{}, l...)
+	for len(out) > 0 {
+		last := &out[len(out)-1]
+		if r := []rune(last.text); len(r) > 1 {
+			last.text = strings.TrimRight(string(r[:len(r)-1]), " ")
+		} else {
+			out = out[:len(out)-1]
+		}
+		if cut := append(out[:len(out):len(out)], run{text: "…"}); cut.measure(size) <= w {
+			return cut
+		}
+	}
+	return Label{{text: "…"}}
+}
+
+// wrap breaks a plain label wider than w into two lines at the blank nearest to its middle, and shortens what is
+// still too wide.
 func (l Label) wrap(w, size float64) []Label {
 	if len(l) != 1 || l.measure(size) <= w {
-		return []Label{l}
+		return []Label{l.shorten(w, size)}
 	}
 	words := strings.Fields(l[0].text)
 	best, at := w*10, 0
@@ -129,9 +150,10 @@ func (l Label) wrap(w, size float64) []Label {
 		}
 	}
 	if at == 0 {
-		return []Label{l}
+		return []Label{l.shorten(w, size)}
 	}
-	return []Label{Plain(strings.Join(words[:at], " ")), Plain(strings.Join(words[at:], " "))}
+	first, second := Plain(strings.Join(words[:at], " ")), Plain(strings.Join(words[at:], " "))
+	return []Label{first.shorten(w, size), second.shorten(w, size)}
 }
 
 // String is the label in plain characters, for alternative texts.

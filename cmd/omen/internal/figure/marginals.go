@@ -79,15 +79,16 @@ func (p *Parameter) axis(c *density.Curve) axis {
 
 // matrix is the layout of the panels.
 type matrix struct {
-	in     *Marginals
-	f      *Figure
-	curves []*density.Curve
-	axes   []axis
-	left   float64 // of the first column
-	bottom float64 // of the last row
-	w, h   float64 // of a panel
-	lines  int     // of axis titles: 1, or 2 with the unit below the symbol
-	turned bool    // labels of the horizontal axes stand upright to fit
+	in        *Marginals
+	f         *Figure
+	curves    []*density.Curve
+	axes      []axis
+	left      float64 // of the first column
+	bottom    float64 // of the last row
+	w, h      float64 // of a panel
+	lines     int     // of axis titles: 1, or 2 with the unit below the symbol
+	unitsLeft []Label // units for which an axis had no room
+	turned    bool    // labels of the horizontal axes stand upright to fit
 }
 
 const matrixGap = 5.
@@ -149,6 +150,10 @@ func (m *matrix) belowTicks() float64 {
 // fittingTicks are at most n that leave room between their labels, and those away from the corners of the panel.
 // Labels that stand upright, turned, take a line's height instead of their width.
 func fittingTicks(a axis, w float64, turned bool) []tick {
+	gap := 3.5
+	if turned {
+		gap = 1.2
+	}
 	for n := 5; n > 0; n-- {
 		var inner []tick
 		widest := 0.0
@@ -162,7 +167,7 @@ func fittingTicks(a axis, w float64, turned bool) []tick {
 				widest = max(widest, 2*half)
 			}
 		}
-		if len(inner) == 1 || len(inner) > 1 && (inner[1].at-inner[0].at)/(a.hi-a.lo)*w > widest+3.5 {
+		if len(inner) == 1 || len(inner) > 1 && (inner[1].at-inner[0].at)/(a.hi-a.lo)*w > widest+gap {
 			return inner
 		}
 	}
@@ -234,6 +239,8 @@ func (m *matrix) below(q *panel, i int, last bool) {
 		m.f.text(p.Symbol, at, y, style)
 		if unit := parenthesised(p.Unit); unit.measure(noteSize) < q.w()+matrixGap {
 			m.f.text(unit, at, y-9, textStyle{size: noteSize, ink: inkText, h: 0.5})
+		} else {
+			m.unitsLeft = append(m.unitsLeft, append(append(append(Label{}, p.Symbol...), Plain(" in ")...), p.Unit...))
 		}
 	}
 }
@@ -283,7 +290,9 @@ func (m *matrix) key() {
 	if n == 1 {
 		return
 	}
-	x := m.panel(1, 0, axis{}, axis{}).x0 + 6
+	const height = 62. // of all rows and the margin
+	col := min(n-1, int(math.Ceil(height/(m.h+matrixGap))))
+	x := m.panel(col, 0, axis{}, axis{}).x0 + 6
 	y := m.f.h - 14
 	f := m.f
 	note := textStyle{size: noteSize, ink: inkText, v: 0.5}
@@ -297,6 +306,9 @@ func (m *matrix) key() {
 		f.fill([]line{r.outline()}, fillInk(0), 0.42)
 	})
 	swatch("95%", func(r rect) { f.fill([]line{r.outline()}, fillInk(0), 0.28) })
+	for i, u := range m.unitsLeft {
+		f.text(u, x+60, m.f.h-14-11*float64(i), note)
+	}
 	prior, best := false, false
 	for _, p := range m.in.Parameters {
 		prior, best = prior || p.PriorX != nil, best || finite(p.Best)

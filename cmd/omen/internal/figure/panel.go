@@ -10,8 +10,9 @@ type axis struct {
 	log    bool
 	title  Label
 	ticks  []tick
-	bare   bool // no tick labels
-	turned bool // tick labels below stand upright
+	bare   bool    // no tick labels
+	turned bool    // tick labels below stand upright
+	room   float64 // least width for tick labels at the left
 }
 
 func (a axis) fraction(v float64) float64 {
@@ -147,7 +148,7 @@ func (c *canvas) ticksLeft(p *panel, k pen) {
 
 // leftOfAxis is the room that ticks and their labels take at the left.
 func leftOfAxis(a axis) float64 {
-	w := 0.0
+	w := a.room
 	if !a.bare {
 		for _, t := range a.ticks {
 			w = max(w, t.label.measure(tickSize))

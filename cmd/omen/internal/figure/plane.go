@@ -82,7 +82,7 @@ func (s *Set) outlines(ex, ey density.Edges) (outlines, error) {
 			return outlines{}, err
 		}
 	}
-	return outlines{s.Name, d.Region(0.68), d.Region(0.95), s.Best}, nil
+	return outlines{s.Name.shorten(100, titleSize), d.Region(0.68), d.Region(0.95), s.Best}, nil
 }
 
 // panel lays the axes out around the regions.

@@ -11,11 +11,12 @@ import (
 // What a referee measures: all text lies on the page and is large enough, no text covers another, the width is that
 // of the journal.
 func TestLegible(t *testing.T) {
-	for _, d := range drawings {
+	for _, d := range append(drawings[:len(drawings):len(drawings)], stress()...) {
 		f, err := d.draw()
 		if err != nil {
-			t.Fatal(err)
+			t.Fatalf("%s: %v", d.name, err)
 		}
+		show(t, d.name, f)
 		if f.w != Column.points() && f.w != Page.points() {
 			t.Errorf("%s: width %g pt", d.name, f.w)
 		}

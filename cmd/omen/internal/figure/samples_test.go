@@ -3,6 +3,7 @@ package figure
 import (
 	"math"
 	"math/rand/v2"
+	"strconv"
 
 	"omen/cmd/omen/internal/density"
 )
@@ -349,4 +350,42 @@ func whiskers() Whiskers {
 		w.Quantities = append(w.Quantities, q)
 	}
 	return w
+}
+
+// stress are inputs at the limits of what fits.
+func stress() []drawing {
+	long := "a run with a rather long name, cut at z > 0.023 and without the survey"
+	wide := whiskers()
+	wide.Runs[1] = Plain(long)
+	for i := range 3 {
+		wide.Quantities = append(wide.Quantities, wide.Quantities[i])
+	}
+	six := planeThree()
+	six.Sets[1].Name = Plain(long)
+	for i := range 3 {
+		six.Sets = append(six.Sets, cloud("run "+strconv.Itoa(i), 2000, 0.3+0.1*float64(i), 0.7, 0.05, 0.1, 0.5, uint64(30+i)))
+	}
+	bao := hubbleMany()
+	bao.Supernovae = nil
+	crowd := hubbleFew()
+	crowd.Supernovae[0].Name = Plain(long + " " + long)
+	fates := fatesBoth()
+	fates.Rows[0] = Plain(long)
+	fates.Series[0].Values[1] = Probability{P: 1}
+	fates.Series[0].Values[2] = Probability{P: 0}
+	fates.Series[1].Name = Plain(long)
+	out := []drawing{
+		{"whiskers-wide", func() (*Figure, error) { return DrawWhiskers(wide, Column) }},
+		{"plane-six", func() (*Figure, error) { return DrawPlane(six, Column) }},
+		{"hubble-bao", func() (*Figure, error) { return DrawHubble(bao, Column) }},
+		{"hubble-long", func() (*Figure, error) { return DrawHubble(crowd, Column) }},
+		{"fates-long", func() (*Figure, error) { return DrawFates(fates, Column) }},
+	}
+	for k := 1; k <= mostParameters; k++ {
+		for _, w := range []Width{Column, Page} {
+			out = append(out, drawing{"marginals-stress-" + strconv.Itoa(k) + "-" + strconv.Itoa(int(w)),
+				func() (*Figure, error) { return DrawMarginals(parameters(k, 1000), w) }})
+		}
+	}
+	return out
 }

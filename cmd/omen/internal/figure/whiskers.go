@@ -26,7 +26,7 @@ type Whiskers struct {
 	Unfinished bool
 }
 
-// DrawWhiskers draws one column per parameter and one row per run: the median as a tick, a thick bar for 68% and
+// DrawWhiskers draws one panel per parameter with one row per run: the median as a tick, a thick bar for 68% and
 // a thin one for 95%.
 func DrawWhiskers(in Whiskers, width Width) (*Figure, error) {
 	if len(in.Runs) == 0 || len(in.Quantities) == 0 {
@@ -37,31 +37,72 @@ func DrawWhiskers(in Whiskers, width Width) (*Figure, error) {
 			return nil, fmt.Errorf("figure: %s: %d constraints for %d runs", q.Symbol, len(q.Runs), len(in.Runs))
 		}
 	}
-	left := 0.0
-	for _, r := range in.Runs {
-		left = max(left, r.measure(tickSize))
-	}
-	left = min(left, 0.4*width.points()) + 18
-	const gap, pitch = 12., 15.
-	n := float64(len(in.Quantities))
-	w := (width.points() - left - 8 - (n-1)*gap) / n
-	bottom := belowAxis(axis{title: Plain("x")}) + 1
-	if !in.unitsFit(w + gap) {
-		bottom += 9
-	}
-	h := pitch * float64(len(in.Runs))
-	f := newFigure("Constraints of each run", width, bottom+h+10)
-	for i, r := range in.Runs {
-		y := bottom + h - pitch*(float64(i)+0.5)
-		f.marks([]pt{{left - 12, y}}, markers(i), 3.8, lineInk(i))
-		f.text(r, left-17, y, textStyle{size: tickSize, ink: inkText, h: 1, v: 0.5})
-	}
+	l := in.lay(width.points())
+	rows := (len(in.Quantities) + l.columns - 1) / l.columns
+	f := newFigure("Constraints of each run", width, float64(rows)*(l.h+l.below)+9)
 	for k, q := range in.Quantities {
-		x0 := left + float64(k)*(w+gap)
-		q.draw(f, rect{x0, bottom, x0 + w, bottom + h}, pitch, gap)
+		row, col := k/l.columns, k%l.columns
+		y0 := l.below + float64(rows-1-row)*(l.h+l.below)
+		if col == 0 {
+			in.names(f, l, y0)
+		}
+		x0 := l.left + float64(col)*(l.w+whiskerGap)
+		q.draw(f, rect{x0, y0, x0 + l.w, y0 + l.h}, l.pitch)
 	}
 	f.stampUnfinished(in.Unfinished)
 	return f, nil
+}
+
+// whiskerLayout places the panels: columns of them in a row, w × h points, below the room for axes.
+type whiskerLayout struct {
+	left, w, h, pitch, below float64
+	columns                  int
+	lines                    [][]Label // names of the runs
+}
+
+const whiskerGap = 12.
+
+// lay makes as many columns as can be read, and rows of them if that is not all.
+func (in *Whiskers) lay(width float64) whiskerLayout {
+	l := whiskerLayout{pitch: 15}
+	for _, r := range in.Runs {
+		lines := r.wrap(0.3*width, tickSize)
+		for _, v := range lines {
+			l.left = max(l.left, v.measure(tickSize))
+		}
+		if len(lines) > 1 {
+			l.pitch = 20
+		}
+		l.lines = append(l.lines, lines)
+	}
+	l.left += 20
+	l.h = l.pitch * float64(len(in.Runs))
+	n := len(in.Quantities)
+	room := width - l.left - 8 + whiskerGap
+	most := max(1, min(n, int(room/(42+whiskerGap))))
+	rows := (n + most - 1) / most
+	l.columns = (n + rows - 1) / rows
+	l.w = room/float64(l.columns) - whiskerGap
+	l.below = belowAxis(axis{title: Plain("x")}) + 1
+	if !in.unitsFit(l.w + whiskerGap) {
+		l.below += 9
+	}
+	if rows > 1 {
+		l.below += 6
+	}
+	return l
+}
+
+// names writes the names of the runs at the left of a row of panels.
+func (in *Whiskers) names(f *Figure, l whiskerLayout, y0 float64) {
+	for i, lines := range l.lines {
+		y := y0 + l.h - l.pitch*(float64(i)+0.5)
+		f.marks([]pt{{l.left - 12, y}}, markers(i), 3.8, lineInk(i))
+		for k, v := range lines {
+			at := y + 8.6*(float64(len(lines)-1)/2-float64(k))
+			f.text(v, l.left-17, at, textStyle{size: tickSize, ink: inkText, h: 1, v: 0.5})
+		}
+	}
 }
 
 func (in *Whiskers) unitsFit(w float64) bool {
@@ -73,7 +114,7 @@ func (in *Whiskers) unitsFit(w float64) bool {
 	return true
 }
 
-func (q *Quantity) draw(f *Figure, r rect, pitch, gap float64) {
+func (q *Quantity) draw(f *Figure, r rect, pitch float64) {
 	lo, hi := math.Inf(1), math.Inf(-1)
 	for _, c := range q.Runs {
 		if finite(c.Median) {
@@ -91,27 +132,36 @@ func (q *Quantity) draw(f *Figure, r rect, pitch, gap float64) {
 		f.segment(at, r.y0, at, r.y1, pen{ink: inkRule, width: 0.35})
 	}
 	for i, c := range q.Runs {
-		y := r.y1 - pitch*(float64(i)+0.5)
-		if !finite(c.Median) {
-			f.text(Plain("not constrained"), (r.x0+r.x1)/2, y, textStyle{size: noteSize, ink: inkSoft, h: 0.5, v: 0.5, halo: true})
-			continue
-		}
-		f.segment(p.at(c.Lo95, 0).x, y, p.at(c.Hi95, 0).x, y, pen{ink: lineInk(i), width: 0.7})
-		f.segment(p.at(c.Lo68, 0).x, y, p.at(c.Hi68, 0).x, y, pen{ink: lineInk(i), width: 3})
-		at := p.at(c.Median, 0).x
-		f.segment(at, y-4, at, y+4, pen{ink: inkPaper, width: 2.4})
-		f.segment(at, y-4, at, y+4, pen{ink: lineInk(i), width: 1.1})
+		f.constraint(p, c, r.y1-pitch*(float64(i)+0.5), i)
 	}
 	f.segment(r.x0, r.y0, r.x1, r.y0, pen{ink: inkText, width: axisWidth})
 	f.ticksBelow(p, pen{ink: inkText, width: axisWidth})
-	q.name(f, p, gap)
+	q.name(f, p)
+}
+
+// constraint draws one row.
+func (f *Figure) constraint(p *panel, c Constraint, y float64, run int) {
+	if !finite(c.Median) {
+		none := Plain("not constrained")
+		if none.measure(noteSize) > p.w()+whiskerGap-4 {
+			none = Plain("none")
+		}
+		f.text(none, (p.x0+p.x1)/2, y, textStyle{size: noteSize, ink: inkSoft, h: 0.5, v: 0.5, halo: true})
+		return
+	}
+	k := lineInk(run)
+	f.segment(p.at(c.Lo95, 0).x, y, p.at(c.Hi95, 0).x, y, pen{ink: k, width: 0.7})
+	f.segment(p.at(c.Lo68, 0).x, y, p.at(c.Hi68, 0).x, y, pen{ink: k, width: 3})
+	at := p.at(c.Median, 0).x
+	f.segment(at, y-4, at, y+4, pen{ink: inkPaper, width: 2.4})
+	f.segment(at, y-4, at, y+4, pen{ink: k, width: 1.1})
 }
 
 // name writes symbol and unit below, on two lines if need be.
-func (q *Quantity) name(f *Figure, p *panel, gap float64) {
+func (q *Quantity) name(f *Figure, p *panel) {
 	s := textStyle{size: titleSize, ink: inkText, h: 0.5}
 	at, y := (p.x0+p.x1)/2, p.y0-belowAxis(axis{title: q.Symbol})+2.5
-	if both := WithUnit(q.Symbol, q.Unit); both.measure(titleSize) <= p.w()+gap {
+	if both := WithUnit(q.Symbol, q.Unit); both.measure(titleSize) <= p.w()+whiskerGap {
 		f.text(both, at, y, s)
 		return
 	}
