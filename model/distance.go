@@ -28,12 +28,12 @@ func (e *expansion) comoving(y float64) float64 {
 func transverse(ok, chi float64) float64 { return chi * sinc(ok*chi*chi) }
 
 // sinc is sinh(√u)/√u for u > 0 and sin(√-u)/√-u for u < 0, which are one entire function,
-// Σ uⁿ/(2n+1)!: the series is summed for |u| ≤ 1, where its ten terms are exact to rounding, so nothing happens at u = 0.
-// NaN for u < -π².
+// Σ uⁿ/(2n+1)!: the series is summed for |u| ≤ 1, where nine terms are exact to rounding, so nothing happens
+// at u = 0. NaN for u < -π².
 func sinc(u float64) float64 {
 	switch {
 	case math.Abs(u) <= 1:
-		return 1 + u/6*(1+u/20*(1+u/42*(1+u/72*(1+u/110*(1+u/156*(1+u/210*(1+u/272*(1+u/342))))))))
+		return 1 + u/6*(1+u/20*(1+u/42*(1+u/72*(1+u/110*(1+u/156*(1+u/210*(1+u/272)))))))
 	case u > 0:
 		r := math.Sqrt(u)
 		return math.Sinh(r) / r

@@ -19,10 +19,10 @@ func (e *expansion) between(s1, s2 float64) float64 {
 }
 
 // sinceBigBang is the time from the big bang to the scale factor a, in a universe that had one. If dark energy is
-// or nearly is a cosmological constant the integral runs over the conformal time η that a universe of this
-// matter and radiation alone would have, a = √Or η + Om η²/4, in which the integrand is smooth down to η = 0; with
-// w0+wa ≤ -2/3 dark energy adds a term a⁻ᵖ with p ≤ 1 to the a⁻³ of matter. For other dark energy the integral runs
-// over ln a in steps, and what is left is a pure power law.
+// or nearly is a cosmological constant the integral runs over the conformal time η that a universe of this matter
+// and radiation alone would have, a = √Or η + Om η²/4, in which the integrand is smooth down to η = 0; with
+// w0+wa ≤ -2/3 dark energy adds a term a⁻ᵖ with p ≤ 1 to the a⁻³ of matter. For other dark energy the integral
+// runs over ln a in steps, and what is left is a pure power law.
 func (e *expansion) sinceBigBang(a float64) float64 {
 	if e.om >= 0 && e.or >= 0 && e.om+e.or > 0 && (e.lambda || e.p <= 1) {
 		return whole.integrate(e.conformalRate, 0, 2*a/(math.Sqrt(e.or+e.om*a)+math.Sqrt(e.or)))
@@ -137,7 +137,8 @@ func (u Universe) TimeAt(a float64) float64 {
 }
 
 // Turnaround is the scale factor at which the expansion of a universe that recollapses stops, and the time of
-// it in Gyr since the big bang. Both are NaN if it does not; the time alone is, if there was no big bang.
+// it in Gyr since the big bang. Both are NaN if it does not, or not before a = 1e150; the time alone is, if there
+// was no big bang.
 func (u Universe) Turnaround() (a, t float64) {
 	if u.Future() != Recollapse {
 		return math.NaN(), math.NaN()
