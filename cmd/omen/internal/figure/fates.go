@@ -163,10 +163,10 @@ func (v Probability) label() Label {
 	return scientific(v.P, 2)
 }
 
-// decimalsOf shows two digits of an error, or one from 0.355 of a power of ten on (Particle Data Group, Review of
-// Particle Physics, Introduction, §5.3).
+// decimalsOf shows two digits of an error whose leading ones are 100 to 354 or, rounded up, 950 to 999, and one in
+// between (Particle Data Group, Review of Particle Physics, Introduction, §5.3).
 func decimalsOf(err float64) int {
-	e := math.Floor(math.Log10(err))
+	e := math.Floor(math.Log10(err) + 1e-12)
 	d := int(-e)
 	if err/math.Pow(10, e) < 3.55 {
 		d++

@@ -12,11 +12,11 @@ import (
 // need not wait for a quantity that is a little slower than all parameters.
 const slack = 1.5
 
-// enoughSteps is how many steps of a converged sample are looked at, at least. The
-// shortest that passes is some 25 autocorrelation times long, so that its steps
-// still repeat each other; of a longer one, four draws are taken for every
-// effective one that is asked for.
-const enoughSteps = 256
+// enoughSteps is how many steps of a converged sample are looked at, at least;
+// otherwise one draw for every effective one that is asked for. That loses a
+// quarter of the information (AR(1) series at its goal), for which slack leaves
+// room, and keeps the look from costing more than all other checks.
+const enoughSteps = 64
 
 // Enough tells whether a sample is enough for everything that is reported beyond
 // the parameters themselves: the Monte Carlo error of every derived quantity is
@@ -25,7 +25,7 @@ const enoughSteps = 256
 func Enough(j *job.Job, threads int) func(sampler.View) bool {
 	goal := float64(j.Run.Sampling.EffectiveSamples)
 	return func(v sampler.View) bool {
-		steps := max(enoughSteps, int(4*goal)/(v.Ensembles()*v.Walkers()))
+		steps := max(enoughSteps, int(goal)/(v.Ensembles()*v.Walkers()))
 		d := derive(j.Space, v.Thin(max(1, v.Steps()/steps)), threads)
 		for _, draws := range d.draws {
 			if sampler.ESS(draws) < goal/(slack*slack) { // MCSE = sd/√ESS; NaN of a constant passes
