@@ -6,8 +6,12 @@ import (
 	"gonum.org/v1/gonum/integrate/quad"
 )
 
-// maxDepth bounds how often a panel is halved: 2⁻⁵⁰ of a panel is the resolution of its variable.
-const maxDepth = 50
+// maxDepth bounds how often a panel is halved: 2⁻⁵⁰ of a panel is the resolution of its variable. panelBudget
+// bounds into how many; it is not reached unless a bound on the rounding error is wrong.
+const (
+	maxDepth    = 50
+	panelBudget = 2000
+)
 
 // rule is a Gauss-Legendre rule on [-1, 1] that knows the Legendre coefficients of its integrand: c_m is the sum
 // of (m+1/2) w_k P_m(x_k) f(x_k).
@@ -142,7 +146,7 @@ type integrand func(x float64) (v, noise float64)
 // rounding. Panels are halved until their Legendre coefficients have died away or are noise, so the cost grows
 // with the logarithm of the distance to the nearest singularity. NaN if f is NaN at a node.
 func (r *rule) integrate(f integrand, a, b float64) float64 {
-	budget := 2000 // never reached unless a bound on the noise is wrong
+	budget := panelBudget
 	return r.bisect(f, a, b, maxDepth, &budget)
 }
 

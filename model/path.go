@@ -128,7 +128,8 @@ func (p *Path) Fill(u Universe, dm, dh []float64) {
 func (p *Path) fillPanel(e *expansion, g *pathPanel, chi float64, valid int, dm []float64) float64 {
 	if g.last > valid || g.last == valid && valid < len(p.y) {
 		// The bounce is in this panel, or near: go no further than the last redshift before it.
-		return p.refine(e, g.lo, p.y[valid-1], chi, g.first, valid, dm, maxDepth)
+		d := descent{p, e, dm, panelBudget}
+		return d.refine(g.lo, p.y[valid-1], chi, g.first, valid, maxDepth)
 	}
 	var f [order]float64
 	for k := range f {
@@ -136,7 +137,8 @@ func (p *Path) fillPanel(e *expansion, g *pathPanel, chi float64, valid int, dm 
 	}
 	mean := panel.mean(f[:])
 	if !(panel.omitted(f[:]) <= denseTail*mean) {
-		return p.refine(e, g.lo, g.hi, chi, g.first, g.last, dm, maxDepth)
+		d := descent{p, e, dm, panelBudget}
+		return d.refine(g.lo, g.hi, chi, g.first, g.last, maxDepth)
 	}
 	for i := g.first; i < g.last; i++ {
 		w := &p.weight[i]
@@ -148,42 +150,53 @@ func (p *Path) fillPanel(e *expansion, g *pathPanel, chi float64, valid int, dm 
 	return chi + mean*(g.hi-g.lo)
 }
 
-// refine does the work of fillPanel between lo and hi for the redshifts first … last-1, halving the interval
-// until the expansion converges.
-func (p *Path) refine(e *expansion, lo, hi, chi float64, first, last int, dm []float64, depth int) float64 {
+// descent is the halving of one panel of a Path whose expansion has not converged.
+type descent struct {
+	p      *Path
+	e      *expansion
+	dm     []float64
+	budget int // panels that may still be evaluated
+}
+
+// refine does the work of fillPanel between lo and hi for the redshifts first … last-1.
+func (d *descent) refine(lo, hi, chi float64, first, last, depth int) float64 {
 	mid, half := (lo+hi)/2, (hi-lo)/2
 	var f [order]float64
-	worst := 0.0
+	noise := 0.0
 	for k, t := range panel.x {
 		y := mid + half*t
 		x := math.Exp(y)
-		v, noise := e.inverse(x, y, 1/x)
+		v, n := d.e.inverse(x, y, 1/x)
 		f[k] = x * v
-		worst = max(worst, x*noise)
+		noise = max(noise, x*n)
 	}
-	mean := panel.mean(f[:])
-	tail := panel.omitted(f[:]) - worst
+	mean, omitted := panel.mean(f[:]), panel.omitted(f[:])-noise
+	d.budget--
 	// Without a redshift inside only the integral over the panel matters.
-	good := tail <= denseTail*mean || first == last && tail <= integralTail*mean
-	if !good && depth > 0 && tail == tail {
-		cut := first + sort.SearchFloat64s(p.y[first:last], mid)
-		chi = p.refine(e, lo, mid, chi, first, cut, dm, depth-1)
-		return p.refine(e, mid, hi, chi, cut, last, dm, depth-1)
+	good := omitted <= denseTail*mean || first == last && omitted <= integralTail*mean
+	if !good && depth > 0 && d.budget > 0 && omitted == omitted {
+		cut := first + sort.SearchFloat64s(d.p.y[first:last], mid)
+		chi = d.refine(lo, mid, chi, first, cut, depth-1)
+		return d.refine(mid, hi, chi, cut, last, depth-1)
 	}
 	if first < last {
-		var c, q [order]float64
-		panel.series(&f, &c)
-		for i := first; i < last; i++ {
-			above := (p.y[i] - lo) / half
-			antiderivatives(above, &q)
-			sum := 0.0
-			for m := range q {
-				sum += c[m] * q[m]
-			}
-			dm[i] = chi + half*sum
-		}
+		d.readOff(&f, lo, half, chi, first, last)
 	}
 	return chi + mean*(hi-lo)
+}
+
+// readOff writes the distances to the redshifts first … last-1 of a panel that has converged.
+func (d *descent) readOff(f *[order]float64, lo, half, chi float64, first, last int) {
+	var c, q [order]float64
+	panel.series(f, &c)
+	for i := first; i < last; i++ {
+		antiderivatives((d.p.y[i]-lo)/half, &q)
+		sum := 0.0
+		for m := range q {
+			sum += c[m] * q[m]
+		}
+		d.dm[i] = chi + half*sum
+	}
 }
 
 // fillHubble writes 1/E.

@@ -5,6 +5,7 @@ import (
 	"math"
 	"math/rand/v2"
 	"os"
+	"sort"
 	"strconv"
 	"strings"
 	"testing"
@@ -210,18 +211,18 @@ func TestPathWork(t *testing.T) {
 		u := lambdaCDM(.3, cptNoBigBang(.3)-gap)
 		for _, w := range []float64{-1, -1 + 1e-15} {
 			u.W0 = w
-			evaluations := 0
 			e := u.expansion()
-			y := math.Min(7, e.reach())
-			whole.integrate(func(y float64) (v, noise float64) {
-				evaluations++
+			end := math.Min(7, e.reach()*(1-1e-15))
+			budget := panelBudget
+			whole.bisect(func(y float64) (v, noise float64) {
 				x := math.Exp(y)
 				return e.inverse(x, y, 1/x)
-			}, 0, y)
-			if evaluations > 200*order {
-				t.Errorf("OL %v beyond the boundary, w %v: %d evaluations", -gap, w, evaluations)
+			}, 0, end, maxDepth, &budget)
+			d := descent{p, &e, dm, panelBudget}
+			d.refine(0, end, 0, 0, sort.SearchFloat64s(p.y, end), maxDepth)
+			if used := 2*panelBudget - budget - d.budget; used > 400 {
+				t.Errorf("OL %v from the boundary, w %v: %d panels", -gap, w, used)
 			}
-			p.Fill(u, dm, nil)
 		}
 	}
 }

@@ -161,6 +161,9 @@ func TestAgesClosedForm(t *testing.T) {
 	near(t, "closed 1.5", lambdaCDM(1.5, 0).AgeToday(), .6112592541, 1e-10)
 	near(t, "empty", lambdaCDM(0, 0).AgeToday(), 1, 1e-14)
 	near(t, "radiation", Universe{Or: 1, H0: HubbleTime1, W0: -1}.AgeToday(), 0.5, 1e-14)
+	for _, w := range []float64{-.9, -.5, 0, .3, 1} {
+		near(t, "dark energy alone", Universe{OL: 1, H0: HubbleTime1, W0: w}.AgeToday(), 2/(3*(1+w)), 1e-13)
+	}
 	rng := rand.New(rand.NewPCG(7, 8))
 	for range 300 {
 		om := 0.02 + 0.9*rng.Float64()
