@@ -43,6 +43,16 @@ func TestBurnInCoversAKnownTransient(t *testing.T) {
 	}
 }
 
+// A start that is too wide in one parameter of many hardly moves the
+// log-density: the parameter's squares must see it.
+func TestBurnInSeesWidthWithoutLogDensity(t *testing.T) {
+	_, x := transient(1, 0.8, 0, 10, 50, 2000)
+	quiet, _ := transient(2, 0.8, 0, 1, 1, 2000)
+	if drop := burnIn(quiet, []Draws{x}); drop < 2*60 {
+		t.Errorf("discards %d of a relaxation over 50 steps from ten times the width", drop)
+	}
+}
+
 // A chain that starts in equilibrium loses its five autocorrelation times and
 // rarely more.
 func TestBurnInOfAStationaryChain(t *testing.T) {

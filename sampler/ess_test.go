@@ -100,6 +100,14 @@ func TestReweighting(t *testing.T) {
 	near(t, "MCSE", s.MCSE, 0.0045, 0.001)
 }
 
+// Weights multiply: a condition on reweighted draws keeps both.
+func TestWeightsMultiply(t *testing.T) {
+	d := NewDraws(1, []float64{1, 2, 4})
+	w := d.Weighted(NewDraws(1, []float64{1, 0, 3})).Weighted(NewDraws(1, []float64{6, 1, 1}))
+	mean, _, _ := meanVariance(w)
+	near(t, "mean", mean, (6*1+3*4)/9.0, 1e-15)
+}
+
 // A quantity that is NaN for some draws can be summarised where it is not.
 func TestConditionalSummary(t *testing.T) {
 	d := NewDraws(4, normals(8, 20000), normals(9, 20000))

@@ -29,7 +29,7 @@ func Maximise(d Density, lo, hi []float64, seed uint64) (x []float64, logp float
 	}
 	var best peak
 	for i, u := range starts {
-		p := b.climb(u, 1e-3)
+		p := b.climb(u, 0.1)
 		if i == 0 || p.logp > best.logp {
 			best = p
 		}
@@ -156,7 +156,7 @@ func simplex(f Density, u []float64, size, tolerance float64) peak {
 		optimize.Problem{Func: func(u []float64) float64 { return -f(u) }},
 		u,
 		&optimize.Settings{
-			Converger:       &optimize.FunctionConverge{Absolute: tolerance, Iterations: 20 * dim},
+			Converger:       &optimize.FunctionConverge{Absolute: tolerance, Iterations: 10 * dim},
 			FuncEvaluations: 2000 * dim,
 		},
 		&optimize.NelderMead{SimplexSize: size},
@@ -170,26 +170,24 @@ func simplex(f Density, u []float64, size, tolerance float64) peak {
 }
 
 // polish restarts the simplex in coordinates v, u = best + S·v, in which the
-// density falls by about ½ per unit in every direction, until a restart gains
-// nothing.
+// density falls by about ½ per unit in every direction, from a size of half a
+// unit; where that gains nothing, from an eighth of it, until a thousandth gains
+// nothing either.
 func (b *folded) polish(best peak) peak {
 	dim := len(best.u)
 	lo, hi := make([]float64, dim), make([]float64, dim)
-	for range 50 {
+	for rounds, size := 0, 0.5; size > 5e-4 && rounds < 100; rounds++ {
 		for i, u := range best.u {
 			lo[i], hi[i] = u-math.Pi/2, u+math.Pi/2
 		}
-		root := spread(b.logp, best.u, lo, hi)
-		origin := best
-		p := simplex(func(v []float64) float64 {
-			return b.logp(displaced(origin.u, root, v))
-		}, make([]float64, dim), 0.5, 1e-10)
-		gain := p.logp - best.logp
-		if gain > 0 {
-			best = peak{displaced(origin.u, root, p.u), p.logp}
+		root, before := spread(b.logp, best.u, lo, hi), best
+		from := func(v []float64) float64 { return b.logp(displaced(before.u, root, v)) }
+		p := simplex(from, make([]float64, dim), size, 1e-10)
+		if p.logp > best.logp {
+			best = peak{displaced(before.u, root, p.u), p.logp}
 		}
-		if !(gain > 1e-8) {
-			break
+		if !(best.logp > before.logp+1e-8) {
+			size /= 8
 		}
 	}
 	return best

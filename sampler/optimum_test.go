@@ -41,6 +41,7 @@ func TestMaximise(t *testing.T) {
 		{"ridge", ridge().new(), ridge().lo, ridge().hi, []float64{0, 0}, 0},
 		{"valley in 2", rosenbrock, fill(2, -5), fill(2, 5), fill(2, 1), 0},
 		{"valley in 4", rosenbrock, fill(4, -2), fill(4, 2), fill(4, 1), 0},
+		{"valley in 6", rosenbrock, fill(6, 0.2), fill(6, 8), fill(6, 1), 0},
 		{"narrow in 6", func(x []float64) float64 {
 			sum := 0.0
 			for i := range x {
@@ -62,6 +63,11 @@ func TestMaximise(t *testing.T) {
 			b := 1 - ((x[0]-5)*(x[0]-5)+x[1]*x[1])/2
 			return max(a, b)
 		}, fill(2, -10), fill(2, 10), []float64{5, 0}, 1},
+		{"the higher and narrower of two", func(x []float64) float64 {
+			a := -((x[0]+5)*(x[0]+5) + x[1]*x[1]) / 32
+			b := 1 - 2*((x[0]-6)*(x[0]-6)+x[1]*x[1])
+			return max(a, b)
+		}, fill(2, -10), fill(2, 10), []float64{6, 0}, 1},
 		{"a plateau", func(x []float64) float64 { return -max(0, math.Hypot(x[0], x[1])-1) }, fill(2, -9), fill(2, 9), nil, 0},
 		{"flat", func([]float64) float64 { return -3 }, fill(3, -1), fill(3, 1), nil, -3},
 		{"a direction without information", func(x []float64) float64 { return -1e4 * (x[0] - 0.5) * (x[0] - 0.5) }, fill(2, 0), []float64{1, 100}, nil, 0},
@@ -130,5 +136,15 @@ func TestMaximiseIsFrugal(t *testing.T) {
 		if n > 4000 {
 			t.Errorf("%s: %d evaluations", g.name, n)
 		}
+	}
+}
+
+// The starts of the climbs are the highest places, but not all on one hill.
+func TestSeparateStarts(t *testing.T) {
+	at := func(x, y float64) []float64 { return []float64{math.Asin(x), math.Asin(y)} }
+	found := []peak{{at(0, 0), 9}, {at(0.1, 0.1), 8}, {at(0.1, -0.9), 7}, {at(-0.3, 0.3), 6}, {at(0.9, 0), 5}, {at(0.6, 0), 4}, {at(-0.9, 0), 3}, {at(0.9, 0.9), 2}}
+	want := [][]float64{at(0, 0), at(0.1, -0.9), at(0.9, 0), at(-0.9, 0)}
+	if got := separate(found); !slices.EqualFunc(got, want, slices.Equal) {
+		t.Errorf("picked %v, want %v", got, want)
 	}
 }

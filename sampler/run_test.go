@@ -24,6 +24,9 @@ func (r *recorder) Advanced(step int, rows View) error {
 	if r.moves == nil {
 		r.moves = map[int]int{}
 	}
+	if rows.Steps() > 0 && rows.After(0).Accepted(0) != -1 {
+		return errors.New("a part of the rows claims to know how many moves were accepted")
+	}
 	for i := range rows.Steps() {
 		r.moves[rows.Number(i)] = rows.Accepted(i)
 	}

@@ -119,6 +119,32 @@ func TestScatterInAWedge(t *testing.T) {
 	}
 }
 
+// A best fit in the corner of a box: the walkers are mirrored into it rather
+// than drawn until they happen to fall there, one in 64.
+func TestScatterInACornerIsFrugal(t *testing.T) {
+	n := 0
+	d := func(x []float64) float64 {
+		n++
+		sum := 0.0
+		for _, v := range x {
+			sum -= v // rises for ever outside the box
+		}
+		return sum
+	}
+	x, err := Scatter(d, fill(6, 0), fill(6, 0), fill(6, 100), 32, 1, 0)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for k := 0; k < len(x); k += 6 {
+		if !inside(x[k:k+6], fill(6, 0), fill(6, 100)) {
+			t.Errorf("a walker starts at %v, outside the box", x[k:k+6])
+		}
+	}
+	if n > 1000 {
+		t.Errorf("%d evaluations", n)
+	}
+}
+
 func TestScatterErrors(t *testing.T) {
 	spike := func(x []float64) float64 {
 		if x[0] == 0.5 {
