@@ -7,7 +7,8 @@ import "math"
 //
 // ä has the sign of OL L D/G - 1, with L = -(1+3w(a)) = b a - q, G = 2Or a⁻² + Om a⁻¹ and q, b, D as in
 // zeros.go. The derivative of that ratio vanishes at the roots of the cubic
-// (L² + b a)(2Or + Om a) + L(4Or + Om a), between which it is monotonic.
+// (L² + b a)(2Or + Om a) + L(4Or + Om a), between which it is monotonic. They matter to universes that bounced,
+// decelerated and accelerate again, which takes much radiation and a negative OL.
 func (u Universe) AccelerationOnset() float64 {
 	e := u.expansion()
 	accelerates := func(a float64) float64 {
@@ -19,11 +20,12 @@ func (u Universe) AccelerationOnset() float64 {
 	}
 	start := e.pastZero()
 	hi := 1.0
-	for _, a := range e.accelerationCuts(start) {
-		if accelerates(a) <= 0 {
-			return 1/signChange(accelerates, a, hi) - 1
+	cuts, n := e.accelerationCuts(start)
+	for i := n - 1; i >= 0; i-- {
+		if accelerates(cuts[i]) <= 0 {
+			return 1/signChange(accelerates, cuts[i], hi) - 1
 		}
-		hi = a
+		hi = cuts[i]
 	}
 	lo := max(start, 1e-30)
 	if accelerates(lo) > 0 {
@@ -32,28 +34,17 @@ func (u Universe) AccelerationOnset() float64 {
 	return 1/signChange(accelerates, lo, hi) - 1
 }
 
-// accelerationCuts are the scale factors in (start, 1), descending, between which the sign of ä changes at
-// most once. The zero of L is one of them, for a universe without matter. Unused places hold 1.
-func (e *expansion) accelerationCuts(start float64) [4]float64 {
+// accelerationCuts are the scale factors in (start, 1), ascending, between which the sign of ä changes at most
+// once.
+func (e *expansion) accelerationCuts(start float64) ([3]float64, int) {
 	q, b, g, m := e.p-2, e.b, 2*e.or, e.om
 	// L² + ba = q² + (b-2qb)a + b²a², times g + m a, plus (ba-q)(2g + m a).
-	roots, n := cubicRoots([4]float64{
+	return cubicRoots([4]float64{
 		q*q*g - 2*q*g,
 		q*q*m + (b-2*q*b)*g + 2*b*g - q*m,
 		(b-2*q*b)*m + b*b*g + b*m,
 		b * b * m,
 	}, start, 1)
-	cuts := [4]float64{1, 1, 1, 1}
-	for i := range n {
-		cuts[n-1-i] = roots[i]
-	}
-	if a := q / b; a > start && a < 1 {
-		cuts[n] = a
-		for i := n; i > 0 && cuts[i-1] < cuts[i]; i-- {
-			cuts[i-1], cuts[i] = cuts[i], cuts[i-1]
-		}
-	}
-	return cuts
 }
 
 // signChange finds by bisection in ln a where f, not positive at lo and positive at hi, changes sign.

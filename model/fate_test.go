@@ -90,6 +90,9 @@ func TestBoundariesOfHeavyUniverses(t *testing.T) {
 				t.Errorf("Om %v OL %v: %v, want %v", om, c.ol, got, c.want)
 			}
 		}
+		if got := lambdaCDM(om, cptNoBigBang(om)+1e-6*om).Future(); got != Accelerating {
+			t.Errorf("Om %v: a bounce in the past leads to %v", om, got)
+		}
 	}
 }
 
@@ -112,6 +115,8 @@ func TestFate(t *testing.T) {
 		{"de Sitter had no beginning", Universe{OL: 1, W0: -1}, NoBigBang},
 		{"empty with a constant", Universe{OL: .5, W0: -1}, Accelerating},
 		{"any negative constant recollapses", Universe{Om: .1, OL: -1e-6, W0: -1}, Recollapse},
+		{"loitering line, a = 1.5 ahead, exact in binary", Universe{Om: 6.75, OL: 1, W0: -1}, Decelerating},
+		{"loitering line, a = 0.5 behind, exact in binary", Universe{Om: .5, OL: 2, W0: -1}, NoBigBang},
 		{"bounce", Universe{Om: .1, OL: 1.5, W0: -1}, NoBigBang},
 		{"radiation only, closed", Universe{Or: 1.2, W0: -1}, Recollapse},
 		{"phantom", Universe{Om: .3, OL: .7, W0: -1.01}, BigRip},

@@ -163,3 +163,25 @@ func TestAccelerationOnset(t *testing.T) {
 		t.Errorf("cases seen: %v", seen)
 	}
 }
+
+// TestSecondSpell: after a bounce, at a = 0.1, these universes accelerate, decelerate for a short while around
+// a = 0.53 and accelerate again. Without matter (L D/G) is least where (ba)² - 1.4ba + 0.44 = 0.
+func TestSecondSpell(t *testing.T) {
+	for _, om := range []float64{0, 1e-3} {
+		u := Universe{Om: om, Or: 1, OL: -1.5604 - 0.4*om, H0: 70, W0: .1, Wa: .3}
+		e := u.expansion()
+		least, at := math.Inf(1), 0.0
+		for a := 0.2; a < 1; a += 1e-5 {
+			if q := -u.Q(a); q < least {
+				least, at = q, a
+			}
+		}
+		if !(least < 0 && least > -1e-3 && -u.Q(1) > 0 && e.pastZero() > 0.05) {
+			t.Fatalf("Om %v: bounce at %v, least acceleration %v at %v", om, e.pastZero(), least, at)
+		}
+		z := u.AccelerationOnset()
+		if a := 1 / (1 + z); !(a > at && a < at+0.1) || math.Abs(u.Q(a)) > 1e-12 {
+			t.Errorf("Om %v: onset at a = %v with q = %v, deceleration is greatest at %v", om, a, u.Q(a), at)
+		}
+	}
+}
