@@ -8,8 +8,8 @@ const C = 299792.458
 // HubbleTime1 is 1/H0 in Gyr for H0 = 1 km/s/Mpc: Mpc/km over 10⁹ Julian years of 365.25 days.
 const HubbleTime1 = 977.792221680789
 
-// Universe is a homogeneous universe by its density parameters today. The zero value is empty and static in
-// time unit (H0 = 0) and of no use; a cosmological constant is W0 = -1, Wa = 0.
+// Universe is a homogeneous universe by its density parameters today. A cosmological constant is W0 = -1, Wa = 0;
+// H0 is only needed for distances in Mpc and times in Gyr.
 type Universe struct {
 	Om float64 // matter
 	OL float64 // dark energy
