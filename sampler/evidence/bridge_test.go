@@ -136,23 +136,17 @@ func TestShift(t *testing.T) {
 	}
 }
 
-// chain is an autoregressive Gaussian sample: what a Markov chain with correlation rho from draw to draw gives.
-func chain(n, dim int, rho float64, rng *rand.Rand) Sample {
+// chain is an autoregressive sample of the banana: what a Markov chain with correlation rho from draw to draw
+// of x_0 and of the distance from the ridge gives.
+func chain(n int, rho float64, rng *rand.Rand) Sample {
 	s := Sample{ESS: float64(n) * (1 - rho) / (1 + rho)}
-	z, x := make([]float64, dim), make([]float64, dim)
-	for i := range n {
+	z := []float64{rng.NormFloat64(), rng.NormFloat64()}
+	for range n {
 		for k := range z {
-			e := rng.NormFloat64()
-			if i == 0 {
-				z[k] = e
-			}
-			z[k] = rho*z[k] + math.Sqrt(1-rho*rho)*e
-			x[k] = float64(1+k) * z[k]
-			if k > 0 {
-				x[k] += x[k-1]
-			}
+			z[k] = rho*z[k] + math.Sqrt(1-rho*rho)*rng.NormFloat64()
 		}
-		s.X, s.LogP = append(s.X, x...), append(s.LogP, gauss(x))
+		x := []float64{z[0], z[0]*z[0] + 0.4*z[1]}
+		s.X, s.LogP = append(s.X, x...), append(s.LogP, banana(x))
 	}
 	return s
 }
@@ -169,7 +163,7 @@ func TestErrorsAreHonest(t *testing.T) {
 			lo, hi := wide(3)
 			return sample(2000, lo, hi, gauss, drawGauss, rng)
 		}, gauss, 3},
-		{"correlated", func(rng *rand.Rand) Sample { return chain(12000, 3, 0.8, rng) }, gauss, 3},
+		{"correlated", func(rng *rand.Rand) Sample { return chain(8000, 0.95, rng) }, banana, 2},
 		{"banana", func(rng *rand.Rand) Sample {
 			lo, hi := wide(2)
 			return sample(2000, lo, hi, banana, drawBanana, rng)
@@ -187,6 +181,25 @@ func TestErrorsAreHonest(t *testing.T) {
 		// the standard error of the root mean square of 60 is 0.09, of the mean 0.13
 		if rms := math.Sqrt(chi2); rms > 1.35 || rms < 0.6 || math.Abs(bias) > 0.45 {
 			t.Errorf("%s: root mean square of error/stated %.2f, mean %.2f: want 1 and 0", c.name, rms, bias)
+		}
+	}
+}
+
+// The variance over the posterior draws by hand: the ratio takes two values at random from draw to draw, or
+// from block to block, so that the sample is worth no more than its blocks.
+func TestErrorKnowsOfCorrelation(t *testing.T) {
+	rng := rand.New(rand.NewPCG(12, 12))
+	for _, run := range []int{1, 500} {
+		b := bridge{s1: 0.5, s2: 0.5, ess: 10000, proposed: []float64{1, 1, 1, 1}}
+		for len(b.drawn) < 10000 {
+			l := 1.0 + 2*float64(rng.IntN(2)) // 1/(s1·l + s2) is 1 or 1/2
+			for range run {
+				b.drawn = append(b.drawn, l)
+			}
+		}
+		want := 0.25 / 0.75 / math.Sqrt(float64(10000/run))
+		if e := b.relativeError(1); math.Abs(e/want-1) > 0.35 {
+			t.Errorf("runs of %d: relative error %.4f, want %.4f", run, e, want)
 		}
 	}
 }

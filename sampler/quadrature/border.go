@@ -1,6 +1,10 @@
 package quadrature
 
-import "math"
+import (
+	"cmp"
+	"math"
+	"slices"
+)
 
 // Further out than the innermost level the integrand is continuous, but it is not smooth where the support or
 // a class begins: like a square root where a curved border touches the line within. Such a place is located
@@ -15,6 +19,71 @@ type mark struct {
 	s *sample
 }
 
+// mark returns the i-th sampled position of a piece: its start, the nodes, its end.
+func (q *piece) mark(i int) mark {
+	switch i {
+	case 0:
+		return mark{q.a, &q.ends[0]}
+	case points + 1:
+		return mark{q.b, &q.ends[1]}
+	}
+	t, _ := q.node(i - 1)
+	return mark{t, &q.within[i-1]}
+}
+
+// mostHints bounds the hints of a piece: each costs its lines a cut.
+const mostHints = 3
+
+// trace follows what is seen at one position of the piece to the positions beside it, where it may be too thin
+// to be seen without a hint: one way and back.
+func (l *level) trace(w *worker, q *piece, tol *vec) {
+	const last = points + 1
+	for step := range 2 * last {
+		i := step
+		if step >= last {
+			i = 2*last - 1 - step
+		}
+		left, right := q.mark(i), q.mark(i+1)
+		slots := l.differing(left, right, tol, true)
+		if len(slots) == 0 {
+			continue
+		}
+		hints := l.centroids(left, right, slots)
+		if l.lookAgain(w, left, right, slots, hints) {
+			q.hints = append(hints, q.hints...)[:min(mostHints, len(hints)+len(q.hints))]
+		}
+	}
+}
+
+// spread copies what tracing has found at the common end of two pieces from the one to the other, and takes
+// out of the level the pieces that are to be looked at again because of it.
+func (l *level) spread() (again []*piece) {
+	slices.SortFunc(l.pieces, func(p, q *piece) int { return cmp.Compare(p.a, q.a) })
+	learned := make(map[*piece]bool)
+	for i := 1; i < len(l.pieces); i++ {
+		p, q := l.pieces[i-1], l.pieces[i]
+		if p.b != q.a || p.edgeB || q.edgeA {
+			continue
+		}
+		switch left, right := &p.ends[1], &q.ends[0]; {
+		case l.exceeds(left, right):
+			*right, learned[q] = *left, true
+		case l.exceeds(right, left):
+			*left, learned[p] = *right, true
+		}
+	}
+	keep := l.pieces[:0]
+	for _, q := range l.pieces {
+		if learned[q] {
+			again = append(again, q)
+		} else {
+			keep = append(keep, q)
+		}
+	}
+	l.pieces = keep
+	return again
+}
+
 // split locates the borders inside a piece and returns the parts, or nil when there is nothing to split.
 func (l *level) split(w *worker, q *piece, tol *vec) (parts []*piece) {
 	if q.depth >= maxSplits || !l.mixed(q, tol) {
@@ -24,20 +93,16 @@ func (l *level) split(w *worker, q *piece, tol *vec) (parts []*piece) {
 	if q.edgeA {
 		from.hints = q.hints
 	}
-	left := mark{q.a, &q.ends[0]}
+	left := q.mark(0)
 	for k := range points + 1 {
-		right := mark{q.b, &q.ends[1]}
-		if k < points {
-			right.t, _ = q.node(k)
-			right.s = &q.within[k]
-		}
+		right := q.mark(k + 1)
 		for range maxSplits {
 			in, out, hints := l.border(w, left, right, tol)
 			if hints == nil {
 				break
 			}
 			from.b, from.edgeB, from.ends[1] = (in.t+out.t)/2, true, *in.s
-			from.hints = append(from.hints, hints...)
+			from.hints = slices.Concat(from.hints, hints)
 			parts = append(parts, from)
 			from = &piece{core: core{a: from.b, edgeA: true}, ends: [2]sample{*out.s}, depth: q.depth + 1, hints: hints}
 			left = mark{from.a, out.s}
@@ -49,24 +114,17 @@ func (l *level) split(w *worker, q *piece, tol *vec) (parts []*piece) {
 	}
 	from.b, from.edgeB, from.ends[1] = q.b, q.edgeB, q.ends[1]
 	if q.edgeB {
-		from.hints = append(from.hints, q.hints...)
+		from.hints = slices.Concat(from.hints, q.hints)
 	}
 	return l.tidy(w, append(parts, from))
 }
 
 // mixed tells whether something begins or ends inside the piece that matters.
 func (l *level) mixed(q *piece, tol *vec) bool {
-	left := mark{q.a, &q.ends[0]}
-	for k := range points + 1 {
-		right := mark{q.b, &q.ends[1]}
-		if k < points {
-			right.t, _ = q.node(k)
-			right.s = &q.within[k]
-		}
-		if len(l.differing(left, right, tol)) > 0 {
+	for i := range points + 1 {
+		if len(l.differing(q.mark(i), q.mark(i+1), tol, false)) > 0 {
 			return true
 		}
-		left = right
 	}
 	return false
 }
@@ -74,13 +132,18 @@ func (l *level) mixed(q *piece, tol *vec) bool {
 // negligible is the share of the tolerance that a misplaced border may cost.
 const negligible = 0.01
 
-// differing lists the slots that have mass on one side only, enough of it to matter.
-func (l *level) differing(a, b mark, tol *vec) (slots []int) {
+// differing lists the slots that have mass on one side only, enough of it to matter; or, if it could be there
+// unseen, that would matter if all mass were theirs.
+func (l *level) differing(a, b mark, tol *vec, unseen bool) (slots []int) {
 	for s := range l.slots {
 		if a.s.has(s) == b.s.has(s) {
 			continue
 		}
-		if (a.s.val[s]+b.s.val[s])*(b.t-a.t) > negligible*tol[s] {
+		f := a.s.val[s] + b.s.val[s]
+		if unseen {
+			f = a.s.val[0] + b.s.val[0]
+		}
+		if f*(b.t-a.t) > negligible*tol[s] {
 			slots = append(slots, s)
 		}
 	}
@@ -89,20 +152,16 @@ func (l *level) differing(a, b mark, tol *vec) (slots []int) {
 
 // border bisects between two marks for the first place where something that matters begins or ends. It
 // returns marks close to either side and hints to where the thing was last seen; no hints when there is no
-// border after all.
+// border.
 func (l *level) border(w *worker, left, right mark, tol *vec) (in, out mark, hints []point) {
-	slots := l.differing(left, right, tol)
+	slots := l.differing(left, right, tol, false)
 	if len(slots) == 0 {
 		return left, right, nil
 	}
-	hints = l.centroids(left, right, slots)
-	l.lookAgain(w, left, right, slots, hints)
-	if slots = l.differing(left, right, tol); len(slots) == 0 {
-		return left, right, nil
-	}
 	narrow := 1e-12 * (l.hi[l.at] - l.lo[l.at])
+	hints = l.centroids(left, right, slots)
 	for range 45 {
-		if right.t-left.t <= narrow || len(l.differing(left, right, tol)) == 0 {
+		if right.t-left.t <= narrow || len(l.differing(left, right, tol, false)) == 0 {
 			break
 		}
 		hints = l.centroids(left, right, slots)
@@ -117,18 +176,35 @@ func (l *level) border(w *worker, left, right mark, tol *vec) (in, out mark, hin
 	return left, right, hints
 }
 
-// lookAgain samples the sides where something is missing once more, now with hints: it may be there.
-func (l *level) lookAgain(w *worker, left, right mark, slots []int, hints []point) {
+// lookAgain samples the sides where something is missing once more, with hints, and tells whether it is there.
+func (l *level) lookAgain(w *worker, left, right mark, slots []int, hints []point) (found bool) {
 	for _, m := range [...]mark{left, right} {
 		for _, s := range slots {
-			if !m.s.has(s) {
-				*m.s = l.sample(w, m.t, hints)
-				break
+			if m.s.has(s) {
+				continue
 			}
+			if again := l.sample(w, m.t, hints); l.exceeds(&again, m.s) {
+				*m.s, found = again, true
+			}
+			break
 		}
 	}
+	return found
 }
 
+// exceeds tells whether a has seen all that b has, and more. Samples are only replaced by such, so that
+// looking again comes to an end.
+func (l *level) exceeds(a, b *sample) (more bool) {
+	for s := range l.slots {
+		if b.has(s) && !a.has(s) {
+			return false
+		}
+		more = more || a.has(s) && !b.has(s)
+	}
+	return more
+}
+
+// alike tells whether two samples agree on which of the slots they have.
 func (l *level) alike(a, b *sample, slots []int) bool {
 	for _, s := range slots {
 		if a.has(s) != b.has(s) {

@@ -13,7 +13,7 @@ import (
 type Result struct {
 	LogEvidence Estimate   // ln ∫ p over the box, with its absolute error
 	Marginals   []Marginal // of each coordinate
-	Classes     []Estimate // the probability of each class
+	Classes     []Estimate // the probability of each class; 0 ± 0 when no node fell into it: absent, or thinner than their spacing
 	Nodes       *Nodes     // weighted points, for everything else
 	Mode        []float64  // the most probable point found
 	LogMode     float64    // ln p there

@@ -33,10 +33,11 @@ type sample struct {
 // piece is a piece of any level but the innermost.
 type piece struct {
 	core
-	within [points]sample
-	ends   [2]sample // just inside the ends
-	hints  []point   // where to look for what ends at an end of the piece
-	depth  int       // splits at borders behind it
+	within  [points]sample
+	ends    [2]sample // just inside the ends
+	hints   []point   // where to look for what is thin in the piece
+	depth   int       // splits at borders behind it
+	sampled bool
 }
 
 // level integrates any level but the innermost. The crew is all workers at the outermost level, and the one
@@ -112,14 +113,11 @@ func (l *level) open(ctx context.Context) {
 	l.place(ctx, pieces)
 }
 
-// place samples the pieces and keeps them, after splitting those that contain a border.
+// place samples the pieces and keeps them, after splitting those that contain a border. What is found at the
+// end of a piece may have been missed beside it: then the neighbour is looked at again.
 func (l *level) place(ctx context.Context, pieces []*piece) {
 	for len(pieces) > 0 {
-		l.do(ctx, len(pieces)*points, func(w *worker, i int) {
-			q, k := pieces[i/points], i%points
-			t, _ := q.node(k)
-			q.within[k] = l.sample(w, t, q.hints)
-		})
+		l.fill(ctx, pieces)
 		if ctx.Err() != nil {
 			return
 		}
@@ -131,9 +129,28 @@ func (l *level) place(ctx context.Context, pieces []*piece) {
 		}
 		tol := l.tolerance(l.at, slices.Concat(l.cores(), coresOf(pieces)))
 		parts := make([][]*piece, len(pieces))
-		l.do(ctx, len(pieces), func(w *worker, i int) { parts[i] = l.split(w, pieces[i], &tol) })
-		pieces = l.sort(pieces, parts)
+		l.do(ctx, len(pieces), func(w *worker, i int) {
+			l.trace(w, pieces[i], &tol)
+			parts[i] = l.split(w, pieces[i], &tol)
+		})
+		pieces = append(l.sort(pieces, parts), l.spread()...)
 	}
+}
+
+// fill samples the pieces that are not sampled yet.
+func (l *level) fill(ctx context.Context, pieces []*piece) {
+	var fresh []*piece
+	for _, q := range pieces {
+		if !q.sampled {
+			q.sampled = true
+			fresh = append(fresh, q)
+		}
+	}
+	l.do(ctx, len(fresh)*points, func(w *worker, i int) {
+		q, k := fresh[i/points], i%points
+		t, _ := q.node(k)
+		q.within[k] = l.sample(w, t, q.hints)
+	})
 }
 
 // sort keeps the pieces that were not split and returns the parts of the others.
@@ -219,15 +236,10 @@ func (l *level) bisect(ctx context.Context, bad map[int]bool) {
 func (q *piece) halves() []*piece {
 	mid, _ := q.node(points / 2)
 	m := q.within[points/2]
-	l := &piece{core: core{a: q.a, b: mid, edgeA: q.edgeA}, ends: [2]sample{q.ends[0], m}, depth: q.depth}
-	r := &piece{core: core{a: mid, b: q.b, edgeB: q.edgeB}, ends: [2]sample{m, q.ends[1]}, depth: q.depth}
-	if q.edgeA {
-		l.hints = q.hints
+	return []*piece{
+		{core: core{a: q.a, b: mid, edgeA: q.edgeA}, ends: [2]sample{q.ends[0], m}, hints: q.hints, depth: q.depth},
+		{core: core{a: mid, b: q.b, edgeB: q.edgeB}, ends: [2]sample{m, q.ends[1]}, hints: q.hints, depth: q.depth},
 	}
-	if q.edgeB {
-		r.hints = q.hints
-	}
-	return []*piece{l, r}
 }
 
 // result adds up the pieces, with the errors from within, and returns the points with their weights so far.

@@ -96,7 +96,6 @@ func TestSameForAnyNumberOfWorkers(t *testing.T) {
 		want := integrate(t, p, o)
 		o.Workers = 3
 		got := integrate(t, p, o)
-		t.Log(want.Evaluations)
 		if d := cmp.Diff(want, got, cmp.AllowUnexported(Nodes{}), cmpopts.EquateNaNs()); d != "" {
 			t.Errorf("%d dimensions: 3 workers differ from 1: %.300s", dim, d)
 		}
