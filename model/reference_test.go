@@ -242,25 +242,26 @@ func TestDeceleration(t *testing.T) {
 	}
 }
 
-// TestSoundHorizon: the formula at the Planck 2018 best fit, where the numerical value is 147.049 Mpc, and
-// against an independent fit with the same neutrinos, Aubourg et al. 2015 (arXiv:1411.1074) eq. 16.
+// TestSoundHorizon: the formula at the Planck 2018 best fit, where it was recomputed independently and the
+// numerical value is 147.049 Mpc, and against the power law of Brieden, Gil-Marín & Verde 2023 (arXiv:2212.04522;
+// arXiv:2503.14738, eq. 2), fitted independently.
 func TestSoundHorizon(t *testing.T) {
-	const ob, omh2, wnu = .022383, .14314, 6.442e-4
+	const ob, omh2 = .022383, .022383 + .12011 + neutrinoDensity // baryons, cold dark matter, neutrinos
 	h0 := 67.32
 	om := omh2 / (h0 * h0 / 1e4)
 	got := SoundHorizon(ob, om, h0)
-	// The printed value was computed with Neff = 3.046.
-	near(t, "rd", got*math.Pow(3.046/neff, -0.1), 147.016, 4e-6)
-	near(t, "rd against 147.049", got, 147.049, 3e-4)
+	near(t, "rd", got, 147.020, 4e-6)
+	near(t, "rd against 147.049", got, 147.049, 2.1e-4)
 	rng := rand.New(rand.NewPCG(15, 16))
 	for range 100 {
 		ob, omh2 := .0218+.001*rng.Float64(), .139+.008*rng.Float64()
-		aubourg := 55.154 * math.Exp(-72.3*(wnu+.0006)*(wnu+.0006)) /
-			(math.Pow(omh2-wnu, .25351) * math.Pow(ob, .12807))
-		near(t, "rd against Aubourg", SoundHorizon(ob, omh2/(h0*h0/1e4), h0), aubourg, 2e-3)
+		power := 147.05 * math.Pow(ob/.02236, -.13) * math.Pow(omh2/.1432, -.23) * math.Pow(3.046/3.04, -.1)
+		near(t, "rd against a power law", SoundHorizon(ob, omh2/(h0*h0/1e4), h0), power, 1e-3)
 	}
-	if v := SoundHorizon(0, .3, 70); !math.IsNaN(v) {
-		t.Errorf("sound horizon %v without baryons", v)
+	for _, v := range []float64{SoundHorizon(0, .3, 70), SoundHorizon(.022, .001, 70), SoundHorizon(.022, .3, -70)} {
+		if !math.IsNaN(v) {
+			t.Errorf("sound horizon %v outside the domain", v)
+		}
 	}
 }
 
