@@ -36,7 +36,7 @@ const mostHints = 3
 
 // trace follows what is seen at one position of the piece to the positions beside it, where it may be too thin
 // to be seen without a hint: one way and back.
-func (l *level) trace(w *worker, q *piece, tol *vec) {
+func (l *level) trace(w *worker, q *piece) {
 	const last = points + 1
 	for step := range 2 * last {
 		i := step
@@ -44,7 +44,7 @@ func (l *level) trace(w *worker, q *piece, tol *vec) {
 			i = 2*last - 1 - step
 		}
 		left, right := q.mark(i), q.mark(i+1)
-		slots := l.differing(left, right, tol, true)
+		slots := l.uphill(left, right)
 		if len(slots) == 0 {
 			continue
 		}
@@ -122,7 +122,7 @@ func (l *level) split(w *worker, q *piece, tol *vec) (parts []*piece) {
 // mixed tells whether something begins or ends inside the piece that matters.
 func (l *level) mixed(q *piece, tol *vec) bool {
 	for i := range points + 1 {
-		if len(l.differing(q.mark(i), q.mark(i+1), tol, false)) > 0 {
+		if len(l.differing(q.mark(i), q.mark(i+1), tol)) > 0 {
 			return true
 		}
 	}
@@ -132,18 +132,25 @@ func (l *level) mixed(q *piece, tol *vec) bool {
 // negligible is the share of the tolerance that a misplaced border may cost.
 const negligible = 0.01
 
-// differing lists the slots that have mass on one side only, enough of it to matter; or, if it could be there
-// unseen, that would matter if all mass were theirs.
-func (l *level) differing(a, b mark, tol *vec, unseen bool) (slots []int) {
+// differing lists the slots that have mass on one side only, enough of it to matter.
+func (l *level) differing(a, b mark, tol *vec) (slots []int) {
 	for s := range l.slots {
-		if a.s.has(s) == b.s.has(s) {
-			continue
+		if a.s.has(s) != b.s.has(s) && (a.s.val[s]+b.s.val[s])*(b.t-a.t) > negligible*tol[s] {
+			slots = append(slots, s)
 		}
-		f := a.s.val[s] + b.s.val[s]
-		if unseen {
-			f = a.s.val[0] + b.s.val[0]
+	}
+	return slots
+}
+
+// uphill lists the slots that have mass on one side only, the one with less mass in all: however little that
+// is, where the rest of the posterior grows they may grow unseen.
+func (l *level) uphill(a, b mark) (slots []int) {
+	for s := range l.slots {
+		has, lacks := a.s, b.s
+		if b.s.has(s) {
+			has, lacks = b.s, a.s
 		}
-		if f*(b.t-a.t) > negligible*tol[s] {
+		if has.has(s) && !lacks.has(s) && (s == 0 || lacks.val[0] > has.val[0]) {
 			slots = append(slots, s)
 		}
 	}
@@ -154,14 +161,14 @@ func (l *level) differing(a, b mark, tol *vec, unseen bool) (slots []int) {
 // returns marks close to either side and hints to where the thing was last seen; no hints when there is no
 // border.
 func (l *level) border(w *worker, left, right mark, tol *vec) (in, out mark, hints []point) {
-	slots := l.differing(left, right, tol, false)
+	slots := l.differing(left, right, tol)
 	if len(slots) == 0 {
 		return left, right, nil
 	}
 	narrow := 1e-12 * (l.hi[l.at] - l.lo[l.at])
 	hints = l.centroids(left, right, slots)
 	for range 45 {
-		if right.t-left.t <= narrow || len(l.differing(left, right, tol, false)) == 0 {
+		if right.t-left.t <= narrow || len(l.differing(left, right, tol)) == 0 {
 			break
 		}
 		hints = l.centroids(left, right, slots)

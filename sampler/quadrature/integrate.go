@@ -13,7 +13,7 @@ import (
 type Result struct {
 	LogEvidence Estimate   // ln ∫ p over the box, with its absolute error
 	Marginals   []Marginal // of each coordinate
-	Classes     []Estimate // the probability of each class; 0 ± 0 when no node fell into it: absent, or thinner than their spacing
+	Classes     []Estimate // the probability of each class; see Problem.Class for what may be missed
 	Nodes       *Nodes     // weighted points, for everything else
 	Mode        []float64  // the most probable point found
 	LogMode     float64    // ln p there
@@ -96,7 +96,7 @@ func (r *Result) passes(ctx context.Context, p Problem, o Options, g guess, work
 			relative += slack * o.Tolerance
 			r.LogEvidence = Estimate{q.ref + math.Log(out.val[0]), relative}
 			r.Nodes = newNodes(len(p.Lo), p.Classes, q.ref, out.nodes)
-			r.classes(&out, p.Classes)
+			r.classes(&out, p.Classes, o)
 			p.Lo, p.Hi = r.Nodes.bounds(p.Lo, p.Hi, r.LogMode-clip)
 		}
 		logs = append(logs, q.ref+math.Log(out.val[0]))
@@ -136,10 +136,11 @@ func (n *Nodes) bounds(lo, hi []float64, level float64) (l, h []float64) {
 }
 
 // classes turns masses into probabilities. The error of the total counts for the ratio too.
-func (r *Result) classes(out *outcome, n int) {
+func (r *Result) classes(out *outcome, n int, o Options) {
 	for c := range n {
 		p := out.val[1+c] / out.val[0]
-		r.Classes = append(r.Classes, Estimate{p, out.err[1+c]/out.val[0] + p*out.err[0]/out.val[0]})
+		err := out.err[1+c]/out.val[0] + p*out.err[0]/out.val[0]
+		r.Classes = append(r.Classes, Estimate{p, math.Max(err, o.ClassTolerance*o.Rarest)})
 	}
 }
 

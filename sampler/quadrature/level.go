@@ -130,7 +130,7 @@ func (l *level) place(ctx context.Context, pieces []*piece) {
 		tol := l.tolerance(l.at, slices.Concat(l.cores(), coresOf(pieces)))
 		parts := make([][]*piece, len(pieces))
 		l.do(ctx, len(pieces), func(w *worker, i int) {
-			l.trace(w, pieces[i], &tol)
+			l.trace(w, pieces[i])
 			parts[i] = l.split(w, pieces[i], &tol)
 		})
 		pieces = append(l.sort(pieces, parts), l.spread()...)

@@ -19,7 +19,9 @@ type Problem struct {
 	Start   []float64      // a good point if one is known, or nil
 
 	// Class tells to which of the Classes (at most 15) the point belongs, 0 … Classes-1; any other value is
-	// none of them. It is called from several goroutines. Nil when there are no classes.
+	// none of them. It is called from several goroutines. Nil when there are no classes. A class is found if a
+	// node falls into it, and then followed to where its mass is; one that is everywhere thinner than some 0.2
+	// standard deviations may be missed.
 	Class   func(x []float64) int
 	Classes int
 }
