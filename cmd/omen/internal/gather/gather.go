@@ -1,0 +1,93 @@
+// Package gather turns a run into what its figures and pages show.
+//
+//  1. Open reads the folder of a run, finished or not; Of takes one that has
+//     just ended. Either gives a Run: the chain with its Summary.
+//  2. Pictures lists the figures that make sense for it. Each has a caption, an
+//     alternative text with the numbers in words, and draws itself at any width.
+//
+// It knows cosmology and chains and nothing of ink and paper: what it hands to
+// package figure are plain numbers and labels. Everything is deterministic.
+package gather
+
+import (
+	"encoding/json"
+	"os"
+	"path/filepath"
+
+	"omen/cmd/omen/internal/explore"
+	"omen/cmd/omen/internal/result"
+	"omen/sampler"
+)
+
+// Run is a run with everything that is shown of it.
+type Run struct {
+	*result.Run
+	Summary *result.Summary
+	Dir     string
+	RunFile []byte // the resolved run file
+}
+
+// Open reads the run in dir as it stands. Its summary is that of summary.json if
+// it belongs to the chain as it is, and made anew if not.
+func Open(dir string, o explore.Options) (*Run, error) {
+	run, err := explore.Open(dir, o)
+	if err != nil {
+		return nil, err
+	}
+	s, ok := kept(dir, run)
+	if !ok {
+		s = result.Build(*run)
+	}
+	return Of(run, s, dir)
+}
+
+// Of takes a run that has just ended.
+func Of(run *result.Run, s *result.Summary, dir string) (*Run, error) {
+	text, err := os.ReadFile(filepath.Join(dir, explore.RunFileName))
+	if err != nil {
+		return nil, err
+	}
+	return &Run{Run: run, Summary: s, Dir: dir, RunFile: text}, nil
+}
+
+// kept is the summary in dir, if this program made it from this chain.
+func kept(dir string, run *result.Run) (*result.Summary, bool) {
+	text, err := os.ReadFile(filepath.Join(dir, "summary.json"))
+	if err != nil {
+		return nil, false
+	}
+	var s result.Summary
+	if json.Unmarshal(text, &s) != nil || s.Schema != result.Schema || s.Version != run.Version {
+		return nil, false
+	}
+	sampling := run.Job.Run.Sampling
+	same := s.Sampling.Steps == run.Chain.Steps() && s.Sampling.Seed == sampling.Seed &&
+		s.Sampling.Goal == sampling.EffectiveSamples && s.Complete == (run.Outcome.Stop == sampler.Converged)
+	return &s, same
+}
+
+// Unfinished reports whether the run stopped before its goal.
+func (r *Run) Unfinished() bool { return !r.Summary.Complete }
+
+// sample is the part of the chain to draw from, thinned to about n draws.
+func (r *Run) sample(n int) sampler.View {
+	v := r.Outcome.Check.Sample
+	rows := max(1, n/(v.Ensembles()*v.Walkers()))
+	return v.Thin(max(1, v.Steps()/rows))
+}
+
+// scatter is n positions spread evenly over the sample.
+func (r *Run) scatter(n int) [][]float64 {
+	v := r.sample(4 * n)
+	total := v.Ensembles() * v.Walkers() * v.Steps()
+	n = min(n, total)
+	out := make([][]float64, 0, n)
+	k := 0
+	for row := range v.Rows() {
+		if k*n/total == len(out) {
+			out = append(out, append([]float64(nil), row.X...))
+		}
+		k++
+	}
+	return out
+}

@@ -1,0 +1,168 @@
+package gather
+
+import (
+	"fmt"
+	"math"
+	"slices"
+	"strings"
+
+	"omen/cmd/omen/internal/density"
+	"omen/cmd/omen/internal/figure"
+	"omen/likelihood"
+	"omen/model"
+	"omen/sampler"
+)
+
+// planeDraws is how many draws an outline is made of.
+const planeDraws = 20000
+
+// mostTables is how many regions can be told apart beside that of all together.
+const mostTables = 5
+
+// plane is the regions of (Om, OL) with the lines that divide the fates.
+func (r *Run) plane() (*Picture, error) {
+	s := r.Job.Space
+	om, ol := index(s, "Om"), index(s, "OL")
+	switch {
+	case s.Family().Flat:
+		return absent("space is flat by assumption: OL follows from Om, and there is no plane to show"), nil
+	case om < 0 || ol < 0:
+		return absent("Om and OL are not both free"), nil
+	}
+	in := figure.Plane{X: axis("Om"), Y: axis("OL"), Unfinished: r.Unfinished(),
+		XEdges: edges(s.Free()[om].Prior), YEdges: edges(s.Free()[ol].Prior)}
+	left := r.separately(&in)
+	name := r.Job.Tables[0].Name
+	if len(in.Sets) > 0 {
+		name = "all together"
+	}
+	in.Sets = append(in.Sets, set(name, s, r.sample(planeDraws), r.Outcome.Check, r.Best))
+	in.Dividers = dividers(s)
+	caption := r.planeCaption(&in) + left
+	return &Picture{Caption: caption, Alt: r.planeAlt(), Draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawPlane(in, w) }}, nil
+}
+
+func index(s *likelihood.Space, name string) int {
+	return slices.IndexFunc(s.Free(), func(p likelihood.Parameter) bool { return p.Name == name })
+}
+
+// edges are the hard ends of a prior.
+func edges(p likelihood.Prior) density.Edges {
+	lo, hi := p.Range()
+	return density.Edges{Lo: lo, Hi: hi}
+}
+
+// separately adds the region of every table by itself where there are several. It
+// says which are missing.
+func (r *Run) separately(in *figure.Plane) string {
+	n := len(r.Job.Tables)
+	switch {
+	case n < 2:
+		return ""
+	case n > mostTables:
+		return fmt.Sprintf(" The %d tables are not shown one by one.", n)
+	}
+	var missing []string
+	for i := range r.Job.Tables {
+		name := r.Job.Tables[i].Name
+		a, err := r.alone(i)
+		if err != nil || a.check.ESS() < 100 {
+			missing = append(missing, name)
+			continue
+		}
+		v := a.check.Sample
+		rows := max(1, planeDraws/(v.Ensembles()*v.Walkers()))
+		in.Sets = append(in.Sets, set(name, a.space, v.Thin(max(1, v.Steps()/rows)), a.check, nil))
+	}
+	if len(missing) > 0 {
+		return " Not shown by itself, for it leaves the plane too open: " + strings.Join(missing, ", ") + "."
+	}
+	return ""
+}
+
+func set(name string, s *likelihood.Space, v sampler.View, c sampler.Check, best []float64) figure.Set {
+	om, ol := index(s, "Om"), index(s, "OL")
+	out := figure.Set{Name: figure.Plain(name), X: v.Coordinate(om).Values(), Y: v.Coordinate(ol).Values(), ESS: c.ESS()}
+	if best != nil {
+		out.Best = &[2]float64{best[om], best[ol]}
+	}
+	return out
+}
+
+// dividers are the lines between kinds of universe. All but that of flat space
+// move with the equation of state and are left out where it is free.
+func dividers(s *likelihood.Space) []figure.Divider {
+	var p likelihood.Point
+	lo, hi := s.Box()
+	s.Point(lo, &p)
+	u := p.Universe
+	om := index(s, "Om")
+	x := grid(max(lo[om], 1e-3), hi[om], 240, false)
+	line := func(left, right string, exclude bool, above func(model.Universe) bool) figure.Divider {
+		return figure.Divider{X: x, Y: border(u, x, above), Left: figure.Plain(left), Right: figure.Plain(right), Exclude: exclude}
+	}
+	out := []figure.Divider{line("closed", "open", false, func(u model.Universe) bool { return u.Ok() < 0 })}
+	if s.Family().DarkEnergy != likelihood.Constant {
+		return out
+	}
+	return append(out,
+		line("accelerates today", "decelerates today", false, func(u model.Universe) bool { return u.Q0() < 0 }),
+		line("expands forever", "recollapses", false, func(u model.Universe) bool { return u.Future() != model.Recollapse }),
+		line("no big bang", "", s.Family().RequireBigBang, func(u model.Universe) bool { return !u.HasBigBang() }))
+}
+
+// border is where, going up in OL at each Om, universes begin to be above. The
+// functions of package model know the published boundaries (Carroll, Press &
+// Turner 1992, ARA&A 30, 499; Felten & Isaacman 1986, RMP 58, 689) and what
+// radiation does to them.
+func border(u model.Universe, om []float64, above func(model.Universe) bool) []float64 {
+	y := make([]float64, len(om))
+	for i, x := range om {
+		u.Om = x
+		lo, hi := -20.0, 20+10*x
+		for hi-lo > 1e-9 {
+			u.OL = (lo + hi) / 2
+			if above(u) {
+				hi = u.OL
+			} else {
+				lo = u.OL
+			}
+		}
+		y[i] = (lo + hi) / 2
+	}
+	return y
+}
+
+func (r *Run) planeCaption(in *figure.Plane) string {
+	var b strings.Builder
+	b.WriteString("Regions of highest density that hold 68% and 95% of the posterior of Om and OL")
+	if len(in.Sets) > 1 {
+		b.WriteString(", of each table by itself and of all together")
+	}
+	b.WriteString(". The cross is the best fit. ")
+	if len(in.Dividers) > 1 {
+		b.WriteString("Dashed lines divide universes that are closed from open ones, that accelerate today from those that do not, " +
+			"that recollapse from those that expand for ever, and that had no big bang (Carroll, Press & Turner 1992; Felten & Isaacman 1986)")
+	} else {
+		b.WriteString("The dashed line is flat space; those between the fates depend on w and are not lines in this plane")
+	}
+	if r.Job.Space.Family().RequireBigBang && len(in.Dividers) > 1 {
+		b.WriteString("; these last are left out by assumption and hatched")
+	}
+	b.WriteString(".")
+	return b.String()
+}
+
+func (r *Run) planeAlt() string {
+	s := "Posterior regions in the plane of Om and OL: " + r.values("Om", "OL") + "; " + r.values("Ok") + "."
+	if c := r.correlation("Om", "OL"); !math.IsNaN(c) {
+		s += fmt.Sprintf(" Their correlation is %.2f.", c)
+	}
+	return s
+}
+
+func (r *Run) correlation(a, b string) float64 {
+	v := r.sample(planeDraws)
+	i, j := index(r.Job.Space, a), index(r.Job.Space, b)
+	return sampler.Correlation(v.Coordinate(i), v.Coordinate(j))
+}
