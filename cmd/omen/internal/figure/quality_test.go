@@ -2,9 +2,11 @@ package figure
 
 import (
 	"bytes"
+	"errors"
 	"image/color"
 	"io"
 	"math"
+	"sync"
 	"testing"
 )
 
@@ -81,6 +83,27 @@ func TestSameBytes(t *testing.T) {
 				t.Errorf("%s.%s differs between two drawings of the same input", d.name, format)
 			}
 		}
+	}
+}
+
+// Figures may be written side by side; the fonts are shared.
+func TestConcurrentWrites(t *testing.T) {
+	f, err := DrawFates(fatesBoth(), Column)
+	if err != nil {
+		t.Fatal(err)
+	}
+	var b [4]bytes.Buffer
+	var errs [4]error
+	var all sync.WaitGroup
+	for i := range b {
+		all.Go(func() { errs[i] = f.Write(&b[i], Formats()[i%2]) })
+	}
+	all.Wait()
+	if err := errors.Join(errs[:]...); err != nil {
+		t.Fatal(err)
+	}
+	if !bytes.Equal(b[0].Bytes(), b[2].Bytes()) || !bytes.Equal(b[1].Bytes(), b[3].Bytes()) {
+		t.Error("writing side by side changes a file")
 	}
 }
 
