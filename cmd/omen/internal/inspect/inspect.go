@@ -8,6 +8,7 @@ import (
 	"math"
 	"slices"
 	"strings"
+	"unicode/utf8"
 
 	"omen/cmd/omen/internal/job"
 	"omen/likelihood"
@@ -38,7 +39,7 @@ func Write(w io.Writer, j *job.Job, best []float64) error {
 		}
 		b.WriteString("\n")
 	}
-	fmt.Fprintf(&b, "Best fit: chi² %.2f for %d rows, %d degrees of freedom, at", e.Chi2(best), j.Posterior.Rows(), j.Posterior.DegreesOfFreedom())
+	fmt.Fprintf(&b, "Best fit: chi² %.2f for %d rows, %d degrees of freedom, at\n ", e.Chi2(best), j.Posterior.Rows(), j.Posterior.DegreesOfFreedom())
 	for i, p := range j.Space.Free() {
 		fmt.Fprintf(&b, " %s %.5g", p.Name, best[i])
 	}
@@ -47,9 +48,17 @@ func Write(w io.Writer, j *job.Job, best []float64) error {
 	return err
 }
 
-// line writes a labelled line, aligned.
+// line writes a labelled line, aligned and broken before column 80.
 func line(b *strings.Builder, label, format string, args ...any) {
-	fmt.Fprintf(b, "  %-14s %s\n", label, fmt.Sprintf(format, args...))
+	out := "  " + pad(label, 14)
+	for _, word := range strings.Fields(fmt.Sprintf(format, args...)) {
+		if utf8.RuneCountInString(out)+1+utf8.RuneCountInString(word) > 80 {
+			b.WriteString(out + "\n")
+			out = strings.Repeat(" ", 16)
+		}
+		out += " " + word
+	}
+	b.WriteString(out + "\n")
 }
 
 func head(b *strings.Builder, t *job.Table) {
@@ -59,6 +68,9 @@ func head(b *strings.Builder, t *job.Table) {
 	line(b, "rows", "%d kept of %d", len(s.Kept), s.Read)
 	for _, c := range s.Cuts {
 		line(b, "", "%d removed by %s", c.Removed, c.Expression)
+	}
+	for _, w := range s.Warnings {
+		line(b, "look at", "%v", w)
 	}
 	if f := t.Spec.StandsFor; f != nil {
 		line(b, "stands for", "%d measurements, chi² %.6g more", f.Rows, f.Chi2)
@@ -74,7 +86,7 @@ func redshifts(b *strings.Builder, t *job.Table) {
 	}
 	hel := t.Supernovae.ZHel
 	if hel == nil {
-		line(b, "z_hel", "not given: z is used in the (1+z) factor of the luminosity distance")
+		line(b, "z_hel", "not given: z stands in for it in (1+z_hel) D_M")
 		return
 	}
 	same, worst := 0, 0.0
@@ -89,8 +101,7 @@ func redshifts(b *strings.Builder, t *job.Table) {
 	case same == len(z):
 		line(b, "look at", "z and z_hel agree in every row: was one copied into the other?")
 	case worst > 0.005:
-		line(b, "look at", "a frame change is at most about 0.002 at low redshift (the Sun's 370 km/s")
-		line(b, "", "and a few hundred of peculiar velocity); are the columns the right ones?")
+		line(b, "look at", "a change of frame is about 0.002 at most at low redshift (the Sun's 370 km/s and a few hundred of peculiar velocity); are the columns the right ones?")
 	}
 }
 
@@ -209,14 +220,15 @@ func residuals(b *strings.Builder, t *job.Table, p *likelihood.Prediction) {
 			beyond++
 		}
 	}
-	line(b, "residuals", "%d of %d beyond 3 errors (%.1f expected); the largest, in errors:", beyond, len(all), 0.0027*float64(len(all)))
+	line(b, "residuals", "%d of %d beyond 3 errors (%.1f expected); the largest:", beyond, len(all), 0.0027*float64(len(all)))
+	fmt.Fprintf(b, "    %-24s %8s %9s %10s %10s %7s\n", "", "line", "z", "measured", "best fit", "errors")
 	for _, i := range order[:min(shown, len(order))] {
 		r := all[i]
-		line(b, "", "%-21s z %-7.4g %8.4f, best fit %8.4f: %+.1f", label(t, i), r.Z, r.Measured, r.Predicted, r.Sigmas)
+		fmt.Fprintf(b, "    %s %8d %9.5g %10.4f %10.4f %+7.1f\n", pad(label(t, i), 24), t.Selection().Lines[i], r.Z, r.Measured, r.Predicted, r.Sigmas)
 	}
 }
 
-// label names a row: its name or quantity, and its line in the file.
+// label names a row as far as its table does.
 func label(t *job.Table, i int) string {
 	name := ""
 	switch {
@@ -227,8 +239,13 @@ func label(t *job.Table, i int) string {
 	case t.Ages != nil && t.Ages.Name != nil:
 		name = t.Ages.Name[i]
 	}
-	if r := []rune(name); len(r) > 14 {
-		name = string(r[:13]) + "…"
+	if r := []rune(name); len(r) > 24 {
+		name = string(r[:23]) + "…"
 	}
-	return strings.TrimSpace(fmt.Sprintf("%s line %d", name, t.Selection().Lines[i]))
+	return name
+}
+
+// pad fills a cell to a width counted in characters.
+func pad(s string, width int) string {
+	return s + strings.Repeat(" ", max(width-utf8.RuneCountInString(s), 0))
 }
