@@ -55,7 +55,7 @@ func TestInspectLooksAt(t *testing.T) {
 			run += "covariance-holds = \"" + c.holds + "\"\n"
 		}
 		dir := folder(t, map[string]string{"run.toml": run, "sn.csv": c.table, "c.cov": c.cov})
-		got := output(t, "inspect", filepath.Join(dir, "run.toml"))
+		got := strings.Join(strings.Fields(output(t, "inspect", filepath.Join(dir, "run.toml"))), " ")
 		if c.want == "" && strings.Contains(got, "look at") || !strings.Contains(got, c.want) {
 			t.Errorf("%s: want %q to look at in\n%s", c.name, c.want, got)
 		}
