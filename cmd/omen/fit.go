@@ -115,11 +115,13 @@ func conclude(run *result.Run, dir string, noReport bool, stdout io.Writer) erro
 	if err := chainfile.Replace(filepath.Join(dir, "summary.json"), text.Bytes()); err != nil {
 		return fmt.Errorf("%w; the chain is safe, omen resume %s writes the result again", err, dir)
 	}
-	// Figures and pages go here, unless noReport.
 	if err := report.Text(stdout, s); err != nil {
 		return err
 	}
 	fmt.Fprintf(stdout, "\nIn %s: chain.csv, summary.json, run.toml\n", dir)
+	if err := concludeReport(run, s, dir, noReport, stdout); err != nil {
+		return err
+	}
 	if why := run.Ended(); why != "" {
 		return &unfinished{why, run.Chain.Steps(), dir}
 	}

@@ -1,0 +1,208 @@
+// Package draft writes what a run has to say in the form that a paper takes it:
+//
+//	Constraints  constraints.tex: a tabular for \input, with the rules of booktabs
+//	Numbers      numbers.tex: one macro for every number, so that a text updates itself
+//	Methods      methods.md: two paragraphs on data, priors, likelihood and chain
+//	CSV          constraints.csv: the same numbers for a program
+//
+// Errors are rounded by the rule of the Particle Data Group, and nothing is
+// printed finer than its Monte Carlo error. Every name from a file is escaped.
+package draft
+
+import (
+	"bytes"
+	"encoding/csv"
+	"fmt"
+	"math"
+	"strconv"
+	"strings"
+
+	"omen/cmd/omen/internal/digits"
+	"omen/cmd/omen/internal/gather"
+	"omen/cmd/omen/internal/result"
+)
+
+// estimate is a quantity as it is printed: mean and standard deviation, or median
+// and the central 68% where the errors on the two sides differ.
+type estimate struct {
+	centre, up, down float64
+	symmetric        bool
+	place            int // of the last digit
+}
+
+// lopsided is how much the two errors must differ, relative to their mean, to be
+// printed apart: less changes no second digit.
+const lopsided = 0.1
+
+func newEstimate(q result.Quantity) estimate {
+	median := float64(q.Median)
+	up, down := float64(q.Interval68[1])-median, median-float64(q.Interval68[0])
+	noise := math.Hypot(float64(q.MCSE68[0]), float64(q.MCSE68[1]))
+	if d := math.Abs(up - down); d > lopsided*(up+down)/2 && d > 2*noise {
+		e := estimate{centre: median, up: up, down: down, place: place(math.Min(up, down), float64(q.MCSE))}
+		if digits.Format(up, e.place) != digits.Format(down, e.place) {
+			return e
+		}
+	}
+	sd := float64(q.SD)
+	return estimate{float64(q.Mean), sd, sd, true, place(sd, float64(q.MCSE))}
+}
+
+// place is the last digit to print of a value with an error: the Particle Data
+// Group's rule, or coarser where the Monte Carlo error says so.
+func place(err, mcse float64) int {
+	p, ok := digits.Spread(err)
+	if !ok {
+		p = digits.Place(err, mcse)
+	}
+	if mcse > 0 && !math.IsInf(mcse, 0) {
+		p = max(p, digits.MonteCarlo(mcse))
+	}
+	return p
+}
+
+// tex is the estimate in math mode.
+func (e estimate) tex() string {
+	if e.symmetric {
+		return number(e.centre, e.place) + ` \pm ` + number(e.up, e.place)
+	}
+	return number(e.centre, e.place) + "^{+" + number(e.up, e.place) + "}_{-" + number(e.down, e.place) + "}"
+}
+
+// number formats for math mode.
+func number(x float64, place int) string {
+	switch {
+	case math.IsNaN(x):
+		return `\text{--}`
+	case math.IsInf(x, 0):
+		return map[bool]string{true: `\infty`, false: `-\infty`}[x > 0]
+	}
+	return digits.Format(x, place)
+}
+
+// Constraints writes constraints.tex.
+func Constraints(r *gather.Run) []byte {
+	var b bytes.Buffer
+	s := r.Summary
+	heading(&b, r, "The constraints as a tabular. In the preamble: \\usepackage{booktabs}. In the text:",
+		`  \begin{table}\centering\input{constraints}\caption{...}\end{table}`,
+		"Mean and standard deviation, or median and central 68% interval where the errors",
+		"differ; central 95% interval; best fit.")
+	b.WriteString("\\begin{tabular}{lccc}\n\\toprule\nQuantity & Value (68\\%) & 95\\% interval & Best fit \\\\\n\\midrule\n")
+	for _, q := range s.Parameters {
+		best, ok := s.Fit.Best[q.Name]
+		row(&b, q, float64(best), ok)
+	}
+	if len(s.Derived) > 0 {
+		b.WriteString("\\midrule\n")
+	}
+	for _, q := range s.Derived {
+		row(&b, q, math.NaN(), false)
+	}
+	b.WriteString("\\midrule\n")
+	for _, f := range s.Fates {
+		fmt.Fprintf(&b, "$P$(%s) & $%s$ & & \\\\\n", Escape(f.Name), probability(f))
+	}
+	for _, f := range s.Today {
+		fmt.Fprintf(&b, "$P$(%s today) & $%s$ & & \\\\\n", Escape(f.Name), probability(f))
+	}
+	b.WriteString("\\bottomrule\n\\end{tabular}\n")
+	if !s.Complete {
+		b.WriteString("\\par\\smallskip\\textbf{Unfinished: the run stopped before its goal.}\n")
+	}
+	return b.Bytes()
+}
+
+func row(b *bytes.Buffer, q result.Quantity, best float64, known bool) {
+	name := "$" + symbol(q.Name) + "$"
+	if u := unit(q.Unit); u != "" {
+		name += " ($" + u + "$)"
+	}
+	if !q.Constrained {
+		fmt.Fprintf(b, "%s & not constrained & & \\\\\n", name)
+		return
+	}
+	e := newEstimate(q)
+	at := ""
+	if known {
+		at = "$" + number(best, place(float64(q.SD), 0)-1) + "$"
+	}
+	fmt.Fprintf(b, "%s & $%s$ & $[%s, %s]$ & %s \\\\\n", name, e.tex(), end(q, q.Interval95, q.MCSE95, 0), end(q, q.Interval95, q.MCSE95, 1), at)
+}
+
+// end is one end of an interval, with the digits that its own Monte Carlo error
+// leaves it.
+func end(q result.Quantity, ends, mcse [2]result.Number, i int) string {
+	return number(float64(ends[i]), place(float64(q.SD), float64(mcse[i])))
+}
+
+// probability is a probability in math mode, with its error or as a limit.
+func probability(f result.Fate) string {
+	p, e, up := float64(f.Probability), float64(f.Error), float64(f.Upper95)
+	switch {
+	case p == 0 && up > 0:
+		return "< " + scientific(up)
+	case p == 1 && up > 0:
+		return "> " + digits.Format(1-up, place(up, 0))
+	}
+	return strings.ReplaceAll(digits.Share(p, e), "±", `\pm`)
+}
+
+// scientific writes a small number with two digits.
+func scientific(x float64) string {
+	if x >= 1e-3 {
+		return digits.Error(x)
+	}
+	m, exp, _ := strings.Cut(strconv.FormatFloat(x, 'e', 1, 64), "e")
+	n, _ := strconv.Atoi(exp)
+	return fmt.Sprintf(`%s \times 10^{%d}`, m, n)
+}
+
+// heading says in comments what a file is and where it comes from.
+func heading(b *bytes.Buffer, r *gather.Run, lines ...string) {
+	title := r.Summary.Title
+	if title == "" {
+		title = "a run"
+	}
+	fmt.Fprintf(b, "%% %s: written by omen %s; do not edit, it is written again.\n", comment(title), comment(r.Summary.Version))
+	if !r.Summary.Complete {
+		b.WriteString("% UNFINISHED: the run stopped before its goal.\n")
+	}
+	for _, l := range lines {
+		fmt.Fprintf(b, "%% %s\n", l)
+	}
+}
+
+// CSV writes constraints.csv: one row for each quantity, each number to the last
+// place that its Monte Carlo error supports.
+func CSV(r *gather.Run) ([]byte, error) {
+	var b bytes.Buffer
+	w := csv.NewWriter(&b)
+	w.Write([]string{"name", "unit", "mean", "sd", "median", "lo68", "hi68", "lo95", "hi95", "hdi68_lo", "hdi68_hi",
+		"best", "mcse", "ess", "rhat", "constrained"})
+	for _, qs := range [][]result.Quantity{r.Summary.Parameters, r.Summary.Derived} {
+		for _, q := range qs {
+			w.Write(record(q, r.Summary.Fit.Best))
+		}
+	}
+	w.Flush()
+	return b.Bytes(), w.Error()
+}
+
+func record(q result.Quantity, best map[string]result.Number) []string {
+	cell := func(x, mcse result.Number) string {
+		if v := float64(x); math.IsNaN(v) || math.IsInf(v, 0) {
+			return ""
+		}
+		return digits.Format(float64(x), digits.Place(math.NaN(), float64(mcse)))
+	}
+	at := ""
+	if v, ok := best[q.Name]; ok {
+		at = digits.Format(float64(v), place(float64(q.SD), 0)-2)
+	}
+	return []string{q.Name, q.Unit, cell(q.Mean, q.MCSE), cell(q.SD, q.MCSE), cell(q.Median, q.MCSE),
+		cell(q.Interval68[0], q.MCSE68[0]), cell(q.Interval68[1], q.MCSE68[1]),
+		cell(q.Interval95[0], q.MCSE95[0]), cell(q.Interval95[1], q.MCSE95[1]),
+		cell(q.HDI68[0], q.MCSE68[0]), cell(q.HDI68[1], q.MCSE68[1]),
+		at, digits.Error(float64(q.MCSE)), digits.Format(math.Floor(float64(q.ESS)), 0), digits.Format(float64(q.RHat), -4), strconv.FormatBool(q.Constrained)}
+}

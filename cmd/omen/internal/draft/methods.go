@@ -1,0 +1,168 @@
+package draft
+
+import (
+	"bytes"
+	"fmt"
+	"math"
+	"slices"
+	"strings"
+
+	"omen/cmd/omen/internal/digits"
+	"omen/cmd/omen/internal/gather"
+	"omen/cmd/omen/internal/job"
+	"omen/likelihood"
+)
+
+// Methods writes methods.md: how the numbers were found, in two paragraphs to
+// adapt, and the references that they name.
+func Methods(r *gather.Run) []byte {
+	var b bytes.Buffer
+	b.WriteString("<!-- Two paragraphs to adapt. Check every name and add the references of the data. -->\n\n")
+	if !r.Summary.Complete {
+		b.WriteString("**UNFINISHED: the run stopped before its goal.**\n\n")
+	}
+	fmt.Fprintf(&b, "%s\n\n%s\n\n", modelling(r), sampling(r))
+	b.WriteString("References: Goodman & Weare 2010, Commun. Appl. Math. Comput. Sci. 5, 65 (stretch move); " +
+		"Vehtari et al. 2021, Bayesian Anal. 16, 667 (R-hat); " +
+		"Carroll, Press & Turner 1992, ARA&A 30, 499, and Felten & Isaacman 1986, RMP 58, 689 (fates).\n")
+	if len(r.Summary.Warnings) > 0 {
+		b.WriteString("\nNot for the paper, but before it is sent:\n\n")
+		for _, w := range r.Summary.Warnings {
+			fmt.Fprintf(&b, "- %s\n", markdown(w))
+		}
+	}
+	return b.Bytes()
+}
+
+// modelling is the paragraph on data, model, likelihood and priors.
+func modelling(r *gather.Run) string {
+	var data, likes []string
+	for i := range r.Job.Tables {
+		data = append(data, table(&r.Job.Tables[i]))
+		if s := offset(r, i); s != "" {
+			likes = append(likes, s)
+		}
+	}
+	f := r.Job.Space.Family()
+	s := fmt.Sprintf("We fit %s to %d measurements: %s. ", universe(f), r.Summary.Fit.Rows, strings.Join(data, "; "))
+	s += "The likelihood of each table is Gaussian in the measured quantities; covariances are used in full, by their Cholesky factors. "
+	s += strings.Join(likes, "")
+	s += "Priors: " + priors(f) + "."
+	if f.RequireBigBang {
+		s += " Universes without a big bang in their past are excluded."
+	}
+	return s
+}
+
+// table describes one table: what, how many, at which redshifts, with what errors.
+func table(t *job.Table) string {
+	what := map[string]string{"supernovae": "type Ia supernovae", "bao": "BAO distance ratios", "ages": "ages of old objects", "rates": "expansion rates"}[t.Spec.Kind]
+	z := t.Z()
+	n := fmt.Sprintf("%d %s", len(z), what)
+	if s := t.Spec.StandsFor; s != nil && s.Rows > 0 {
+		n = fmt.Sprintf("%d magnitudes that stand for %d %s", len(z), s.Rows, what)
+	}
+	errs := "independent errors"
+	switch {
+	case t.Spec.Covariance != "" && t.Spec.CovarianceHolds == "added":
+		errs = "a covariance added to their own errors"
+	case t.Spec.Covariance != "":
+		errs = "their full covariance"
+	}
+	s := fmt.Sprintf("%s (%s at redshifts %.4g to %.4g, with %s", markdown(t.Name), n, slices.Min(z), slices.Max(z), errs)
+	if t.Spec.Keep != "" {
+		s += ", rows with " + code(t.Spec.Keep)
+	}
+	return s + ")"
+}
+
+// code is a text in a span of code, whatever it holds.
+func code(s string) string {
+	s = comment(s)
+	fence := "`"
+	for strings.Contains(s, fence) {
+		fence += "`"
+	}
+	if strings.HasPrefix(s, "`") || strings.HasSuffix(s, "`") {
+		s = " " + s + " "
+	}
+	return fence + s + fence
+}
+
+func offset(r *gather.Run, i int) string {
+	t := &r.Job.Tables[i]
+	if t.Supernovae == nil {
+		return ""
+	}
+	o, err := r.Job.Run.Offset(i)
+	switch {
+	case err != nil || o.Kind == likelihood.AbsoluteOffset:
+		return fmt.Sprintf("The distances of %s are taken as absolute. ", markdown(t.Name))
+	case o.Kind == likelihood.NormalOffset:
+		return fmt.Sprintf("For %s the absolute magnitude has a normal prior, %g ± %g mag, and is marginalised analytically. ", markdown(t.Name), o.Mean, o.SD)
+	}
+	return fmt.Sprintf("The common offset of the magnitudes of %s, in which the absolute magnitude and H0 are degenerate, is marginalised analytically over a flat prior. ", markdown(t.Name))
+}
+
+func universe(f likelihood.Family) string {
+	s := "a universe of matter, curvature and "
+	if f.Flat {
+		s = "a flat universe of matter and "
+	}
+	s += map[likelihood.DarkEnergy]string{likelihood.Constant: "a cosmological constant", likelihood.W: "dark energy of constant equation of state w0",
+		likelihood.W0Wa: "dark energy with w(a) = w0 + wa (1 - a)"}[f.DarkEnergy]
+	switch {
+	case f.FromTemperature:
+		s += ", with the radiation of a CMB temperature of 2.7255 K and 3.044 massless neutrinos,"
+	case f.Radiation > 0:
+		s += fmt.Sprintf(", with radiation Or = %g,", f.Radiation)
+	default:
+		s += ", radiation neglected,"
+	}
+	return s
+}
+
+func priors(f likelihood.Family) string {
+	var out []string
+	for _, p := range f.Free {
+		name := p.Name
+		if u := likelihood.Unit(name); u != "" {
+			name += " (" + u + ")"
+		}
+		out = append(out, name+" "+p.Prior.String())
+	}
+	for _, name := range likelihood.Names() {
+		if v, ok := f.Fixed[name]; ok {
+			out = append(out, fmt.Sprintf("%s fixed at %g", name, v))
+		}
+	}
+	return markdown(strings.Join(out, "; "))
+}
+
+// sampling is the paragraph on the chain, its convergence and the software.
+func sampling(r *gather.Run) string {
+	m := r.Summary.Sampling
+	worst := 0.0
+	for _, q := range r.Summary.Parameters {
+		worst = math.Max(worst, float64(q.MCSE)/float64(q.SD))
+	}
+	s := fmt.Sprintf("The posterior is sampled with the affine-invariant stretch move (Goodman & Weare 2010) in %d independent ensembles of %d walkers, "+
+		"started over-dispersed about the best fit, for %d steps, of which the first %d, chosen from the chain itself, are discarded. ",
+		m.Ensembles, m.Walkers, m.Steps, m.BurnIn)
+	s += fmt.Sprintf("The rank-normalised split R-hat over the ensembles (Vehtari et al. 2021) is at most %.4f, the effective sample size of every parameter at least %.0f; "+
+		"Monte Carlo errors of the means are below %s of the standard deviations. ", float64(m.MaxRHat), math.Floor(float64(m.MinESS)), percent(worst))
+	f := r.Summary.Fit
+	s += fmt.Sprintf("The best fit, the point of highest posterior density, has chi-squared %.2f for %d degrees of freedom. ", float64(f.Chi2), f.DoF)
+	s += "We quote posterior means with standard deviations, or medians with central 68% intervals where these are lopsided, and central 95% intervals. " +
+		"The probability of a fate is the share of the posterior whose universes meet it (Carroll, Press & Turner 1992; Felten & Isaacman 1986); where no sample does, the 95% upper limit is 3 over the effective sample size. "
+	return s + fmt.Sprintf("Computed with omen %s, seed %d.", markdown(r.Summary.Version), m.Seed)
+}
+
+// percent rounds up to one digit.
+func percent(x float64) string {
+	if !(x > 0) {
+		return "1%"
+	}
+	unit := math.Pow10(int(math.Floor(math.Log10(100 * x))))
+	return digits.Format(math.Ceil(100*x/unit)*unit, int(math.Floor(math.Log10(unit)+0.5))) + "%"
+}

@@ -1,0 +1,95 @@
+package draft
+
+import (
+	"bytes"
+	"fmt"
+	"math"
+	"strconv"
+
+	"omen/cmd/omen/internal/digits"
+	"omen/cmd/omen/internal/gather"
+	"omen/cmd/omen/internal/result"
+)
+
+// Numbers writes numbers.tex: a macro for every number. Their names begin with
+// omen, or with what the document gives as \omenprefix, so that the numbers of
+// several runs can stand in one text.
+func Numbers(r *gather.Run) []byte {
+	m := &macros{}
+	heading(&m.Buffer, r, "One macro for every number. In the preamble: \\input{numbers}",
+		"Several runs in one text: \\def\\omenprefix{flat}\\input{flat/numbers} makes \\flatOm and so on.",
+		"They work in text and in math mode.")
+	m.WriteString("\\providecommand{\\omenprefix}{omen}\n")
+	m.WriteString("\\providecommand{\\omendefine}[2]{\\expandafter\\newcommand\\csname\\omenprefix#1\\endcsname{\\ensuremath{#2}}}\n")
+	s := r.Summary
+	for _, q := range s.Parameters {
+		m.quantity(q)
+		if at, ok := s.Fit.Best[q.Name]; ok {
+			m.define(letters(q.Name)+"Best", number(float64(at), place(float64(q.SD), 0)-1))
+		}
+	}
+	for _, q := range s.Derived {
+		m.quantity(q)
+	}
+	for _, series := range []struct {
+		suffix string
+		fates  []result.Fate
+	}{{"", s.Fates}, {"HeldW", s.FatesHeldW}, {"Today", s.Today}} {
+		for _, f := range series.fates {
+			m.define("P"+letters(f.Name)+series.suffix, probability(f))
+		}
+	}
+	m.fit(s)
+	return m.Bytes()
+}
+
+type macros struct{ bytes.Buffer }
+
+func (m *macros) define(name, value string) { fmt.Fprintf(m, "\\omendefine{%s}{%s}\n", name, value) }
+
+func (m *macros) quantity(q result.Quantity) {
+	name := letters(q.Name)
+	if !q.Constrained {
+		m.define(name, `\mbox{not constrained}`)
+		return
+	}
+	mean := place(float64(q.SD), float64(q.MCSE))
+	m.define(name, newEstimate(q).tex())
+	m.define(name+"Mean", number(float64(q.Mean), mean))
+	m.define(name+"Sd", number(float64(q.SD), mean))
+	m.define(name+"Median", number(float64(q.Median), mean))
+	m.define(name+"LowSixtyEight", end(q, q.Interval68, q.MCSE68, 0))
+	m.define(name+"HighSixtyEight", end(q, q.Interval68, q.MCSE68, 1))
+	m.define(name+"LowNinetyFive", end(q, q.Interval95, q.MCSE95, 0))
+	m.define(name+"HighNinetyFive", end(q, q.Interval95, q.MCSE95, 1))
+}
+
+// fit defines the goodness of the best fit and the chain's own numbers.
+func (m *macros) fit(s *result.Summary) {
+	m.define("ChiSquared", number(float64(s.Fit.Chi2), -2))
+	m.define("Dof", strconv.Itoa(s.Fit.DoF))
+	m.define("Rows", strconv.Itoa(s.Fit.Rows))
+	if p := float64(s.Fit.Probability); !math.IsNaN(p) {
+		m.define("FitProbability", chance(p))
+	}
+	c := s.Sampling
+	m.define("EffectiveSamples", strconv.Itoa(int(math.Floor(float64(c.MinESS)))))
+	m.define("Rhat", digits.Format(float64(c.MaxRHat), -4))
+	m.define("Ensembles", strconv.Itoa(c.Ensembles))
+	m.define("Walkers", strconv.Itoa(c.Walkers))
+	m.define("Steps", strconv.Itoa(c.Steps))
+	m.define("BurnIn", strconv.Itoa(c.BurnIn))
+	m.define("Seed", strconv.FormatUint(c.Seed, 10))
+	m.define("Version", `\mbox{`+Escape(s.Version)+"}")
+}
+
+// chance is the probability of a chi-squared in math mode.
+func chance(p float64) string {
+	switch {
+	case p < 0.0005:
+		return "< 0.001"
+	case p > 0.9995:
+		return "> 0.999"
+	}
+	return fmt.Sprintf("%.3f", p)
+}

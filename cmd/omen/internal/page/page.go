@@ -1,0 +1,157 @@
+// Package page writes a result as one page to share: a single HTML file with its
+// figures inside, that asks nothing of a network and runs no script. It can be
+// read on a phone, in the dark, in print and by a screen reader.
+//
+// html/template escapes every name that comes from a file; a policy in the page
+// forbids whatever would slip through.
+package page
+
+import (
+	"bytes"
+	_ "embed"
+	"fmt"
+	"html/template"
+	"io"
+	"math"
+
+	"omen/cmd/omen/internal/digits"
+	"omen/cmd/omen/internal/figure"
+	"omen/cmd/omen/internal/gather"
+	"omen/cmd/omen/internal/report"
+	"omen/cmd/omen/internal/result"
+)
+
+//go:embed style.css
+var style string
+
+//go:embed report.html.tmpl
+var reportText string
+
+var reportTemplate = template.Must(template.New("report").Parse(reportText))
+
+// view is what the template shows.
+type view struct {
+	Title, Kind, Version, Unfinished string
+	Style                            template.CSS
+	Warnings, Words, Missing         []string
+	Blocks                           [][]quantity
+	Fates                            []shares
+	Figures                          []drawing
+	Fit, Chain                       string
+	Tables                           []table
+	Convergence                      []quantity
+	Assumptions                      []string
+	Inputs                           []result.InputFile
+	RunFile                          string
+}
+
+// quantity is a row of constraints and of convergence.
+type quantity struct {
+	Symbol                  template.HTML
+	Unit, Value, In68, In95 string
+	Constrained             bool
+	ESS, RHat, MCSE         string
+}
+
+// shares is a table of probabilities.
+type shares struct {
+	Name, What string
+	Rows       []share
+}
+
+type share struct{ Name, Probability, Percent string }
+
+// drawing is a figure, with a narrow version where the other is for a page.
+type drawing struct {
+	Name, Title, Caption string
+	SVG, Narrow          template.HTML
+}
+
+type table struct {
+	Name, Kind string
+	Rows       int
+	Chi2       string
+}
+
+// Report writes report.html.
+func Report(w io.Writer, r *gather.Run, pictures []*gather.Picture) error {
+	s := r.Summary
+	v := view{Title: s.Title, Kind: "Constraints on the universe and its fate", Version: s.Version, Style: template.CSS(style),
+		Warnings: s.Warnings, Words: words(r), Fit: fit(s), Chain: chain(s), Assumptions: s.Assumptions, Inputs: s.Inputs, RunFile: string(r.RunFile)}
+	if v.Title == "" {
+		v.Title = "A run without a title"
+	}
+	if !s.Complete {
+		v.Unfinished = "the run stopped before its goal"
+	}
+	for _, qs := range [][]result.Quantity{s.Parameters, s.Derived} {
+		var rows []quantity
+		for _, q := range qs {
+			rows = append(rows, newQuantity(q))
+		}
+		if len(rows) > 0 {
+			v.Blocks = append(v.Blocks, rows)
+			v.Convergence = append(v.Convergence, rows...)
+		}
+	}
+	for _, f := range r.Series() {
+		v.Fates = append(v.Fates, newShares(f.Name, "Fate", f.Fates))
+	}
+	v.Fates = append(v.Fates, newShares("today", "Statement", s.Today))
+	for _, t := range s.Fit.Tables {
+		v.Tables = append(v.Tables, table{t.Name, t.Kind, t.Rows, fmt.Sprintf("%.2f", float64(t.Chi2))})
+	}
+	for _, p := range pictures {
+		if p.Why != "" {
+			v.Missing = append(v.Missing, p.Title+" ("+p.Why+")")
+			continue
+		}
+		d, err := draw(p)
+		if err != nil {
+			return err
+		}
+		v.Figures = append(v.Figures, *d)
+	}
+	return reportTemplate.Execute(w, v)
+}
+
+// draw makes a figure part of the page.
+func draw(p *gather.Picture) (*drawing, error) {
+	d := &drawing{Name: p.Name, Title: p.Title, Caption: p.Caption}
+	inline := func(width figure.Width, id string) (template.HTML, error) {
+		f, err := p.Draw(width)
+		if err != nil {
+			return "", fmt.Errorf("figure %s: %w", p.Name, err)
+		}
+		var b bytes.Buffer
+		err = f.WriteInlineSVG(&b, id, p.Alt)
+		return template.HTML(b.String()), err // package figure escapes
+	}
+	var err error
+	if !p.Wide {
+		d.SVG, err = inline(figure.Column, "f-"+p.Name)
+		return d, err
+	}
+	if d.SVG, err = inline(figure.Page, "f-"+p.Name); err == nil {
+		d.Narrow, err = inline(figure.Column, "n-"+p.Name)
+	}
+	return d, err
+}
+
+func newQuantity(q result.Quantity) quantity {
+	return quantity{Symbol: symbol(q.Name), Unit: q.Unit, Value: report.MeanSD(q), In68: report.Interval(q.Interval68, q.MCSE68, q),
+		In95: report.Interval(q.Interval95, q.MCSE95, q), Constrained: q.Constrained,
+		ESS: digits.Format(math.Floor(float64(q.ESS)), 0), RHat: digits.Format(float64(q.RHat), -4), MCSE: digits.Error(float64(q.MCSE))}
+}
+
+func newShares(name, what string, fates []result.Fate) shares {
+	s := shares{Name: name, What: what}
+	for _, f := range fates {
+		p := float64(f.Probability)
+		if math.IsNaN(p) {
+			p = 0
+		}
+		s.Rows = append(s.Rows, share{f.Name, report.Probability(f), fmt.Sprintf("%.1f", 100*p)})
+	}
+	return s
+}

@@ -1,0 +1,164 @@
+package page
+
+import (
+	"fmt"
+	"html/template"
+	"math"
+	"strings"
+
+	"omen/cmd/omen/internal/gather"
+	"omen/cmd/omen/internal/report"
+	"omen/cmd/omen/internal/result"
+	"omen/likelihood"
+)
+
+// symbols are quantities as a page shows them; others keep their names.
+var symbols = map[string]template.HTML{
+	"Om": "Ω<sub>m</sub>", "OL": "Ω<sub>Λ</sub>", "Ok": "Ω<sub>k</sub>", "Or": "Ω<sub>r</sub>",
+	"H0": "<i>H</i><sub>0</sub>", "w0": "<i>w</i><sub>0</sub>", "wa": "<i>w</i><sub>a</sub>", "q0": "<i>q</i><sub>0</sub>",
+	"rd": "<i>r</i><sub>d</sub>", "hrd": "<i>h r</i><sub>d</sub>", "ob": "Ω<sub>b</sub><i>h</i><sup>2</sup>", "M": "<i>M</i>",
+	"age": "<i>t</i><sub>0</sub>", "H0t0": "<i>H</i><sub>0</sub><i>t</i><sub>0</sub>",
+}
+
+func symbol(name string) template.HTML {
+	if s, ok := symbols[name]; ok {
+		return s
+	}
+	return template.HTML(template.HTMLEscapeString(name))
+}
+
+// words is the result in a few sentences.
+func words(r *gather.Run) []string {
+	s := r.Summary
+	return []string{constraints(r), fate(s), today(r), fit(s), chain(s)}
+}
+
+func constraints(r *gather.Run) string {
+	var known, open []string
+	for _, q := range r.Summary.Parameters {
+		if q.Constrained {
+			known = append(known, gather.Value(q))
+		} else {
+			open = append(open, q.Name)
+		}
+	}
+	if !r.Job.Space.Family().Flat {
+		if q, ok := gather.Find(r.Summary, "Ok"); ok {
+			known = append(known, gather.Value(q))
+		}
+	}
+	s := "In " + universe(r.Job.Space.Family()) + " these data give " + join(known) + "."
+	if len(known) == 0 {
+		s = "In " + universe(r.Job.Space.Family()) + " these data constrain no parameter."
+	}
+	if len(open) > 0 {
+		s += " They do not constrain " + join(open) + "."
+	}
+	return s
+}
+
+func universe(f likelihood.Family) string {
+	shape := "a universe, curved or not, of matter and "
+	if f.Flat {
+		shape = "a flat universe of matter and "
+	}
+	switch f.DarkEnergy {
+	case likelihood.W:
+		return shape + "dark energy of constant w"
+	case likelihood.W0Wa:
+		return shape + "dark energy whose w may change"
+	}
+	return shape + "a cosmological constant"
+}
+
+// fate names the most probable end, and how sure it is.
+func fate(s *result.Summary) string {
+	if len(s.Fates) == 0 {
+		return "No fate was determined."
+	}
+	best := s.Fates[0]
+	for _, f := range s.Fates {
+		if f.Probability > best.Probability {
+			best = f
+		}
+	}
+	p := report.Probability(best)
+	switch {
+	case best.Probability > 0.95:
+		return fmt.Sprintf("Its fate, almost surely: it %s (probability %s).", verb(best.Name), p)
+	case best.Probability > 0.5:
+		return fmt.Sprintf("Its most probable fate: it %s (probability %s).", verb(best.Name), p)
+	}
+	return fmt.Sprintf("No fate is more probable than not; the first is that it %s (probability %s).", verb(best.Name), p)
+}
+
+// verb makes the name of a fate the end of a sentence.
+func verb(name string) string {
+	switch {
+	case strings.HasPrefix(name, "recollapse"):
+		return "recollapses" + strings.TrimPrefix(name, "recollapse")
+	case strings.HasPrefix(name, "expands"):
+		return name
+	case name == "no big bang in the past":
+		return "had no big bang in its past"
+	case name == "big rip":
+		return "ends in a big rip"
+	}
+	return "is " + name
+}
+
+func today(r *gather.Run) string {
+	var parts []string
+	for _, f := range r.Summary.Today {
+		parts = append(parts, f.Name+" with probability "+report.Probability(f))
+	}
+	s := "Today it is " + join(parts) + "."
+	if q, ok := gather.Find(r.Summary, "age"); ok {
+		return s + " It is " + report.MeanSD(q) + " Gyr old."
+	}
+	if q, ok := gather.Find(r.Summary, "H0t0"); ok {
+		return s + " Its age is " + report.MeanSD(q) + " in units of 1/H0, which these data do not know."
+	}
+	return s
+}
+
+func fit(s *result.Summary) string {
+	f := s.Fit
+	return fmt.Sprintf("The best fit has chi-squared %.2f for %d rows and %d degrees of freedom; a larger one has probability %s.",
+		float64(f.Chi2), f.Rows, f.DoF, chance(float64(f.Probability)))
+}
+
+func chain(s *result.Summary) string {
+	m := s.Sampling
+	state := "The chain converged"
+	if !s.Complete {
+		state = "The chain has not reached its goal"
+	}
+	return fmt.Sprintf("%s: %d ensembles of %d walkers, %d steps, the first %d discarded; effective samples %.0f at least (goal %d), R-hat %.4f at most; acceptance %.2f; seed %d.",
+		state, m.Ensembles, m.Walkers, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), float64(m.Acceptance), m.Seed)
+}
+
+// join writes a list in words.
+func join(list []string) string {
+	switch n := len(list); n {
+	case 0:
+		return "nothing"
+	case 1:
+		return list[0]
+	default:
+		return strings.Join(list[:n-1], ", ") + " and " + list[n-1]
+	}
+}
+
+// chance is the probability of a chi-squared.
+func chance(p float64) string {
+	switch {
+	case math.IsNaN(p):
+		return "unknown"
+	case p < 0.0005:
+		return "< 0.001"
+	case p > 0.9995:
+		return "> 0.999"
+	}
+	return fmt.Sprintf("%.3f", p)
+}
