@@ -81,6 +81,14 @@ func pilot(ctx context.Context, p Problem, g guess, workers []*worker, r *Result
 func (r *Result) passes(ctx context.Context, p Problem, o Options, g guess, workers []*worker) error {
 	var logs []float64
 	for i := range p.Lo {
+		if o.Passes > 0 && i >= o.Passes {
+			m, err := r.Nodes.Marginal(func(x []float64) float64 { return x[i] })
+			if err != nil {
+				return err
+			}
+			r.Marginals = append(r.Marginals, m)
+			continue
+		}
 		q := newPass(p, i, g)
 		q.relative, q.relativeClass, q.rarest = o.Tolerance, o.ClassTolerance, o.Rarest
 		if i == 0 {

@@ -78,9 +78,20 @@ func (p *pass) guessScales(mass float64) {
 	}
 }
 
-// cuts returns the edges of the box of a level and, between them, the conditional mean ± 2 and ± 6
-// conditional standard deviations, given the coordinates outside: pieces on which the rule sees a Gaussian
-// to a relative 1e-8 at once. Cuts that would make a sliver are left out. Hints from outside are further cuts.
+// sections returns where a level is cut, in conditional standard deviations from the conditional mean: pieces
+// on which the rule sees a Gaussian well within the tolerance at once.
+func (p *pass) sections() []float64 {
+	switch {
+	case p.relative >= 1e-3: // to some 1e-3
+		return []float64{-6, 6}
+	case p.relative >= 1e-5: // 1e-6
+		return []float64{-6, 0, 6}
+	}
+	return []float64{-6, -2, 2, 6} // 1e-8
+}
+
+// cuts returns the edges of the box of a level and, between them, the sections about the conditional mean given
+// the coordinates outside. Cuts that would make a sliver are left out. Hints from outside are further cuts.
 func (w *worker) cuts(level int) []float64 {
 	var z [3]float64
 	var mean float64
@@ -93,7 +104,7 @@ func (w *worker) cuts(level int) []float64 {
 	}
 	sd := w.chol.At(level, level)
 	c := append(w.buf[level][:0], w.lo[level])
-	for _, k := range [...]float64{-6, -2, 2, 6} {
+	for _, k := range w.sections() {
 		if t := mean + k*sd; t > w.lo[level]+sd && t < w.hi[level]-sd {
 			c = append(c, t)
 		}
