@@ -35,6 +35,7 @@ const ReferenceH0 = 70
 // Family describes a set of universes before it is checked.
 type Family struct {
 	Flat             bool       // OL follows from Om; OL is then no parameter
+	Critical         bool       // matter and radiation alone, flat: Om follows from Or; nothing else has parameters
 	DarkEnergy       DarkEnergy // which of w0, wa exist
 	FromTemperature  bool       // Or from the CMB temperature; otherwise Radiation
 	Radiation        float64    // Or today where FromTemperature is false
@@ -89,7 +90,7 @@ func Unit(name string) string {
 
 // NewSpace checks a family and orders its free parameters as Names does. The
 // errors are a user's: a parameter that the family does not have, one given
-// twice, one missing.
+// twice, one missing. A family without a free parameter is a single universe.
 func NewSpace(f Family) (*Space, error) {
 	if err := checkFamily(f); err != nil {
 		return nil, err
@@ -143,14 +144,14 @@ func checkFamily(f Family) error {
 			return fmt.Errorf("%s is not a parameter; the parameters are %s", name, strings.Join(Names(), ", "))
 		}
 	}
-	if len(f.Free) == 0 {
-		return fmt.Errorf("no parameter is free; give at least one of them a prior")
-	}
 	return checkGiven(f, given)
 }
 
 func checkGiven(f Family, given map[string]bool) error {
 	switch {
+	case f.Critical && (given["Om"] || given["OL"] || f.DarkEnergy != Constant):
+		return fmt.Errorf("a critical universe is made of matter and radiation alone, which leaves Om and dark energy no freedom; remove them")
+	case f.Critical:
 	case !given["Om"]:
 		return fmt.Errorf("Om is missing; give it a prior or a fixed value")
 	case f.Flat && given["OL"]:
@@ -217,6 +218,9 @@ func (s *Space) Point(x []float64, p *Point) {
 	if s.family.Flat {
 		u.OL = 1 - u.Om - u.Or
 	}
+	if s.family.Critical {
+		u.Om, u.OL = 1-u.Or, 0
+	}
 	u.W0, u.Wa = s.w0.at(x), s.wa.at(x)
 	p.M = s.mb.at(x)
 	p.HRd = s.soundHorizon(u, x)
@@ -235,6 +239,9 @@ func (s *Space) soundHorizon(u *model.Universe, x []float64) float64 {
 	}
 	return rd * u.H0 / 100
 }
+
+// Allows reports whether the family admits a universe, whatever the priors say of it.
+func (s *Space) Allows(u *model.Universe) bool { return s.allowed(u) }
 
 // allowed reports whether the family admits the universe.
 func (s *Space) allowed(u *model.Universe) bool {

@@ -2,6 +2,7 @@ package runfile
 
 import (
 	"fmt"
+	"maps"
 	"math"
 	"slices"
 	"strings"
@@ -28,8 +29,40 @@ func (r *Run) check() error {
 	if err := r.checkSampling(); err != nil {
 		return err
 	}
-	_, err := r.Family()
-	return err
+	f, err := r.Family()
+	if err != nil {
+		return err
+	}
+	if r.Sampling.Engine == "quadrature" && len(f.Free) > MostExact {
+		return r.Errorf("sampling.engine", "quadrature goes to %d free parameters, this run has %d; choose engine = \"chain\", or hold parameters fixed", MostExact, len(f.Free))
+	}
+	return r.checkFates()
+}
+
+// MostExact is the number of free parameters up to which a posterior can be
+// integrated by quadrature.
+const MostExact = 3
+
+func (r *Run) checkFates() error {
+	for _, name := range slices.Sorted(maps.Keys(r.Fates.Odds)) {
+		key := "fates.odds." + name
+		if err := r.oneOf(key, name, Nested()...); err != nil {
+			return err
+		}
+		if v := r.Fates.Odds[name]; !(v >= 0) || math.IsInf(v, 0) {
+			return r.Errorf(key, "%s: found %v, expected prior odds, 0 or more", key, v)
+		}
+	}
+	if v := r.Fates.Ahead; !(v >= 0) || v > 1000 {
+		return r.Errorf("fates.ahead", "fates.ahead: found %v, expected 0 or up to 1000 Hubble times", v)
+	}
+	return nil
+}
+
+// Nested lists the names of the nested universes, from the simplest on.
+func Nested() []string {
+	return []string{"coasting", "critical", "matter-only", "flat-lambda", "curved-lambda",
+		"flat-w", "curved-w", "flat-w0-wa", "curved-w0-wa"}
 }
 
 // oneOf checks a word against the ones that are known.
@@ -79,6 +112,9 @@ func (r *Run) checkData(i int) error {
 
 func (r *Run) checkSampling() error {
 	s := r.Sampling
+	if err := r.oneOf("sampling.engine", s.Engine, "both", "chain", "quadrature"); err != nil {
+		return err
+	}
 	switch {
 	case s.Ensembles < 2:
 		return r.Errorf("sampling.ensembles", "found %d ensembles; convergence is judged by comparing at least 2 (4 is the default)", s.Ensembles)
@@ -109,6 +145,9 @@ func (r *Run) Family() (likelihood.Family, error) {
 	}
 	if _, err := likelihood.NewSpace(f); err != nil {
 		return f, r.Errorf("prior", "%v", err)
+	}
+	if len(f.Free) == 0 {
+		return f, r.Errorf("prior", "no parameter is free; give at least one of them a prior")
 	}
 	return f, nil
 }

@@ -8,12 +8,13 @@ import (
 	"github.com/pelletier/go-toml/v2"
 )
 
-// goals are the keys of [sampling] that say when a run ends and how often it is
-// made safe. The steps of a chain do not depend on them.
-var goals = []string{"effective-samples", "max-steps", "max-time", "sync-interval"}
+// goals are the keys of [sampling] that say when a run ends, how often it is made
+// safe and what is computed beside its chain. The steps of a chain do not depend
+// on them.
+var goals = []string{"engine", "effective-samples", "max-steps", "max-time", "sync-interval"}
 
 // Identity is the SHA-256, in hexadecimal, of what a resolved run file says a
-// chain depends on: all but the goals, and the paths of the inputs, which have
+// chain depends on: all but the goals, [fates], and the paths of the inputs, which have
 // hashes of their own. Comments, blanks and the order of keys do not count.
 func Identity(text []byte) (string, error) {
 	tree := map[string]any{}
@@ -25,6 +26,7 @@ func Identity(text []byte) (string, error) {
 			delete(sampling, key)
 		}
 	}
+	delete(tree, "fates")
 	tables, _ := tree["data"].([]any)
 	for _, t := range tables {
 		if table, ok := t.(map[string]any); ok {

@@ -19,6 +19,7 @@ type Run struct {
 	Prior    map[string]any `toml:"prior" comment:"name = { flat = [a, b] }, { normal = [mean, sd] }, { log-flat = [a, b] }, or a fixed number"`
 	Data     []Data         `toml:"data"`
 	Sampling Sampling       `toml:"sampling"`
+	Fates    Fates          `toml:"fates"`
 
 	File  string         `toml:"-"` // where it was read, for messages
 	lines map[string]int // dotted key -> line
@@ -55,6 +56,7 @@ type StandsFor struct {
 
 // Sampling says how the posterior is explored and when it is enough.
 type Sampling struct {
+	Engine           string   `toml:"engine" comment:"chain, quadrature, or both: quadrature goes to 3 free parameters"`
 	Seed             uint64   `toml:"seed"`
 	Ensembles        int      `toml:"ensembles" comment:"independent of each other"`
 	Walkers          int      `toml:"walkers" comment:"in each ensemble; 0 chooses by the number of parameters"`
@@ -63,6 +65,13 @@ type Sampling struct {
 	MaxTime          Duration `toml:"max-time" comment:"such as 8h; 0s for no limit"`
 	RecordEvery      int      `toml:"record-every" comment:"steps from one row of chain.csv to the next"`
 	SyncInterval     Duration `toml:"sync-interval" comment:"how much work a power cut may undo"`
+}
+
+// Fates says how the fates are reckoned beyond the run's own family.
+type Fates struct {
+	Nested bool               `toml:"nested" comment:"compare with the simpler universes that the family contains"`
+	Ahead  float64            `toml:"ahead" comment:"how far history.csv looks ahead, in units of 1/H0; 0 chooses by the best fit"`
+	Odds   map[string]float64 `toml:"odds,omitempty" comment:"prior odds of the nested universes; those not named have 1"`
 }
 
 // Duration is a time.Duration written as in 90s or 8h30m.
@@ -86,7 +95,8 @@ func Default() Run {
 	return Run{
 		Universe: Universe{Geometry: "curved", DarkEnergy: "constant", Radiation: "from-temperature",
 			RequireBigBang: true, RequireMatterEra: true},
-		Sampling: Sampling{Seed: 1, Ensembles: 4, EffectiveSamples: 4000, MaxSteps: 1_000_000,
+		Fates: Fates{Nested: true},
+		Sampling: Sampling{Engine: "both", Seed: 1, Ensembles: 4, EffectiveSamples: 4000, MaxSteps: 1_000_000,
 			RecordEvery: 1, SyncInterval: Duration(3 * time.Second)},
 	}
 }
