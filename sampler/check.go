@@ -55,16 +55,44 @@ func (c Check) RHat() float64 {
 	return worst
 }
 
-// enoughRows is to how many steps a chain is thinned before it is judged and
-// summarised, at least. A chain that passes is some 25 autocorrelation times
-// long or more, so that neighbouring rows still repeat each other.
-const enoughRows = 1024
+// To how many steps a chain is thinned, at least, before it is judged and
+// summarised (enoughRows: a chain that passes is some 25 autocorrelation times
+// long or more, so that neighbouring rows still repeat each other), and before it
+// is glanced at.
+const (
+	enoughRows = 1024
+	glanceRows = 128
+)
 
 // Assess measures the convergence of a chain, on at most s.Threads goroutines.
 // It reads the record alone, so a restored chain is judged like the original.
 func Assess(c *Chain, s Settings) Check {
+	check := assess(c, s, max(enoughRows, c.rowsFor(8*s.Effective)))
+	check.Converged = check.passes(s)
+	return check
+}
+
+// glance is Assess at a fraction of its cost, for chains that are clearly too
+// short. Its effective sample sizes are a little too small: of two draws for
+// every effective one that is asked for, some 8% of the information is lost
+// between the rows (AR(1) series at its goal).
+func glance(c *Chain, s Settings) Check {
+	return assess(c, s, max(glanceRows, c.rowsFor(2*s.Effective)))
+}
+
+// nearly is the fraction of the goal from which on a glance is not enough.
+const nearly = 0.8
+
+// hopeless reports whether a glance has shown that the goal is not met.
+func (c Check) hopeless(s Settings) bool { return s.Effective <= 0 || c.ESS() < nearly*s.Effective }
+
+// rowsFor is how many rows of a chain hold a number of draws.
+func (c *Chain) rowsFor(draws float64) int { return int(draws / float64(len(c.x)*c.walkers)) }
+
+// assess measures the convergence of a chain thinned to a number of rows.
+func assess(c *Chain, s Settings, rows int) Check {
 	v := c.View()
-	v = v.Thin(max(1, v.n/v.rowsFor(s.Effective)))
+	v = v.Thin(max(1, v.n/rows))
 	all := make([]Draws, v.dim)
 	each(v.dim, s.Threads, func(i int) { all[i] = v.Coordinate(i) })
 	drop := burnIn(v.LogDensity(), all)
@@ -81,14 +109,7 @@ func Assess(c *Chain, s Settings) Check {
 		m := measure(d)
 		check.Parameters[i] = Convergence{ESS: m.ess(), RHat: RHat(d), Tau: m.tau}
 	})
-	check.Converged = check.passes(s)
 	return check
-}
-
-// rowsFor is how many rows of a view hold some effective samples with room to
-// spare: eight times as many draws.
-func (v View) rowsFor(ess float64) int {
-	return max(enoughRows, int(8*ess/float64(len(v.x)*v.walkers)))
 }
 
 // passes applies the tests of convergence; the caller's own comes last because

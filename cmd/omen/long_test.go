@@ -1,0 +1,7 @@
+//go:build long
+
+package main
+
+import "testing"
+
+func TestLongKilledAndResumed(t *testing.T) { testKills(t, 50) }
