@@ -122,7 +122,9 @@ func nonempty(s string) []string {
 }
 
 // wants reports whether a part is asked for.
-func (o reportOptions) wants(part string) bool { return len(o.only) == 0 || slices.Contains(o.only, part) }
+func (o reportOptions) wants(part string) bool {
+	return len(o.only) == 0 || slices.Contains(o.only, part)
+}
 
 // figures are the names of those to make; the page shows all of them.
 func (o reportOptions) figures() []string {
@@ -147,7 +149,7 @@ func writeReport(r *gather.Run, o reportOptions) (string, error) {
 		return "", err
 	}
 	var b strings.Builder
-	fmt.Fprintf(&b, "In %s: %s\n", r.Dir, strings.Join(names(files), ", "))
+	b.WriteString(told(r.Dir, files))
 	for _, p := range pictures {
 		if p.Why != "" && o.wants(p.Name) {
 			fmt.Fprintf(&b, "  no figure %s: %s\n", p.Name, p.Why)
@@ -179,18 +181,30 @@ type file struct {
 	content []byte
 }
 
-// names lists files, the formats of a figure together.
-func names(files []file) []string {
-	var out []string
+// told lists the files in a folder, a line for each folder in it.
+func told(dir string, files []file) string {
+	var texts, figures, formats []string
 	for _, f := range files {
-		ext := filepath.Ext(f.path)
-		if n := len(out); n > 0 && strings.HasPrefix(out[n-1], strings.TrimSuffix(f.path, ext)+".") {
-			out[n-1] += "/" + ext[1:]
+		if filepath.Dir(f.path) == "." {
+			texts = append(texts, f.path)
 			continue
 		}
-		out = append(out, filepath.ToSlash(f.path))
+		ext := filepath.Ext(f.path)
+		if name := strings.TrimSuffix(filepath.Base(f.path), ext); !slices.Contains(figures, name) {
+			figures = append(figures, name)
+		}
+		if !slices.Contains(formats, ext[1:]) {
+			formats = append(formats, ext[1:])
+		}
 	}
-	return out
+	s := ""
+	if len(texts) > 0 {
+		s += fmt.Sprintf("In %s: %s\n", dir, strings.Join(texts, ", "))
+	}
+	if len(figures) > 0 {
+		s += fmt.Sprintf("In %s: %s (%s)\n", filepath.Join(dir, "figures"), strings.Join(figures, ", "), strings.Join(formats, ", "))
+	}
+	return s
 }
 
 // render makes all files in memory, several at a time.

@@ -100,11 +100,8 @@ func Constraints(r *gather.Run) []byte {
 		row(&b, q, math.NaN(), false)
 	}
 	b.WriteString("\\midrule\n")
-	for _, f := range s.Fates {
-		fmt.Fprintf(&b, "$P$(%s) & $%s$ & & \\\\\n", Escape(f.Name), probability(f))
-	}
-	for _, f := range s.Today {
-		fmt.Fprintf(&b, "$P$(%s today) & $%s$ & & \\\\\n", Escape(f.Name), probability(f))
+	for _, f := range append(s.Fates[:len(s.Fates):len(s.Fates)], s.Today...) {
+		fmt.Fprintf(&b, "$P$(%s) & $%s$ & & \\\\\n", Escape(event(f.Name)), probability(f))
 	}
 	b.WriteString("\\bottomrule\n\\end{tabular}\n")
 	if !s.Complete {
@@ -130,10 +127,10 @@ func row(b *bytes.Buffer, q result.Quantity, best float64, known bool) {
 	fmt.Fprintf(b, "%s & $%s$ & $[%s, %s]$ & %s \\\\\n", name, e.tex(), end(q, q.Interval95, q.MCSE95, 0), end(q, q.Interval95, q.MCSE95, 1), at)
 }
 
-// end is one end of an interval, with the digits that its own Monte Carlo error
-// leaves it.
+// end is one end of an interval, to the second digit of the spread or what its
+// own Monte Carlo error leaves of it.
 func end(q result.Quantity, ends, mcse [2]result.Number, i int) string {
-	return number(float64(ends[i]), place(float64(q.SD), float64(mcse[i])))
+	return number(float64(ends[i]), digits.Place(float64(q.SD), float64(mcse[i])))
 }
 
 // probability is a probability in math mode, with its error or as a limit.
@@ -146,6 +143,15 @@ func probability(f result.Fate) string {
 		return "> " + digits.Format(1-up, place(up, 0))
 	}
 	return strings.ReplaceAll(digits.Share(p, e), "±", `\pm`)
+}
+
+// event is the name of a fate or statement without its explanation.
+func event(name string) string {
+	name, _, _ = strings.Cut(name, " (")
+	if name == "accelerating" {
+		name += " today"
+	}
+	return name
 }
 
 // scientific writes a small number with two digits.

@@ -62,7 +62,7 @@ func markdown(s string) string {
 			b.WriteString("&gt;")
 		case r == '&':
 			b.WriteString("&amp;")
-		case strings.ContainsRune("\\`*_{}[]()#!|~$", r):
+		case strings.ContainsRune("\\`*_[]#|~$", r):
 			b.WriteByte('\\')
 			b.WriteRune(r)
 		default:

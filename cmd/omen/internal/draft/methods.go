@@ -136,7 +136,7 @@ func priors(f likelihood.Family) string {
 			out = append(out, fmt.Sprintf("%s fixed at %g", name, v))
 		}
 	}
-	return markdown(strings.Join(out, "; "))
+	return strings.Join(out, "; ")
 }
 
 // sampling is the paragraph on the chain, its convergence and the software.

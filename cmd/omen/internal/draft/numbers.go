@@ -34,9 +34,9 @@ func Numbers(r *gather.Run) []byte {
 	for _, series := range []struct {
 		suffix string
 		fates  []result.Fate
-	}{{"", s.Fates}, {"HeldW", s.FatesHeldW}, {"Today", s.Today}} {
+	}{{"", s.Fates}, {"HeldW", s.FatesHeldW}, {"", s.Today}} {
 		for _, f := range series.fates {
-			m.define("P"+letters(f.Name)+series.suffix, probability(f))
+			m.define("P"+letters(event(f.Name))+series.suffix, probability(f))
 		}
 	}
 	m.fit(s)

@@ -11,8 +11,8 @@ import (
 // How often convergence is looked at over the course of the run, and of how many
 // draws.
 const (
-	looks     = 14
-	lookDraws = 6000
+	looks     = 12
+	lookDraws = 40000
 )
 
 // rhatGoal is the criterion of Vehtari et al. (2021, Bayesian Anal. 16, 667).
@@ -42,7 +42,7 @@ func (r *Run) convergence() (*Picture, error) {
 		"Below, the autocorrelation of these means, and over the steps the largest R-hat and the smallest number of effective samples of all parameters, with their goals."
 	alt := fmt.Sprintf("Traces of %d ensembles over %d steps, the first %d burn-in. Effective samples %.0f at least, goal %d; R-hat %.4f at most.",
 		m.Ensembles, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat))
-	return &Picture{Caption: caption, Alt: alt, Wide: true, Draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawConvergence(in, w) }}, nil
+	return &Picture{Caption: caption, Alt: alt, Wide: true, draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawConvergence(in, w) }}, nil
 }
 
 // means are the means over the walkers of each ensemble at every step.
@@ -122,7 +122,7 @@ func (r *Run) checks() []figure.Check {
 		if k == looks { // as the run's own check has it, which looks at more draws
 			c.Rhat, c.ESS = r.Outcome.Check.RHat(), r.Outcome.Check.ESS()
 		}
-		if !math.IsNaN(c.Rhat) && !math.IsNaN(c.ESS) && !math.IsInf(c.Rhat, 0) {
+		if c.ESS > 0 && !math.IsInf(c.ESS, 0) && c.Rhat >= 1 && !math.IsInf(c.Rhat, 0) { // what a short part cannot tell is left out
 			out = append(out, c)
 		}
 	}

@@ -37,7 +37,7 @@ func (r *Run) fates() (*Picture, error) {
 		words = append(words, f.Name+" "+report.Probability(f))
 	}
 	return &Picture{Caption: "The probability of each fate with its Monte Carlo error. An open bar with an arrow is an upper limit: no draw of the posterior has that fate.",
-		Alt: "Probabilities: " + strings.Join(words, "; ") + ".", Draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawFates(in, w) }}, nil
+		Alt: "Probabilities: " + strings.Join(words, "; ") + ".", draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawFates(in, w) }}, nil
 }
 
 // FateSeries is one table of fates under a name.

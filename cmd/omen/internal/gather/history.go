@@ -49,7 +49,7 @@ func (r *Run) history() (*Picture, error) {
 	in.Scale = b.figure(at)
 	in.Top = top(at)
 	in.Moments = h.moments(best)
-	return &Picture{Caption: h.caption(), Alt: h.alt(best), Draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawHistory(in, w) }}, nil
+	return &Picture{Caption: h.caption(), Alt: h.alt(best), draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawHistory(in, w) }}, nil
 }
 
 type history struct {

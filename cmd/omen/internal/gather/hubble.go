@@ -34,7 +34,7 @@ func (r *Run) hubble() (*Picture, error) {
 	if err != nil {
 		return nil, err
 	}
-	return &Picture{Caption: h.caption(), Alt: h.alt(in), Draw: func(w figure.Width) (*figure.Figure, error) {
+	return &Picture{Caption: h.caption(), Alt: h.alt(in), draw: func(w figure.Width) (*figure.Figure, error) {
 		return figure.DrawHubble(*in, w)
 	}}, nil
 }
@@ -254,7 +254,7 @@ func (h *hubble) caption() string {
 		b.WriteString("every universe is drawn with the zero point that fits it best. Errors are square roots of the covariance's diagonal. ")
 	}
 	if len(h.bao) > 0 {
-		b.WriteString("BAO ratios are shown relative to the best fit; D_M, D_H and D_V are the transverse, Hubble and averaged distances, r_d the sound horizon. ")
+		b.WriteString("BAO ratios are shown relative to the best fit: the transverse (M), Hubble (H) and averaged (V) distance over the sound horizon. ")
 	}
 	return strings.TrimSpace(b.String())
 }

@@ -49,7 +49,7 @@ func (r *Run) marginals() (*Picture, error) {
 		caption += " " + count(left, "parameter") + " more would not fit."
 	}
 	return &Picture{Caption: caption, Alt: "Marginal posteriors: " + r.values(names...) + ".", Wide: len(in.Parameters) > 3,
-		Draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawMarginals(in, w) }}, nil
+		draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawMarginals(in, w) }}, nil
 }
 
 func parameter(name string, d sampler.Draws) figure.Parameter {

@@ -15,7 +15,29 @@ type Picture struct {
 	Alt     string // what it says, with the numbers
 	Wide    bool   // cannot be read at the width of a column
 	Why     string // why there is no such figure of this run; the rest is then empty
-	Draw    func(figure.Width) (*figure.Figure, error)
+
+	draw  func(figure.Width) (*figure.Figure, error)
+	lock  sync.Mutex
+	drawn map[figure.Width]*figure.Figure
+}
+
+// Draw draws the figure, once for each width: the density estimates behind it
+// serve all formats.
+func (p *Picture) Draw(w figure.Width) (*figure.Figure, error) {
+	p.lock.Lock()
+	defer p.lock.Unlock()
+	if f := p.drawn[w]; f != nil {
+		return f, nil
+	}
+	f, err := p.draw(w)
+	if err != nil {
+		return nil, err
+	}
+	if p.drawn == nil {
+		p.drawn = map[figure.Width]*figure.Figure{}
+	}
+	p.drawn[w] = f
+	return f, nil
 }
 
 // picture makes one figure of a run: its caption and input, or why there is none.

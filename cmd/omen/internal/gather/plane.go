@@ -38,8 +38,9 @@ func (r *Run) plane() (*Picture, error) {
 	}
 	in.Sets = append(in.Sets, set(name, s, r.sample(planeDraws), r.Outcome.Check, r.Best))
 	in.Dividers = dividers(s)
+	in.Frame = frame(in.Sets, in.XEdges, in.YEdges)
 	caption := r.planeCaption(&in) + left
-	return &Picture{Caption: caption, Alt: r.planeAlt(), Draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawPlane(in, w) }}, nil
+	return &Picture{Caption: caption, Alt: r.planeAlt(), draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawPlane(in, w) }}, nil
 }
 
 func index(s *likelihood.Space, name string) int {
@@ -87,6 +88,25 @@ func set(name string, s *likelihood.Space, v sampler.View, c sampler.Check, best
 		out.Best = &[2]float64{best[om], best[ol]}
 	}
 	return out
+}
+
+// The part of the plane that is always shown: the lines between the fates run
+// through it.
+var always = [4]float64{0, 0.9, -0.25, 1.6}
+
+// frame is that part, wider where a set needs it, within the priors.
+func frame(sets []figure.Set, x, y density.Edges) *[4]float64 {
+	f := always
+	for _, s := range sets {
+		xs, ys := slices.Sorted(slices.Values(s.X)), slices.Sorted(slices.Values(s.Y))
+		reach := func(v []float64, lo, hi *float64) { // all but a few draws, with a margin
+			a, b := quantile(v, 0.005), quantile(v, 0.995)
+			*lo, *hi = min(*lo, a-0.08*(b-a)), max(*hi, b+0.08*(b-a))
+		}
+		reach(xs, &f[0], &f[1])
+		reach(ys, &f[2], &f[3])
+	}
+	return &[4]float64{max(f[0], x.Lo), min(f[1], x.Hi), max(f[2], y.Lo), min(f[3], y.Hi)}
 }
 
 // dividers are the lines between kinds of universe. All but that of flat space

@@ -33,11 +33,12 @@ var reportTemplate = template.Must(template.New("report").Parse(reportText))
 type view struct {
 	Title, Kind, Version, Unfinished string
 	Style                            template.CSS
-	Warnings, Words, Missing         []string
+	Warnings, Missing                []string
+	Words                            []template.HTML
 	Blocks                           [][]quantity
 	Fates                            []shares
 	Figures                          []drawing
-	Fit, Chain                       string
+	Chain                            template.HTML
 	Tables                           []table
 	Convergence                      []quantity
 	Assumptions                      []string
@@ -47,10 +48,11 @@ type view struct {
 
 // quantity is a row of constraints and of convergence.
 type quantity struct {
-	Symbol                  template.HTML
-	Unit, Value, In68, In95 string
-	Constrained             bool
-	ESS, RHat, MCSE         string
+	Symbol            template.HTML
+	Unit              string
+	Value, In68, In95 template.HTML
+	Constrained       bool
+	ESS, RHat, MCSE   string
 }
 
 // shares is a table of probabilities.
@@ -77,7 +79,7 @@ type table struct {
 func Report(w io.Writer, r *gather.Run, pictures []*gather.Picture) error {
 	s := r.Summary
 	v := view{Title: s.Title, Kind: "Constraints on the universe and its fate", Version: s.Version, Style: template.CSS(style),
-		Warnings: s.Warnings, Words: words(r), Fit: fit(s), Chain: chain(s), Assumptions: s.Assumptions, Inputs: s.Inputs, RunFile: string(r.RunFile)}
+		Warnings: s.Warnings, Words: words(r), Chain: text(chain(s)), Assumptions: s.Assumptions, Inputs: s.Inputs, RunFile: string(r.RunFile)}
 	if v.Title == "" {
 		v.Title = "A run without a title"
 	}
@@ -95,9 +97,9 @@ func Report(w io.Writer, r *gather.Run, pictures []*gather.Picture) error {
 		}
 	}
 	for _, f := range r.Series() {
-		v.Fates = append(v.Fates, newShares(f.Name, "Fate", f.Fates))
+		v.Fates = append(v.Fates, newShares(sentence(f.Name), "Fate", f.Fates))
 	}
-	v.Fates = append(v.Fates, newShares("today", "Statement", s.Today))
+	v.Fates = append(v.Fates, newShares("Today", "Statement", s.Today))
 	for _, t := range s.Fit.Tables {
 		v.Tables = append(v.Tables, table{t.Name, t.Kind, t.Rows, fmt.Sprintf("%.2f", float64(t.Chi2))})
 	}
@@ -139,8 +141,8 @@ func draw(p *gather.Picture) (*drawing, error) {
 }
 
 func newQuantity(q result.Quantity) quantity {
-	return quantity{Symbol: symbol(q.Name), Unit: q.Unit, Value: report.MeanSD(q), In68: report.Interval(q.Interval68, q.MCSE68, q),
-		In95: report.Interval(q.Interval95, q.MCSE95, q), Constrained: q.Constrained,
+	return quantity{Symbol: symbol(q.Name), Unit: q.Unit, Value: text(report.MeanSD(q)), In68: text(report.Interval(q.Interval68, q.MCSE68, q)),
+		In95: text(report.Interval(q.Interval95, q.MCSE95, q)), Constrained: q.Constrained,
 		ESS: digits.Format(math.Floor(float64(q.ESS)), 0), RHat: digits.Format(float64(q.RHat), -4), MCSE: digits.Error(float64(q.MCSE))}
 }
 

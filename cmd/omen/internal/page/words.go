@@ -16,7 +16,7 @@ import (
 var symbols = map[string]template.HTML{
 	"Om": "Ω<sub>m</sub>", "OL": "Ω<sub>Λ</sub>", "Ok": "Ω<sub>k</sub>", "Or": "Ω<sub>r</sub>",
 	"H0": "<i>H</i><sub>0</sub>", "w0": "<i>w</i><sub>0</sub>", "wa": "<i>w</i><sub>a</sub>", "q0": "<i>q</i><sub>0</sub>",
-	"rd": "<i>r</i><sub>d</sub>", "hrd": "<i>h r</i><sub>d</sub>", "ob": "Ω<sub>b</sub><i>h</i><sup>2</sup>", "M": "<i>M</i>",
+	"rd": "<i>r</i><sub>d</sub>", "hrd": "<i>h</i>\u00a0<i>r</i><sub>d</sub>", "ob": "Ω<sub>b</sub><i>h</i><sup>2</sup>", "M": "<i>M</i>",
 	"age": "<i>t</i><sub>0</sub>", "H0t0": "<i>H</i><sub>0</sub><i>t</i><sub>0</sub>",
 }
 
@@ -27,24 +27,45 @@ func symbol(name string) template.HTML {
 	return template.HTML(template.HTMLEscapeString(name))
 }
 
-// words is the result in a few sentences.
-func words(r *gather.Run) []string {
-	s := r.Summary
-	return []string{constraints(r), fate(s), today(r), fit(s), chain(s)}
+// text is a plain text as the page shows it: escaped, with a minus that is one,
+// and without a break around ±.
+func text(s string) template.HTML {
+	r := []rune(s)
+	for i, c := range r {
+		if c == '-' && i+1 < len(r) && r[i+1] >= '0' && r[i+1] <= '9' && (i == 0 || r[i-1] == ' ' || r[i-1] == '[') {
+			r[i] = '−'
+		}
+	}
+	s = strings.ReplaceAll(string(r), " ± ", "\u00a0±\u00a0")
+	return template.HTML(template.HTMLEscapeString(s))
 }
 
-func constraints(r *gather.Run) string {
+func sentence(s string) string {
+	if s == "" {
+		return s
+	}
+	return strings.ToUpper(s[:1]) + s[1:]
+}
+
+// words is the result in a few sentences.
+func words(r *gather.Run) []template.HTML {
+	s := r.Summary
+	return []template.HTML{constraints(r), text(fate(s)), today(r), text(fit(s)), text(converged(s))}
+}
+
+// constraints names what the data know.
+func constraints(r *gather.Run) template.HTML {
 	var known, open []string
 	for _, q := range r.Summary.Parameters {
 		if q.Constrained {
-			known = append(known, gather.Value(q))
+			known = append(known, value(q))
 		} else {
-			open = append(open, q.Name)
+			open = append(open, string(symbol(q.Name)))
 		}
 	}
 	if !r.Job.Space.Family().Flat {
 		if q, ok := gather.Find(r.Summary, "Ok"); ok {
-			known = append(known, gather.Value(q))
+			known = append(known, value(q))
 		}
 	}
 	s := "In " + universe(r.Job.Space.Family()) + " these data give " + join(known) + "."
@@ -54,21 +75,25 @@ func constraints(r *gather.Run) string {
 	if len(open) > 0 {
 		s += " They do not constrain " + join(open) + "."
 	}
+	return template.HTML(s) // symbols, numbers and our own words
+}
+
+// value is a quantity in a sentence.
+func value(q result.Quantity) string {
+	s := string(symbol(q.Name)) + "\u00a0=\u00a0" + string(text(report.MeanSD(q)))
+	if q.Unit != "" {
+		s += "\u00a0" + template.HTMLEscapeString(q.Unit)
+	}
 	return s
 }
 
 func universe(f likelihood.Family) string {
-	shape := "a universe, curved or not, of matter and "
+	energy := map[likelihood.DarkEnergy]string{likelihood.Constant: "a cosmological constant",
+		likelihood.W: "dark energy of constant w", likelihood.W0Wa: "dark energy whose w may change"}[f.DarkEnergy]
 	if f.Flat {
-		shape = "a flat universe of matter and "
+		return "a flat universe of matter and " + energy
 	}
-	switch f.DarkEnergy {
-	case likelihood.W:
-		return shape + "dark energy of constant w"
-	case likelihood.W0Wa:
-		return shape + "dark energy whose w may change"
-	}
-	return shape + "a cosmological constant"
+	return "a universe of matter, " + energy + " and any curvature"
 }
 
 // fate names the most probable end, and how sure it is.
@@ -85,11 +110,11 @@ func fate(s *result.Summary) string {
 	p := report.Probability(best)
 	switch {
 	case best.Probability > 0.95:
-		return fmt.Sprintf("Its fate, almost surely: it %s (probability %s).", verb(best.Name), p)
+		return fmt.Sprintf("Its fate, almost surely: it %s, with probability %s.", verb(best.Name), p)
 	case best.Probability > 0.5:
-		return fmt.Sprintf("Its most probable fate: it %s (probability %s).", verb(best.Name), p)
+		return fmt.Sprintf("Its most probable fate: it %s, with probability %s.", verb(best.Name), p)
 	}
-	return fmt.Sprintf("No fate is more probable than not; the first is that it %s (probability %s).", verb(best.Name), p)
+	return fmt.Sprintf("No fate is more probable than not; the first is that it %s, with probability %s.", verb(best.Name), p)
 }
 
 // verb makes the name of a fate the end of a sentence.
@@ -107,17 +132,18 @@ func verb(name string) string {
 	return "is " + name
 }
 
-func today(r *gather.Run) string {
+// today is the present state and the age.
+func today(r *gather.Run) template.HTML {
 	var parts []string
 	for _, f := range r.Summary.Today {
 		parts = append(parts, f.Name+" with probability "+report.Probability(f))
 	}
-	s := "Today it is " + join(parts) + "."
+	s := text("Today it is " + join(parts) + ".")
 	if q, ok := gather.Find(r.Summary, "age"); ok {
-		return s + " It is " + report.MeanSD(q) + " Gyr old."
+		return s + " Its age: " + template.HTML(value(q)) + "."
 	}
 	if q, ok := gather.Find(r.Summary, "H0t0"); ok {
-		return s + " Its age is " + report.MeanSD(q) + " in units of 1/H0, which these data do not know."
+		return s + " Its age in units of 1/<i>H</i><sub>0</sub>, which these data do not know: " + template.HTML(value(q)) + "."
 	}
 	return s
 }
@@ -130,12 +156,17 @@ func fit(s *result.Summary) string {
 
 func chain(s *result.Summary) string {
 	m := s.Sampling
+	return fmt.Sprintf("%d ensembles of %d walkers, %d steps, the first %d discarded as burn-in. Effective samples %.0f at least (goal %d), R-hat %.4f at most. Acceptance %.2f, %d evaluations, seed %d.",
+		m.Ensembles, m.Walkers, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), float64(m.Acceptance), m.Evaluations, m.Seed)
+}
+
+// converged is the chain in a sentence.
+func converged(s *result.Summary) string {
 	state := "The chain converged"
 	if !s.Complete {
 		state = "The chain has not reached its goal"
 	}
-	return fmt.Sprintf("%s: %d ensembles of %d walkers, %d steps, the first %d discarded; effective samples %.0f at least (goal %d), R-hat %.4f at most; acceptance %.2f; seed %d.",
-		state, m.Ensembles, m.Walkers, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), float64(m.Acceptance), m.Seed)
+	return fmt.Sprintf("%s: effective samples %.0f at least, R-hat %.4f at most.", state, math.Floor(float64(s.Sampling.MinESS)), float64(s.Sampling.MaxRHat))
 }
 
 // join writes a list in words.
