@@ -6,7 +6,6 @@ import (
 	"omen/data"
 
 	"gonum.org/v1/gonum/floats"
-	"gonum.org/v1/gonum/mat"
 )
 
 // Ages compares the ages of objects seen at z with the age of the universe
@@ -15,7 +14,7 @@ import (
 type Ages struct {
 	z, age []float64
 	bound  []data.Bound
-	noise  noise
+	noise  Noise
 }
 
 var (
@@ -23,13 +22,13 @@ var (
 	_ needer = (*Ages)(nil)
 )
 
-// NewAges builds the term. A nil cov uses the table's own errors; lower bounds
+// NewAges builds the term. A nil noise is the table's own errors; lower bounds
 // cannot be correlated with anything.
-func NewAges(a *data.Ages, cov *mat.SymDense) (*Ages, error) {
-	if cov != nil && anyLower(a) {
+func NewAges(a *data.Ages, noise Noise) (*Ages, error) {
+	if noise != nil && anyLower(a) {
 		return nil, fmt.Errorf("a lower bound on an age cannot carry a covariance; remove the covariance or the bounds")
 	}
-	noise, err := newNoise(a.Err, cov)
+	noise, err := noiseOr(noise, a.Err, len(a.Z))
 	if err != nil {
 		return nil, err
 	}
@@ -59,8 +58,8 @@ func (a *Ages) Needs() Needs { return Needs{H0: true} }
 
 // Chi2 is −2 ln L of the ages up to a constant.
 func (a *Ages) Chi2(p *Prediction) float64 {
-	r := p.work[:len(a.z)]
-	for i := range r {
+	r := p.work[:a.noise.width()]
+	for i := range a.z {
 		r[i] = a.age[i] - p.Universe.Age(a.z[i])
 		if a.bound[i] == data.LowerBound && r[i] < 0 {
 			r[i] = 0
@@ -79,7 +78,9 @@ func (a *Ages) Residuals(p *Prediction) []Residual {
 		if a.bound[i] == data.LowerBound && d < 0 {
 			d = 0
 		}
-		out[i] = Residual{Z: a.z[i], Measured: a.age[i], Predicted: t, Sigmas: d / a.noise.sigma(i)}
+		out[i] = Residual{Z: a.z[i], Measured: a.age[i], Predicted: t, Sigmas: d / a.noise.Sigma(i)}
 	}
 	return out
 }
+
+func (a *Ages) scratch() int { return a.noise.width() }

@@ -1,13 +1,11 @@
 package likelihood
 
 import (
-	"fmt"
 	"math"
 
 	"omen/data"
 
 	"gonum.org/v1/gonum/floats"
-	"gonum.org/v1/gonum/mat"
 )
 
 // BAO compares ratios of distances to the sound horizon,
@@ -19,7 +17,7 @@ import (
 type BAO struct {
 	z, value []float64
 	quantity []data.Quantity
-	noise    noise
+	noise    Noise
 	standing Standing
 }
 
@@ -28,12 +26,9 @@ var (
 	_ needer = (*BAO)(nil)
 )
 
-// NewBAO builds the term. A nil cov uses the table's own errors.
-func NewBAO(b *data.BAO, cov *mat.SymDense) (*BAO, error) {
-	if cov == nil && len(b.Err) != len(b.Z) {
-		return nil, fmt.Errorf("BAO ratios without errors need a total covariance")
-	}
-	noise, err := newNoise(b.Err, cov)
+// NewBAO builds the term. A nil noise is the table's own errors.
+func NewBAO(b *data.BAO, noise Noise) (*BAO, error) {
+	noise, err := noiseOr(noise, b.Err, len(b.Z))
 	if err != nil {
 		return nil, err
 	}
@@ -61,8 +56,8 @@ func (b *BAO) Needs() Needs {
 
 // Chi2 is the chi-squared of the ratios.
 func (b *BAO) Chi2(p *Prediction) float64 {
-	r := p.work[:len(b.z)]
-	for i := range r {
+	r := p.work[:b.noise.width()]
+	for i := range b.z {
 		r[i] = b.value[i] - b.predict(p, i)
 	}
 	b.noise.whiten(r)
@@ -89,7 +84,9 @@ func (b *BAO) Residuals(p *Prediction) []Residual {
 	out := make([]Residual, len(b.z))
 	for i := range out {
 		x := b.predict(p, i)
-		out[i] = Residual{Z: b.z[i], Measured: b.value[i], Predicted: x, Sigmas: (b.value[i] - x) / b.noise.sigma(i)}
+		out[i] = Residual{Z: b.z[i], Measured: b.value[i], Predicted: x, Sigmas: (b.value[i] - x) / b.noise.Sigma(i)}
 	}
 	return out
 }
+
+func (b *BAO) scratch() int { return b.noise.width() }

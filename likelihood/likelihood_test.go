@@ -39,7 +39,7 @@ func invented(seed uint64, n int) (*data.Supernovae, *mat.SymDense) {
 
 // distant is a prediction for a term in a universe, by the definitions alone.
 func distant(u model.Universe, m, hrd float64, t Term) *Prediction {
-	p := &Prediction{Point: Point{Universe: u, M: m, HRd: hrd}, work: make([]float64, 2*t.Rows()+len(t.Redshifts()))}
+	p := &Prediction{Point: Point{Universe: u, M: m, HRd: hrd}, work: make([]float64, t.scratch())}
 	for _, z := range t.Redshifts() {
 		p.DM = append(p.DM, u.DM(z)*u.H0/model.C)
 		p.DH = append(p.DH, u.DH(z)*u.H0/model.C)
@@ -79,7 +79,7 @@ func TestOffsetsAgainstBruteForce(t *testing.T) {
 		{"free", Offset{}, least(chi2)},
 		{"normal", Offset{Kind: NormalOffset, Mean: mean, SD: sd}, least(func(m float64) float64 { return chi2(m) + (m-mean)*(m-mean)/(sd*sd) })},
 	} {
-		s := must[*Supernovae](t)(NewSupernovae(sn, cov, c.offset, Standing{}))
+		s := must[*Supernovae](t)(NewSupernovae(sn, correlate(t, cov), c.offset, Standing{}))
 		if got := s.Chi2(distant(u, -19.2, math.NaN(), s)); math.Abs(got-c.want) > 1e-8*c.want {
 			t.Errorf("%s offset: chi² %.10f, want %.10f", c.name, got, c.want)
 		}
@@ -89,7 +89,7 @@ func TestOffsetsAgainstBruteForce(t *testing.T) {
 // A free offset makes chi-squared blind to H0 and M, whatever the universe.
 func TestFreeOffsetIsBlindToH0(t *testing.T) {
 	sn, cov := invented(5, 9)
-	s := must[*Supernovae](t)(NewSupernovae(sn, cov, Offset{}, Standing{}))
+	s := must[*Supernovae](t)(NewSupernovae(sn, correlate(t, cov), Offset{}, Standing{}))
 	random := rand.New(rand.NewPCG(5, 2))
 	for range 50 {
 		u := model.Universe{Om: random.Float64(), OL: random.Float64(), H0: 70, W0: -1}
@@ -104,7 +104,7 @@ func TestFreeOffsetIsBlindToH0(t *testing.T) {
 // The posterior's one pass over shared distances against every term by itself.
 func TestPosteriorAgainstTerms(t *testing.T) {
 	sn, cov := invented(7, 20)
-	supernovae := must[*Supernovae](t)(NewSupernovae(sn, cov, Offset{}, Standing{}))
+	supernovae := must[*Supernovae](t)(NewSupernovae(sn, correlate(t, cov), Offset{}, Standing{}))
 	bao := must[*BAO](t)(NewBAO(&data.BAO{Z: []float64{0.7, 0.3, 0.7, 2.3}, Value: []float64{17.3, 8, 19.5, 4.5}, Err: []float64{0.2, 0.1, 0.3, 0.2},
 		Quantity: []data.Quantity{data.DMOverRd, data.DVOverRd, data.DHOverRd, data.DMOverDH}}, nil))
 	ages := must[*Ages](t)(NewAges(&data.Ages{Z: []float64{0, 1}, Age: []float64{15, 3}, Err: []float64{0.5, 0.4},
@@ -212,7 +212,7 @@ func TestNeeds(t *testing.T) {
 
 func TestNoAllocation(t *testing.T) {
 	sn, cov := invented(9, 30)
-	s := must[*Supernovae](t)(NewSupernovae(sn, cov, Offset{}, Standing{}))
+	s := must[*Supernovae](t)(NewSupernovae(sn, correlate(t, cov), Offset{}, Standing{}))
 	f := Family{RequireBigBang: true, Free: []Parameter{param(t, "Om", 0, 1), param(t, "OL", 0, 1)}}
 	e := posterior(t, f, s).Evaluator()
 	x := []float64{0.3, 0.7}

@@ -2,9 +2,10 @@ package likelihood
 
 import (
 	"fmt"
-	"math"
 	"slices"
 	"sort"
+	"sync"
+	"sync/atomic"
 
 	"omen/model"
 )
@@ -16,33 +17,64 @@ const speedOfLight = model.C
 type Posterior struct {
 	space *Space
 	terms []Term
-	z     []float64 // all redshifts that any term needs, ascending, once each
-	index [][]int   // for each term, where its redshifts stand in z
-	most  int       // the most redshifts or rows that a term has
+
+	levels []*level // ever more nodes; none if the evaluation is direct throughout
+	others others   // the terms that are not condensed
+
+	all    lines       // the redshifts of all terms, for the direct evaluation
+	path   *model.Path // to them; made when first needed
+	once   sync.Once
+	direct atomic.Int64
 }
 
-// NewPosterior checks that the space knows what the terms need.
+// lines is the redshifts that some terms need.
+type lines struct {
+	z     []float64 // ascending, once each
+	index [][]int   // for each term, where its redshifts stand in z
+}
+
+func newLines(terms []Term) (l lines) {
+	for _, t := range terms {
+		l.z = append(l.z, t.Redshifts()...)
+	}
+	slices.Sort(l.z)
+	l.z = slices.Clip(slices.Compact(l.z))
+	for _, t := range terms {
+		at := make([]int, len(t.Redshifts()))
+		for i, z := range t.Redshifts() {
+			at[i] = sort.SearchFloat64s(l.z, z)
+		}
+		l.index = append(l.index, at)
+	}
+	return l
+}
+
+// others is the terms that are not condensed. Their redshifts up to the span of
+// the nodes come with these, the rest, such as that of the CMB, by a path.
+type others struct {
+	terms []Term
+	lines
+	near int // redshifts within the span
+	far  *model.Path
+}
+
+// nearby is how far nodes reach for the sake of terms that are not condensed: to
+// much higher redshifts it would take very many of them.
+const nearby = 5
+
+// NewPosterior checks that the space knows what the terms need, and condenses the
+// supernovae among them.
 func NewPosterior(space *Space, terms ...Term) (*Posterior, error) {
 	if len(terms) == 0 {
 		return nil, fmt.Errorf("there are no data; name at least one table")
 	}
-	p := &Posterior{space: space, terms: terms}
 	for _, t := range terms {
 		if err := checkNeeds(space, t); err != nil {
 			return nil, err
 		}
-		p.z = append(p.z, t.Redshifts()...)
-		p.most = max(p.most, t.Rows(), len(t.Redshifts()))
 	}
-	slices.Sort(p.z)
-	p.z = slices.Compact(p.z)
-	for _, t := range terms {
-		at := make([]int, len(t.Redshifts()))
-		for i, z := range t.Redshifts() {
-			at[i] = sort.SearchFloat64s(p.z, z)
-		}
-		p.index = append(p.index, at)
-	}
+	p := &Posterior{space: space, terms: terms}
+	p.condense()
 	return p, nil
 }
 
@@ -62,6 +94,65 @@ func checkNeeds(s *Space, t Term) error {
 	}
 	return nil
 }
+
+// condense sorts the terms and prepares two levels of nodes: as few as universes
+// like ours need, and twice as many for those near the no-big-bang line.
+func (p *Posterior) condense() {
+	var tables []*Supernovae
+	span := 0.0
+	for _, t := range p.terms {
+		s, ok := t.(*Supernovae)
+		if ok {
+			tables = append(tables, s)
+		} else {
+			p.others.terms = append(p.others.terms, t)
+		}
+		for _, z := range t.Redshifts() {
+			if ok || z <= nearby {
+				span = max(span, z)
+			}
+		}
+	}
+	o := &p.others
+	o.lines = newLines(o.terms)
+	o.near = sort.Search(len(o.z), func(i int) bool { return o.z[i] > span })
+	o.far = newPath(o.z[o.near:])
+	if span == 0 {
+		return
+	}
+	n := model.NodesFor(span)
+	p.levels = []*level{newLevel(span, n, o.z[:o.near], tables), newLevel(span, 2*n, o.z[:o.near], tables)}
+}
+
+func newPath(z []float64) *model.Path {
+	if len(z) == 0 {
+		return nil
+	}
+	path, err := model.NewPath(z)
+	if err != nil {
+		panic("likelihood: redshifts that no table reader admits: " + err.Error())
+	}
+	return path
+}
+
+// prepareDirect lays out the line of sight to all redshifts. With a million
+// supernovae it is large, and most runs never need it.
+func (p *Posterior) prepareDirect() {
+	p.once.Do(func() {
+		p.all = newLines(p.terms)
+		p.path = newPath(p.all.z)
+	})
+}
+
+// Direct is the same posterior without the condensed form: every evaluation goes
+// over all rows. It is the reference that the condensed form is tested against.
+func (p *Posterior) Direct() *Posterior {
+	return &Posterior{space: p.space, terms: p.terms}
+}
+
+// DirectEvaluations counts the universes that needed more than the condensed
+// form: how often all evaluators so far went over all rows for a chi-squared.
+func (p *Posterior) DirectEvaluations() int { return int(p.direct.Load()) }
 
 // Space returns the space of universes.
 func (p *Posterior) Space() *Space { return p.space }
@@ -86,96 +177,4 @@ func (p *Posterior) DegreesOfFreedom() int {
 		dof -= t.Offsets()
 	}
 	return dof
-}
-
-// Evaluator computes the posterior with scratch memory of its own: it is for one
-// goroutine at a time.
-type Evaluator struct {
-	posterior *Posterior
-	path      *model.Path
-	dm, dh    []float64 // at posterior.z
-	point     Point
-	each      []Prediction // one for each term
-}
-
-// Evaluator returns a new evaluator.
-func (p *Posterior) Evaluator() *Evaluator {
-	e := &Evaluator{posterior: p, dm: make([]float64, len(p.z)), dh: make([]float64, len(p.z))}
-	if len(p.z) > 0 {
-		path, err := model.NewPath(p.z)
-		if err != nil {
-			panic("likelihood: redshifts that no table reader admits: " + err.Error())
-		}
-		e.path = path
-	}
-	work := make([]float64, p.most)
-	for _, at := range p.index {
-		e.each = append(e.each, Prediction{DM: make([]float64, len(at)), DH: make([]float64, len(at)), work: work})
-	}
-	return e
-}
-
-// LogDensity is the logarithm of prior times likelihood at x, up to a constant
-// that depends on the data alone; -Inf outside the support.
-func (e *Evaluator) LogDensity(x []float64) float64 {
-	lp := e.posterior.space.logPrior(x)
-	if math.IsInf(lp, -1) {
-		return lp
-	}
-	chi2 := e.Chi2(x)
-	if math.IsNaN(chi2) {
-		return math.Inf(-1)
-	}
-	return lp - chi2/2
-}
-
-// Chi2 is the chi-squared of all terms at x, NaN where the family or the domain
-// of a distance excludes the universe. It does not look at the priors.
-func (e *Evaluator) Chi2(x []float64) float64 {
-	if !e.predict(x) {
-		return math.NaN()
-	}
-	sum := 0.0
-	for k, t := range e.posterior.terms {
-		sum += t.Chi2(&e.each[k])
-	}
-	return sum
-}
-
-// TermChi2 is Chi2 for each term by itself, written to dst, one for each term.
-func (e *Evaluator) TermChi2(x, dst []float64) {
-	ok := e.predict(x)
-	for k, t := range e.posterior.terms {
-		dst[k] = math.NaN()
-		if ok {
-			dst[k] = t.Chi2(&e.each[k])
-		}
-	}
-}
-
-// Predictions evaluates the universe at x for every term, for residuals. They
-// are valid until the next call; ok is false where the universe is excluded.
-func (e *Evaluator) Predictions(x []float64) (each []Prediction, ok bool) {
-	ok = e.predict(x)
-	return e.each, ok
-}
-
-// predict fills the point and the distances for every term.
-func (e *Evaluator) predict(x []float64) bool {
-	p := e.posterior
-	p.space.Point(x, &e.point)
-	if !p.space.allowed(&e.point.Universe) {
-		return false
-	}
-	if e.path != nil {
-		e.path.Fill(e.point.Universe, e.dm, e.dh)
-	}
-	for k, at := range p.index {
-		each := &e.each[k]
-		each.Point = e.point
-		for i, j := range at {
-			each.DM[i], each.DH[i] = e.dm[j], e.dh[j]
-		}
-	}
-	return true
 }

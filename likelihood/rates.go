@@ -4,13 +4,12 @@ import (
 	"omen/data"
 
 	"gonum.org/v1/gonum/floats"
-	"gonum.org/v1/gonum/mat"
 )
 
 // Rates compares expansion rates H(z) in km/s/Mpc with H0 E(z).
 type Rates struct {
 	z, h  []float64
-	noise noise
+	noise Noise
 }
 
 var (
@@ -18,9 +17,9 @@ var (
 	_ needer = (*Rates)(nil)
 )
 
-// NewRates builds the term. A nil cov uses the table's own errors.
-func NewRates(t *data.Rates, cov *mat.SymDense) (*Rates, error) {
-	noise, err := newNoise(t.Err, cov)
+// NewRates builds the term. A nil noise is the table's own errors.
+func NewRates(t *data.Rates, noise Noise) (*Rates, error) {
+	noise, err := noiseOr(noise, t.Err, len(t.Z))
 	if err != nil {
 		return nil, err
 	}
@@ -41,8 +40,8 @@ func (t *Rates) Needs() Needs { return Needs{H0: true} }
 
 // Chi2 is the chi-squared of the rates.
 func (t *Rates) Chi2(p *Prediction) float64 {
-	r := p.work[:len(t.z)]
-	for i := range r {
+	r := p.work[:t.noise.width()]
+	for i := range t.z {
 		r[i] = t.h[i] - p.Universe.H0/p.DH[i]
 	}
 	t.noise.whiten(r)
@@ -54,7 +53,9 @@ func (t *Rates) Residuals(p *Prediction) []Residual {
 	out := make([]Residual, len(t.z))
 	for i := range out {
 		x := p.Universe.H0 / p.DH[i]
-		out[i] = Residual{Z: t.z[i], Measured: t.h[i], Predicted: x, Sigmas: (t.h[i] - x) / t.noise.sigma(i)}
+		out[i] = Residual{Z: t.z[i], Measured: t.h[i], Predicted: x, Sigmas: (t.h[i] - x) / t.noise.Sigma(i)}
 	}
 	return out
 }
+
+func (t *Rates) scratch() int { return t.noise.width() }

@@ -7,7 +7,6 @@ import (
 	"omen/data"
 
 	"gonum.org/v1/gonum/floats"
-	"gonum.org/v1/gonum/mat"
 )
 
 // OffsetKind says what is known of the common offset of supernova magnitudes,
@@ -52,7 +51,7 @@ type Supernovae struct {
 	z        []float64
 	target   []float64 // magnitudes with 5 log10(1+z_hel) taken off
 	measured []float64
-	noise    noise
+	noise    Noise
 	offset   Offset
 	modulus  bool      // the table holds mu, not mag
 	ones     []float64 // L⁻¹1
@@ -65,13 +64,10 @@ var (
 	_ needer = (*Supernovae)(nil)
 )
 
-// NewSupernovae builds the term. A nil cov uses the table's own errors.
-func NewSupernovae(sn *data.Supernovae, cov *mat.SymDense, offset Offset, standing Standing) (*Supernovae, error) {
+// NewSupernovae builds the term. A nil noise is the table's own errors.
+func NewSupernovae(sn *data.Supernovae, noise Noise, offset Offset, standing Standing) (*Supernovae, error) {
 	n := len(sn.Z)
-	if cov == nil && len(sn.Err) != n {
-		return nil, fmt.Errorf("supernovae without errors need a total covariance")
-	}
-	noise, err := newNoise(sn.Err, cov)
+	noise, err := noiseOr(noise, sn.Err, n)
 	if err != nil {
 		return nil, err
 	}
@@ -79,7 +75,7 @@ func NewSupernovae(sn *data.Supernovae, cov *mat.SymDense, offset Offset, standi
 		return nil, fmt.Errorf("the normal prior on the offset needs a positive width, found %g", offset.SD)
 	}
 	s := &Supernovae{z: sn.Z, measured: sn.Value, noise: noise, offset: offset,
-		modulus: sn.Absolute, standing: standing, target: make([]float64, n), ones: make([]float64, n)}
+		modulus: sn.Absolute, standing: standing, target: make([]float64, n), ones: make([]float64, noise.width())}
 	zHel := sn.ZHel
 	if zHel == nil {
 		zHel = sn.Z // the difference is below 0.003 mag beyond z = 0.1
@@ -128,12 +124,7 @@ func (s *Supernovae) Needs() Needs {
 
 // Chi2 is the chi-squared of the supernovae with the offset marginalised.
 func (s *Supernovae) Chi2(p *Prediction) float64 {
-	r := p.work[:len(s.z)]
-	base := s.zeroPoint(p)
-	for i, dm := range p.DM {
-		r[i] = s.target[i] - base - 5*math.Log10(dm)
-	}
-	s.noise.whiten(r)
+	r := s.whitened(p)
 	chi2 := floats.Dot(r, r)
 	if s.offset.Kind != AbsoluteOffset {
 		b := floats.Dot(s.ones, r)
@@ -142,12 +133,26 @@ func (s *Supernovae) Chi2(p *Prediction) float64 {
 	return chi2 + s.standing.Chi2
 }
 
-// zeroPoint is what is known of the offset: M + 5 log10(c/H0/Mpc) + 25.
+// whitened is the residuals at p after the noise's map.
+func (s *Supernovae) whitened(p *Prediction) []float64 {
+	r := p.work[:s.noise.width()]
+	base := s.zeroPoint(p)
+	for i, dm := range p.DM {
+		r[i] = s.target[i] - base - 5*math.Log10(dm)
+	}
+	s.noise.whiten(r)
+	return r
+}
+
+// zeroPoint is 5 log10(c/H0/Mpc) + 25.
+func zeroPoint(h0 float64) float64 { return 5*math.Log10(speedOfLight/h0) + 25 }
+
+// zeroPoint is what is known of the offset: the universe's, and M.
 func (s *Supernovae) zeroPoint(p *Prediction) float64 {
 	if s.offset.Kind == FreeOffset {
 		return 0
 	}
-	zero := 5*math.Log10(speedOfLight/p.Universe.H0) + 25
+	zero := zeroPoint(p.Universe.H0)
 	if s.offset.Kind == NormalOffset {
 		return zero + s.offset.Mean
 	}
@@ -164,12 +169,7 @@ func (s *Supernovae) Offset(p *Prediction) float64 {
 	if s.offset.Kind == AbsoluteOffset {
 		return 0
 	}
-	r := p.work[:len(s.z)]
-	base := s.zeroPoint(p)
-	for i, dm := range p.DM {
-		r[i] = s.target[i] - base - 5*math.Log10(dm)
-	}
-	s.noise.whiten(r)
+	r := s.whitened(p)
 	return floats.Dot(s.ones, r) / s.weight
 }
 
@@ -181,7 +181,9 @@ func (s *Supernovae) Residuals(p *Prediction) []Residual {
 	for i := range out {
 		left := s.target[i] - shift - 5*math.Log10(p.DM[i])
 		out[i] = Residual{Z: s.z[i], Measured: s.measured[i], Predicted: s.measured[i] - left,
-			Sigmas: left / s.noise.sigma(i)}
+			Sigmas: left / s.noise.Sigma(i)}
 	}
 	return out
 }
+
+func (s *Supernovae) scratch() int { return s.noise.width() }

@@ -52,10 +52,20 @@ func must[T any](t testing.TB) func(T, error) T {
 }
 
 // covariance reads a matrix and applies it to a table's rows.
-func covariance(t testing.TB, name string, role data.Role, sel data.Selection, errs []float64) *mat.SymDense {
+func covariance(t testing.TB, name string, role data.Role, sel data.Selection, errs []float64) Noise {
 	t.Helper()
 	m := must[*data.Matrix](t)(data.ReadMatrix(open(t, name), name))
-	return must[*mat.SymDense](t)(data.Covariance(name, m, role, sel, errs))
+	return correlate(t, must[*mat.SymDense](t)(data.Covariance(name, m, role, sel, errs)))
+}
+
+// correlate is the noise of a covariance.
+func correlate(t testing.TB, cov *mat.SymDense) Noise {
+	t.Helper()
+	var chol mat.Cholesky
+	if !chol.Factorize(cov) {
+		t.Fatal("the covariance is not positive definite")
+	}
+	return Correlated(&chol)
 }
 
 // baoTerm is a table of BAO ratios with its covariance.

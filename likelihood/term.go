@@ -19,6 +19,8 @@ type Term interface {
 	// nuisance offsets that it marginalises, for the degrees of freedom.
 	Rows() int
 	Offsets() int
+
+	scratch() int // how many numbers Chi2 needs in p.work
 }
 
 // Residual is one measurement beside its best prediction.

@@ -178,22 +178,25 @@ func (t *Table) Errors() []float64 {
 
 // term builds the likelihood term of a table that has been read.
 func (j *Job) term(i int, t *Table) (err error) {
+	var noise likelihood.Noise // nil: the table's own errors
 	if t.Matrix != nil {
 		roles := map[string]data.Role{"": data.Total, "total": data.Total, "added": data.Added, "inverse": data.Inverse}
-		t.Covariance, err = data.Covariance(j.Path(t.Spec.Covariance), t.Matrix, roles[t.Spec.CovarianceHolds], t.Selection(), t.Errors())
+		var chol *mat.Cholesky
+		t.Covariance, chol, err = data.Factorised(j.Path(t.Spec.Covariance), t.Matrix, roles[t.Spec.CovarianceHolds], t.Selection(), t.Errors())
 		if err != nil {
 			return err
 		}
+		noise = likelihood.Correlated(chol)
 	}
 	switch {
 	case t.Supernovae != nil:
-		err = j.supernovae(i, t)
+		err = j.supernovae(i, t, noise)
 	case t.BAO != nil:
-		t.Term, err = likelihood.NewBAO(t.BAO, t.Covariance)
+		t.Term, err = likelihood.NewBAO(t.BAO, noise)
 	case t.Ages != nil:
-		t.Term, err = likelihood.NewAges(t.Ages, t.Covariance)
+		t.Term, err = likelihood.NewAges(t.Ages, noise)
 	default:
-		t.Term, err = likelihood.NewRates(t.Rates, t.Covariance)
+		t.Term, err = likelihood.NewRates(t.Rates, noise)
 	}
 	if err != nil {
 		return j.Run.Errorf(fmt.Sprintf("data.%d", i+1), "%s: %v", t.Name, err)
@@ -201,7 +204,7 @@ func (j *Job) term(i int, t *Table) (err error) {
 	return nil
 }
 
-func (j *Job) supernovae(i int, t *Table) error {
+func (j *Job) supernovae(i int, t *Table, noise likelihood.Noise) error {
 	offset, err := j.Run.Offset(i)
 	if err != nil {
 		return err
@@ -210,7 +213,7 @@ func (j *Job) supernovae(i int, t *Table) error {
 	if s := t.Spec.StandsFor; s != nil {
 		standing = likelihood.Standing{Rows: s.Rows, Chi2: s.Chi2}
 	}
-	t.Term, err = likelihood.NewSupernovae(t.Supernovae, t.Covariance, offset, standing)
+	t.Term, err = likelihood.NewSupernovae(t.Supernovae, noise, offset, standing)
 	return err
 }
 

@@ -1,0 +1,211 @@
+package likelihood
+
+import (
+	"math"
+
+	"omen/model"
+
+	"gonum.org/v1/gonum/blas"
+	"gonum.org/v1/gonum/blas/blas64"
+)
+
+// Chi-squared of any number of supernovae costs the same. Write the logarithmic
+// distance as
+//
+//	5 log10 D_M(z) = 5 log10 z + Σ_k B_k(z) g_k,   g_k = 5 log10(D_M/z) at node k
+//
+// with the polynomials B_k of [model.Nodes], which do not depend on the universe.
+// The residuals of a table are then linear in g and in the little else that
+// matters: v = [g, the zero point 5 log10(c/H0) + 25, M, 1]. With the noise's map
+// W, the offset's column 1 and the thin QR
+//
+//	W [1, B, 1, 1, -target] = Q R,   chi² = |R [offset, v]|²,
+//
+// and the minimum over a free offset, which is what marginalising it leaves, drops
+// the first row and column of R. A normal prior is one row more. What remains of
+// several tables is stacked and factorised again, so that all supernovae of a
+// posterior become one triangle
+//
+//	chi² = |T v + t|² + constant
+//
+// of about as many rows as there are nodes.
+//
+// The error is known for each universe. Let δ bound the errors of g between the
+// nodes, from the last Chebyshev coefficients of g and of the integrand of the
+// distance (Trefethen 2013, Approximation Theory and Approximation Practice,
+// ch. 4 and 8). It is carried by polynomials of degree n+1 and more; with s the
+// norm of W times the first of them, after the offsets are taken out,
+//
+//	|Δchi²| ≤ 2 √chi² s δ + (s δ)².
+//
+// Where that is more than tolerance the universe goes to more nodes, and from
+// there to the direct evaluation over all rows.
+type level struct {
+	nodes *model.Nodes
+	columns
+	rule     blas64.General // T, then what turns g into its last Chebyshev coefficients
+	start    []float64      // t, then zeros
+	squares  int            // rows of T
+	constant float64        // of chi²
+	weight   float64        // s
+	enough   float64        // the largest error of distances that is not given up at once
+}
+
+const (
+	// tolerance is how much of an error of chi² is let pass, and relative how
+	// much in units of chi² itself, where rounding does no better.
+	tolerance = 1e-6
+	relative  = 1e-12
+	// distanceTolerance bounds the relative error of the distances that other
+	// terms than supernovae are given, and hopeless that from which on the nodes
+	// are not tried for supernovae either.
+	distanceTolerance = 1e-11
+	hopeless          = 1e-8
+)
+
+// magnitudes is 5/ln 10: magnitudes per unit of the natural logarithm of distance.
+const magnitudes = 5 / math.Ln10
+
+// columns says where things stand in v, and in the rows of a triangle over
+// [v, the aliased polynomial].
+type columns struct {
+	nodes, zero, m int // number of nodes; places of the zero point and of M, -1 if not needed
+	one            int // place of the last element of v, which is 1
+}
+
+func columnsFor(nodes int, tables []*Supernovae) columns {
+	c := columns{nodes: nodes, zero: -1, m: -1, one: nodes}
+	for _, s := range tables {
+		if s.offset.Kind != FreeOffset && c.zero < 0 {
+			c.zero = c.one
+			c.one++
+		}
+		if s.Needs().M && c.m < 0 {
+			c.m = c.one
+			c.one++
+		}
+	}
+	return c
+}
+
+// condense is the triangle over [v, the aliased polynomial] of one table, its
+// offset taken out.
+func (s *Supernovae) condense(nodes *model.Nodes, c columns) []float64 {
+	t := newTriangle(1 + c.one + 2)
+	known := 0.0
+	if s.offset.Kind == NormalOffset {
+		t.r.Data[0] = 1 / s.offset.SD
+		known = s.offset.Mean
+	}
+	s.noise.reduce(t, func(i int, row []float64) {
+		clear(row)
+		v := row[1:]
+		nodes.Interpolation(s.z[i], v[:c.nodes])
+		for k := range v[:c.nodes] {
+			v[k] *= magnitudes
+		}
+		if s.offset.Kind != AbsoluteOffset {
+			row[0] = 1
+		}
+		if s.offset.Kind != FreeOffset {
+			v[c.zero] = 1
+		}
+		if s.Needs().M {
+			v[c.m] = 1
+		}
+		v[c.one] = known - s.target[i] + 5*math.Log10(s.z[i])
+		v[c.one+1] = magnitudes * nodes.Alias(s.z[i])
+	})
+	return t.without(1)
+}
+
+// newLevel condenses tables on so many nodes.
+func newLevel(span float64, n int, further []float64, tables []*Supernovae) *level {
+	nodes, err := model.NewNodes(span, n, further)
+	if err != nil {
+		panic("likelihood: redshifts that no table reader admits: " + err.Error())
+	}
+	l := &level{nodes: nodes, enough: hopeless}
+	if len(further) > 0 {
+		l.enough = distanceTolerance
+	}
+	if len(tables) == 0 {
+		return l
+	}
+	l.columns = columnsFor(n, tables)
+	t := newTriangle(l.one + 2)
+	for _, s := range tables {
+		t.add(s.condense(nodes, l.columns))
+		l.constant += s.standing.Chi2
+	}
+	l.split(t)
+	return l
+}
+
+// split takes the triangle over [v, the aliased polynomial] apart.
+func (l *level) split(t *triangle) {
+	l.squares = l.one
+	r := t.rows()
+	at := func(i, j int) float64 { return r[i*t.columns+j] }
+	last := l.nodes.LastCoefficients()
+	l.rule = blas64.General{Rows: l.squares + len(last), Cols: l.one, Stride: l.one, Data: make([]float64, (l.squares+len(last))*l.one)}
+	l.start = make([]float64, l.rule.Rows)
+	for i := range l.squares {
+		for j := i; j < l.one; j++ {
+			l.rule.Data[i*l.one+j] = at(i, j)
+		}
+		l.start[i] = at(i, l.one)
+	}
+	for i, row := range last {
+		copy(l.rule.Data[(l.squares+i)*l.one:], row)
+	}
+	l.constant += at(l.one, l.one) * at(l.one, l.one)
+	for i := range t.columns {
+		l.weight = math.Hypot(l.weight, at(i, l.one+1))
+	}
+}
+
+// levelScratch is the memory of a level for one goroutine.
+type levelScratch struct {
+	*level
+	sight  *model.Sight
+	v, out []float64
+}
+
+// scratch makes that memory. dm and dh receive the distances at the further
+// redshifts.
+func (l *level) scratch(dm, dh []float64) levelScratch {
+	s := levelScratch{level: l, sight: l.nodes.Sight(), v: make([]float64, l.one), out: make([]float64, len(l.start))}
+	s.sight.DM, s.sight.DH = dm, dh
+	s.sight.Shape = nil
+	if l.one > 0 {
+		s.sight.Shape = s.v[:l.columns.nodes]
+	}
+	return s
+}
+
+// chi2 is the chi-squared of the condensed tables; ok is false where the nodes
+// are too few for the universe at p. If it is true the further distances are good
+// too.
+func (s *levelScratch) chi2(p *Point) (chi2 float64, ok bool) {
+	omitted := s.nodes.Fill(p.Universe, s.sight)
+	if !(omitted <= s.enough) {
+		return math.NaN(), false
+	}
+	if s.one == 0 {
+		return 0, true
+	}
+	if s.zero >= 0 {
+		s.v[s.zero] = zeroPoint(p.Universe.H0)
+	}
+	if s.m >= 0 {
+		s.v[s.m] = p.M
+	}
+	copy(s.out, s.start)
+	blas64.Gemv(blas.NoTrans, 1, s.rule, blas64.Vector{N: s.one, Data: s.v, Inc: 1}, 1, blas64.Vector{N: len(s.out), Data: s.out, Inc: 1})
+	for _, w := range s.out[:s.squares] {
+		chi2 += w * w
+	}
+	e := s.weight * (omitted + model.Remainder(s.out[s.squares:]))
+	return chi2 + s.constant, e*(2*math.Sqrt(chi2)+e) <= tolerance+relative*chi2
+}
