@@ -168,8 +168,9 @@ func (l *level) split(t *triangle) {
 // levelScratch is the memory of a level for one goroutine.
 type levelScratch struct {
 	*level
-	sight  *model.Sight
-	v, out []float64
+	sight   *model.Sight
+	v, out  []float64
+	omitted float64 // of the last fill
 }
 
 // scratch makes that memory. dm and dh receive the distances at the further
@@ -184,11 +185,14 @@ func (l *level) scratch(dm, dh []float64) levelScratch {
 	return s
 }
 
-// chi2 is the chi-squared of the condensed tables; ok is false where the nodes
-// are too few for the universe at p. If it is true the further distances are good
-// too.
+// fill computes the distances of a universe.
+func (s *levelScratch) fill(u model.Universe) { s.omitted = s.nodes.Fill(u, s.sight) }
+
+// chi2 is the chi-squared of the condensed tables at p, whose universe was filled
+// in last; ok is false where the nodes are too few for it. If it is true the further
+// distances are good too.
 func (s *levelScratch) chi2(p *Point) (chi2 float64, ok bool) {
-	omitted := s.nodes.Fill(p.Universe, s.sight)
+	omitted := s.omitted
 	if !(omitted <= s.enough) {
 		return math.NaN(), false
 	}

@@ -1,6 +1,10 @@
 package likelihood
 
-import "math"
+import (
+	"math"
+
+	"omen/model"
+)
 
 // Evaluator computes the posterior with scratch memory of its own: it is for one
 // goroutine at a time.
@@ -11,6 +15,12 @@ type Evaluator struct {
 	dm, dh    []float64    // at the redshifts of the terms that are not condensed
 	each      []Prediction // one for each of these terms
 	direct    *direct      // made when first needed
+
+	// What the distances above are those of: a universe but for its H0, and the
+	// level, from 1, that computed them. A scan of hrd or M, of which an integral
+	// does many, then needs no new ones.
+	shape  model.Universe
+	filled int
 }
 
 // Evaluator returns a new evaluator.
@@ -64,7 +74,12 @@ func (e *Evaluator) Chi2(x []float64) float64 {
 	if !p.space.allowed(&e.point.Universe) {
 		return math.NaN()
 	}
+	shape := e.point.Universe
+	shape.H0 = 0
 	for i := range e.levels {
+		if e.filled != i+1 || e.shape != shape {
+			e.fill(i, shape)
+		}
 		if chi2, ok := e.levels[i].chi2(&e.point); ok {
 			return chi2 + e.rest()
 		}
@@ -75,13 +90,19 @@ func (e *Evaluator) Chi2(x []float64) float64 {
 	return e.directly().chi2(&e.point)
 }
 
+// fill computes the distances of a universe at a level.
+func (e *Evaluator) fill(level int, shape model.Universe) {
+	if o := &e.posterior.others; o.far != nil && e.shape != shape {
+		o.far.Fill(shape, e.dm[o.near:], e.dh[o.near:])
+	}
+	e.levels[level].fill(shape)
+	e.shape, e.filled = shape, level+1
+}
+
 // rest is the chi-squared of the terms that are not condensed, from the distances
 // that a level has left.
 func (e *Evaluator) rest() float64 {
 	o := &e.posterior.others
-	if o.far != nil {
-		o.far.Fill(e.point.Universe, e.dm[o.near:], e.dh[o.near:])
-	}
 	sum := 0.0
 	for k, t := range o.terms {
 		e.each[k].take(&e.point, o.index[k], e.dm, e.dh)
