@@ -1,0 +1,263 @@
+// Package exact integrates a posterior of up to three free parameters by
+// quadrature: evidence, marginals, and the probability of whatever can be said of a
+// universe, however rare, without luck.
+package exact
+
+import (
+	"context"
+	"errors"
+	"fmt"
+	"math"
+	"slices"
+	"time"
+
+	"omen/cmd/omen/internal/outlook"
+	"omen/likelihood"
+	"omen/model"
+	"omen/sampler/quadrature"
+)
+
+// Most is the largest number of free parameters.
+const Most = 3
+
+// Posterior is a posterior that was integrated.
+type Posterior struct {
+	Space       *likelihood.Space
+	Best        []float64 // the point of highest density
+	LogBest     float64   // ln p there
+	LogEvidence quadrature.Estimate
+	Marginals   []quadrature.Marginal // of the free parameters
+	Nodes       *quadrature.Nodes
+	Evaluations int
+	Seconds     float64
+	Warnings    []string
+
+	labels  []outlook.Label       // by class
+	classes []quadrature.Estimate // their probabilities
+	rare    []rareNodes           // what belongs to no class
+}
+
+type rareNodes struct {
+	label  outlook.Label
+	weight float64
+}
+
+// Options returns how hard to try in so many dimensions: to 1e-6 where that is
+// cheap; in three, to the errors that a print could show.
+func Options(dim, threads int) quadrature.Options {
+	o := quadrature.DefaultOptions()
+	o.Workers = threads
+	if dim == 3 {
+		o.Tolerance, o.ClassTolerance, o.Passes = 1e-4, 3e-3, 1
+		o.MaxEvaluations = 2_000_000
+	}
+	return o
+}
+
+// Integrate integrates a posterior of one to three free parameters. start is a good
+// point, nil if none is known.
+func Integrate(ctx context.Context, p *likelihood.Posterior, start []float64, threads int) (*Posterior, error) {
+	begun := time.Now()
+	space := p.Space()
+	lo, hi := space.Box()
+	if d := space.Dim(); d < 1 || d > Most {
+		return nil, fmt.Errorf("quadrature goes from 1 to %d free parameters, not to %d", Most, d)
+	}
+	e := &Posterior{Space: space, labels: labels(space)}
+	problem := quadrature.Problem{Lo: lo, Hi: hi, Start: start, Classes: len(e.labels),
+		Density: func() quadrature.Density { return p.Evaluator().LogDensity }, Class: e.class}
+	r, err := quadrature.Integrate(ctx, problem, Options(space.Dim(), threads))
+	if err != nil {
+		return nil, err
+	}
+	e.Best, e.LogBest, e.LogEvidence, e.Marginals = r.Mode, r.LogMode, r.LogEvidence, r.Marginals
+	e.Nodes, e.Evaluations, e.Warnings, e.classes = r.Nodes, r.Evaluations, r.Warnings, r.Classes
+	e.gatherRare()
+	e.Seconds = time.Since(begun).Seconds()
+	return e, nil
+}
+
+// NoSupport reports an error that says that no point with a finite density was
+// found.
+func NoSupport(err error) bool { return errors.Is(err, quadrature.ErrNoSupport) }
+
+// class is the place of the label at x among the labels, -1 for a rare one.
+func (e *Posterior) class(x []float64) int {
+	var p likelihood.Point
+	e.Space.Point(x, &p)
+	return slices.Index(e.labels, outlook.LabelOf(p.Universe))
+}
+
+// classesMost is how many classes quadrature keeps apart.
+const classesMost = 15
+
+// labels lists the labels that the universes of a space have, the commonest first, by a look at the box. Those that
+// it misses are found at the nodes.
+func labels(space *likelihood.Space) []outlook.Label {
+	var list []outlook.Label
+	var count []int
+	var p likelihood.Point
+	outlook.Spread(space, 4000, func(x []float64) {
+		space.Point(x, &p)
+		if !space.Allows(&p.Universe) {
+			return
+		}
+		l := outlook.LabelOf(p.Universe)
+		i := slices.Index(list, l)
+		if i < 0 {
+			list, count = append(list, l), append(count, 0)
+			i = len(list) - 1
+		}
+		count[i]++
+	})
+	order := make([]int, len(list))
+	for i := range order {
+		order[i] = i
+	}
+	slices.SortStableFunc(order, func(a, b int) int { return count[b] - count[a] })
+	var out []outlook.Label
+	for _, i := range order[:min(len(order), classesMost)] {
+		out = append(out, list[i])
+	}
+	if out == nil { // nothing is allowed: integration will say so
+		out = []outlook.Label{{}}
+	}
+	return out
+}
+
+func (e *Posterior) gatherRare() {
+	var p likelihood.Point
+	for i, c := range e.Nodes.Class {
+		if c >= 0 {
+			continue
+		}
+		e.Space.Point(e.Nodes.At(i), &p)
+		e.rare = append(e.rare, rareNodes{outlook.LabelOf(p.Universe), e.Nodes.Weight[i]})
+	}
+}
+
+// rarest is the probability below which integration promises nothing.
+var rarest = quadrature.DefaultOptions().Rarest
+
+// Probability of a statement, with the error of the integral. What is below the
+// rarest that is looked for becomes a limit.
+func (e *Posterior) Probability(holds func(outlook.Label) bool) outlook.Share {
+	var yes, no quadrature.Estimate
+	add := func(l outlook.Label, p, err float64) {
+		sum := &no
+		if holds(l) {
+			sum = &yes
+		}
+		sum.Value += p
+		sum.Err += err
+	}
+	for i, c := range e.classes {
+		add(e.labels[i], c.Value, c.Err)
+	}
+	for _, r := range e.rare {
+		add(r.label, r.weight, r.weight)
+	}
+	return share(yes, no)
+}
+
+// share takes the error from the rarer side, and 1 - p where that is the exact one.
+func share(yes, no quadrature.Estimate) outlook.Share {
+	s := outlook.Share{P: yes.Value, Err: min(yes.Err, no.Err), Upper: math.NaN(), Lower: math.NaN()}
+	if no.Value < yes.Value {
+		s.P = 1 - no.Value
+	}
+	limit := func(e quadrature.Estimate) float64 { return max(rarest, e.Value+2*e.Err) }
+	switch {
+	case yes.Value == 0 && no.Value > 0: // no volume: exactly zero
+	case no.Value == 0:
+	case yes.Value < rarest || yes.Value < 3*yes.Err:
+		s.P, s.Upper = 0, limit(yes)
+	case no.Value < rarest || no.Value < 3*no.Err:
+		s.P, s.Lower = 1, 1-limit(no)
+	}
+	return s
+}
+
+// Reweighted is the posterior under another prior.
+func (e *Posterior) Reweighted(ratio func(x []float64) float64) (outlook.Reweighted, error) {
+	nodes, mean, err := e.Nodes.Reweight(ratio)
+	if err != nil {
+		return outlook.Reweighted{}, err
+	}
+	again := *e
+	again.Nodes, again.rare, again.classes = nodes, nil, make([]quadrature.Estimate, len(e.classes))
+	for i := range again.classes {
+		again.classes[i] = nodes.Probability(i)
+		if of := e.classes[i]; of.Value > 0 { // the nodes do not know the error of the integral itself
+			again.classes[i].Err += again.classes[i].Value * of.Err / of.Value
+		}
+	}
+	again.gatherRare()
+	var first, second float64
+	for i, w := range e.Nodes.Weight {
+		f := ratio(e.Nodes.At(i))
+		first, second = first+w*f, second+w*f*f
+	}
+	return outlook.Reweighted{Belief: &again, LogMean: mean.Value, Err: mean.Err, Effective: first * first / second}, nil
+}
+
+var _ outlook.Belief = (*Posterior)(nil)
+
+// thinning is the probability that may be left out of what is computed at every node.
+const thinning = 1e-4
+
+// Distribution returns the distribution of a quantity, conditional on its being
+// defined (not NaN).
+func (e *Posterior) Distribution(of func(*likelihood.Point) float64) (quadrature.Marginal, error) {
+	var p likelihood.Point
+	return e.thinned().Marginal(func(x []float64) float64 {
+		e.Space.Point(x, &p)
+		return of(&p)
+	})
+}
+
+// OfUniverse is Distribution of a quantity that the universe alone decides. Many
+// nodes share their universe, so its costly quantities are computed once.
+func (e *Posterior) OfUniverse(of func(model.Universe) float64) (quadrature.Marginal, error) {
+	known := map[model.Universe]float64{}
+	return e.Distribution(func(p *likelihood.Point) float64 {
+		v, ok := known[p.Universe]
+		if !ok {
+			v = of(p.Universe)
+			known[p.Universe] = v
+		}
+		return v
+	})
+}
+
+func (e *Posterior) thinned() *quadrature.Nodes {
+	if e.Nodes.Len() < 5000 {
+		return e.Nodes
+	}
+	return e.Nodes.Thin(thinning)
+}
+
+// Sample returns about n points of equal weight, in the order of the nodes: every
+// stretch of 1/n of the probability sends one.
+func (e *Posterior) Sample(n int) [][]float64 {
+	var out [][]float64
+	sum := 0.0
+	for i, w := range e.Nodes.Weight {
+		sum += w
+		for float64(len(out))+0.5 < sum*float64(n) {
+			out = append(out, e.Nodes.At(i))
+		}
+	}
+	return out
+}
+
+// Universes are those of a sample.
+func Universes(space *likelihood.Space, points [][]float64) []model.Universe {
+	out := make([]model.Universe, len(points))
+	var p likelihood.Point
+	for i, x := range points {
+		space.Point(x, &p)
+		out[i] = p.Universe
+	}
+	return out
+}

@@ -1,0 +1,73 @@
+package nested
+
+import (
+	"math"
+
+	"omen/cmd/omen/internal/outlook"
+)
+
+// Best is the place of the model with the largest evidence.
+func (c *Comparison) Best() int {
+	best := 0
+	for i := range c.Models {
+		if c.Models[i].LogEvidence.Value > c.Models[best].LogEvidence.Value {
+			best = i
+		}
+	}
+	return best
+}
+
+// Own is the place of the run's own family, -1 if it is not among the models.
+func (c *Comparison) Own() int {
+	for i := range c.Models {
+		if c.Models[i].Own {
+			return i
+		}
+	}
+	return -1
+}
+
+// Average is the probability of a statement averaged over the models: Σ p_k P_k. Its
+// error is that of the P_k and, to first order, that of the evidences,
+// dP = Σ p_k (P_k - P) dlnZ_k. Models in which the count of draws is none or all
+// contribute their limit to the limit.
+func (c *Comparison) Average(holds func(outlook.Label) bool) outlook.Share {
+	shares := make([]outlook.Share, len(c.Models))
+	var p, upper, lower float64
+	for i := range c.Models {
+		m := &c.Models[i]
+		if m.Belief == nil {
+			continue
+		}
+		shares[i] = m.Belief.Probability(holds)
+		w := m.Probability.Value
+		p += w * shares[i].P
+		upper += w * or(shares[i].Upper, shares[i].P)
+		lower += w * or(shares[i].Lower, shares[i].P)
+	}
+	s := outlook.Share{P: p, Upper: math.NaN(), Lower: math.NaN()}
+	variance := 0.0
+	for i := range c.Models {
+		m := &c.Models[i]
+		if m.Belief == nil {
+			continue
+		}
+		variance += math.Pow(m.Probability.Value*or(shares[i].Err, 0), 2)
+		variance += math.Pow(m.Probability.Value*(shares[i].P-p)*m.LogEvidence.Err, 2)
+	}
+	s.Err = math.Sqrt(variance)
+	switch { // a limit counts where it is more than the rest
+	case upper-p > p:
+		s.P, s.Upper = 0, upper
+	case p-lower > 1-p:
+		s.P, s.Lower = 1, lower
+	}
+	return s
+}
+
+func or(x, otherwise float64) float64 {
+	if math.IsNaN(x) {
+		return otherwise
+	}
+	return x
+}

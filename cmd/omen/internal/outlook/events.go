@@ -1,0 +1,93 @@
+package outlook
+
+import (
+	"math"
+
+	"omen/model"
+)
+
+// Event is a moment in the life of a universe.
+type Event struct {
+	Name  string // in JSON
+	Words string // in a text: "big crunch, from today"
+	Given string // the condition under which it is told
+	Held  bool   // with the equation of state held at today's value
+	Plain bool   // the value is a plain number, not a time
+
+	// at is the value in units of 1/H0 (or plain), NaN where it does not come to
+	// be.
+	at func(u model.Universe) float64
+}
+
+// At is when the event is, in units of 1/H0 or, with gyr, in Gyr; NaN for a universe
+// in which it does not come to be.
+func (e Event) At(u model.Universe, gyr bool) float64 {
+	if e.Held {
+		u = u.Frozen()
+	}
+	if e.Plain || !gyr {
+		return e.at(u)
+	}
+	return e.at(u) * u.HubbleTime()
+}
+
+// Events lists the moments that are reported. With evolving, those of the future
+// are told for both rules of what the equation of state will be.
+func Events(evolving bool) []Event {
+	past := []Event{
+		{Name: "age", Words: "age today", Given: "there was a big bang", at: age},
+		{Name: "acceleration_onset_z", Words: "acceleration began, z", Given: "it accelerates today", Plain: true, at: onset},
+		{Name: "acceleration_onset", Words: "acceleration began, before today", Given: "it accelerates today", at: onsetTime},
+	}
+	out := append(past, future(false)...)
+	if evolving {
+		out = append(out, future(true)...)
+	}
+	return out
+}
+
+func future(held bool) []Event {
+	suffix, rule := "", ""
+	if held {
+		suffix, rule = "_w_held", ", w held"
+	}
+	return []Event{
+		{Name: "turnaround" + suffix, Words: "turnaround, from today" + rule, Given: "it recollapses", Held: held, at: turnaround},
+		{Name: "crunch" + suffix, Words: "big crunch, from today" + rule, Given: "it recollapses", Held: held, at: crunch},
+		{Name: "rip" + suffix, Words: "big rip, from today" + rule, Given: "it rips", Held: held, at: rip},
+	}
+}
+
+// onset is finite: a universe that accelerated from its beginning has none.
+func onset(u model.Universe) float64 {
+	if z := u.AccelerationOnset(); !math.IsInf(z, 0) {
+		return z
+	}
+	return math.NaN()
+}
+
+func onsetTime(u model.Universe) float64 { return u.Lookback(onset(u)) / u.HubbleTime() }
+
+func turnaround(u model.Universe) float64 {
+	if u.Fate() != model.Recollapse {
+		return math.NaN()
+	}
+	_, t := u.Turnaround()
+	return (t - u.AgeToday()) / u.HubbleTime()
+}
+
+func crunch(u model.Universe) float64 {
+	if u.Fate() != model.Recollapse {
+		return math.NaN()
+	}
+	return (u.Crunch() - u.AgeToday()) / u.HubbleTime()
+}
+
+func rip(u model.Universe) float64 {
+	if u.Fate() != model.BigRip {
+		return math.NaN()
+	}
+	return u.Rip() / u.HubbleTime()
+}
+
+func age(u model.Universe) float64 { return u.AgeToday() / u.HubbleTime() }
