@@ -6,6 +6,7 @@
 //	omen resume DIR                 go on with a run that stopped
 //	omen status DIR                 how far a run is
 //	omen report DIR                 figures, a page to share, text for a draft
+//	omen compare DIR DIR...         runs side by side, and how far apart
 //	omen inspect RUN.toml           what was read, and what looks odd in it
 //	omen fate --Om 0.3 --OL 0.7     what one universe does
 //
@@ -41,6 +42,7 @@ const help = `omen: from measured distances to constraints on the universe and i
   omen resume DIR                 go on with a run that stopped
   omen status DIR                 how far a run is
   omen report DIR                 figures, a page to share, text for a draft
+  omen compare DIR DIR...         runs side by side, and how far apart
   omen inspect RUN.toml           what was read, and what looks odd in it
   omen fate --Om 0.3 --OL 0.7     what one universe does
 
@@ -72,6 +74,8 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 		return runStatus(rest, stdout)
 	case "report":
 		return runReport(rest, stdout)
+	case "compare":
+		return runCompare(rest, stdout)
 	case "fate":
 		return runFate(rest, stdout)
 	case "inspect":
@@ -84,7 +88,7 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 		fmt.Fprintln(stdout, "omen", version())
 		return nil
 	}
-	commands := []string{"fit", "resume", "status", "report", "fate", "inspect", "new", "help", "version"}
+	commands := []string{"fit", "resume", "status", "report", "compare", "fate", "inspect", "new", "help", "version"}
 	return usagef("unknown command %q; the nearest is %q (known: %s)", args[0], data.Nearest(args[0], commands), strings.Join(commands, ", "))
 }
 

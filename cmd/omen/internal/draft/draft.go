@@ -110,11 +110,20 @@ func Constraints(r *gather.Run) []byte {
 	return b.Bytes()
 }
 
-func row(b *bytes.Buffer, q result.Quantity, best float64, known bool) {
-	name := "$" + symbol(q.Name) + "$"
-	if u := unit(q.Unit); u != "" {
-		name += " ($" + u + "$)"
+// Name is a quantity with its unit.
+func Name(name, inUnit string) string {
+	s := "$" + symbol(name) + "$"
+	if u := unit(inUnit); u != "" {
+		s += " ($" + u + "$)"
 	}
+	return s
+}
+
+// Estimate is a quantity with its errors in math mode.
+func Estimate(q result.Quantity) string { return newEstimate(q).tex() }
+
+func row(b *bytes.Buffer, q result.Quantity, best float64, known bool) {
+	name := Name(q.Name, q.Unit)
 	if !q.Constrained {
 		fmt.Fprintf(b, "%s & not constrained & & \\\\\n", name)
 		return
@@ -184,18 +193,24 @@ func heading(b *bytes.Buffer, r *gather.Run, lines ...string) {
 func CSV(r *gather.Run) ([]byte, error) {
 	var b bytes.Buffer
 	w := csv.NewWriter(&b)
-	w.Write([]string{"name", "unit", "mean", "sd", "median", "lo68", "hi68", "lo95", "hi95", "hdi68_lo", "hdi68_hi",
-		"best", "mcse", "ess", "rhat", "constrained"})
+	w.Write(Header())
 	for _, qs := range [][]result.Quantity{r.Summary.Parameters, r.Summary.Derived} {
 		for _, q := range qs {
-			w.Write(record(q, r.Summary.Fit.Best))
+			w.Write(Record(q, r.Summary.Fit.Best))
 		}
 	}
 	w.Flush()
 	return b.Bytes(), w.Error()
 }
 
-func record(q result.Quantity, best map[string]result.Number) []string {
+// Header names the columns of [Record].
+func Header() []string {
+	return []string{"name", "unit", "mean", "sd", "median", "lo68", "hi68", "lo95", "hi95", "hdi68_lo", "hdi68_hi",
+		"best", "mcse", "ess", "rhat", "constrained"}
+}
+
+// Record is a quantity as a row of CSV, with the best fit where there is one.
+func Record(q result.Quantity, best map[string]result.Number) []string {
 	cell := func(x, mcse result.Number) string {
 		if v := float64(x); math.IsNaN(v) || math.IsInf(v, 0) {
 			return ""

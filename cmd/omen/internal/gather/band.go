@@ -48,6 +48,9 @@ func quantile(sorted []float64, p float64) float64 {
 	at := p * float64(len(sorted)-1)
 	i := min(int(at), len(sorted)-1)
 	j := min(i+1, len(sorted)-1)
+	if sorted[i] == sorted[j] {
+		return sorted[i]
+	}
 	return sorted[i] + (at-float64(i))*(sorted[j]-sorted[i])
 }
 

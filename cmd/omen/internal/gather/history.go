@@ -17,6 +17,7 @@ const historyNodes = 240
 const (
 	future  = 1.6
 	largest = 4
+	torn    = 1e3 // stands for a universe after its rip
 )
 
 // history is the scale factor against time of the best fit with its bands.
@@ -34,7 +35,7 @@ func (r *Run) history() (*Picture, error) {
 			oldest = max(oldest, u.AgeToday()/h.unit(u))
 		}
 	}
-	in := figure.History{Unfinished: r.Unfinished(), Unit: figure.Markup("1/*H*_0"), Coasting: 1, Top: largest}
+	in := figure.History{Unfinished: r.Unfinished(), Unit: figure.Markup("1/*H*_0"), Coasting: 1}
 	span := future
 	if h.gyr {
 		in.Unit = figure.Plain("Gyr")
@@ -47,7 +48,7 @@ func (r *Run) history() (*Picture, error) {
 	}
 	at := h.curve(best, b.x, false)
 	in.Scale = b.figure(at)
-	in.Top = top(at)
+	in.Top = top(at, in.Scale.Hi68)
 	in.Moments = h.moments(best)
 	return &Picture{Caption: h.caption(), Alt: h.alt(best), draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawHistory(in, w) }}, nil
 }
@@ -84,9 +85,9 @@ func (h *history) curve(u model.Universe, x []float64, inBand bool) []float64 {
 	rip := age + u.Rip()
 	for i := range a {
 		switch {
-		case !inBand || !math.IsNaN(a[i]):
-		case times[i] >= rip:
-			a[i] = math.Inf(1)
+		case !inBand || a[i] <= torn:
+		case times[i] >= rip || a[i] > torn:
+			a[i] = torn
 		default:
 			a[i] = 0
 		}
@@ -94,12 +95,15 @@ func (h *history) curve(u model.Universe, x []float64, inBand bool) []float64 {
 	return a
 }
 
-// top is the largest scale factor to show.
-func top(best []float64) float64 {
+// top is the largest scale factor to show: that of the best fit and of the 68%
+// band.
+func top(curves ...[]float64) float64 {
 	most := 1.2
-	for _, v := range best {
-		if v > most && !math.IsInf(v, 0) {
-			most = v
+	for _, c := range curves {
+		for _, v := range c {
+			if v > most && v < torn {
+				most = v
+			}
 		}
 	}
 	return min(1.05*most, largest)
@@ -148,9 +152,9 @@ func (h *history) caption() string {
 func (h *history) alt(best model.Universe) string {
 	s := "Scale factor against time, past and future."
 	if h.gyr {
-		s += " The age today: " + h.run.values("age") + "."
+		s += " The age today: " + h.run.Values("age") + "."
 	} else {
-		s += " The age today in units of 1/H0: " + h.run.values("H0t0") + "."
+		s += " The age today in units of 1/H0: " + h.run.Values("H0t0") + "."
 	}
 	if z := best.AccelerationOnset(); z > 0 && !math.IsInf(z, 0) {
 		s += fmt.Sprintf(" In the best fit the expansion began to accelerate at redshift %.2f.", z)

@@ -48,7 +48,7 @@ func (r *Run) marginals() (*Picture, error) {
 	if left > 0 {
 		caption += " " + count(left, "parameter") + " more would not fit."
 	}
-	return &Picture{Caption: caption, Alt: "Marginal posteriors: " + r.values(names...) + ".", Wide: len(in.Parameters) > 3,
+	return &Picture{Caption: caption, Alt: "Marginal posteriors: " + r.Values(names...) + ".", Wide: len(in.Parameters) > 3,
 		draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawMarginals(in, w) }}, nil
 }
 

@@ -42,8 +42,8 @@ func Find(s *result.Summary, name string) (result.Quantity, bool) {
 	return result.Quantity{}, false
 }
 
-// values lists quantities in words.
-func (r *Run) values(names ...string) string {
+// Values lists quantities in words.
+func (r *Run) Values(names ...string) string {
 	var out []string
 	for _, name := range names {
 		if q, ok := Find(r.Summary, name); ok {

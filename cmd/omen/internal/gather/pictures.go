@@ -104,5 +104,13 @@ func contains(list []string, s string) bool {
 	return false
 }
 
+// NewPicture is a figure from elsewhere.
+func NewPicture(name, title, caption, alt string, wide bool, draw func(figure.Width) (*figure.Figure, error)) *Picture {
+	return &Picture{Name: name, Title: title, Caption: caption, Alt: alt, Wide: wide, draw: draw}
+}
+
+// Absent is a figure that cannot be made, and why.
+func Absent(name, title, why string) *Picture { return &Picture{Name: name, Title: title, Why: why} }
+
 // absent is the picture of a run of which there is none.
 func absent(format string, args ...any) *Picture { return &Picture{Why: fmt.Sprintf(format, args...)} }

@@ -36,7 +36,7 @@ func (r *Run) plane() (*Picture, error) {
 	if len(in.Sets) > 0 {
 		name = "all together"
 	}
-	in.Sets = append(in.Sets, set(name, s, r.sample(planeDraws), r.Outcome.Check, r.Best))
+	in.Sets = append(in.Sets, set(name, s, [2]string{"Om", "OL"}, r.sample(planeDraws), r.Outcome.Check, r.Best))
 	in.Dividers = dividers(s)
 	in.Frame = frame(in.Sets, in.XEdges, in.YEdges)
 	caption := r.planeCaption(&in) + left
@@ -73,7 +73,7 @@ func (r *Run) separately(in *figure.Plane) string {
 		}
 		v := a.check.Sample
 		rows := max(1, planeDraws/(v.Ensembles()*v.Walkers()))
-		in.Sets = append(in.Sets, set(name, a.space, v.Thin(max(1, v.Steps()/rows)), a.check, nil))
+		in.Sets = append(in.Sets, set(name, a.space, [2]string{"Om", "OL"}, v.Thin(max(1, v.Steps()/rows)), a.check, nil))
 	}
 	if len(missing) > 0 {
 		return " Not shown by itself, for it leaves the plane too open: " + strings.Join(missing, ", ") + "."
@@ -81,13 +81,50 @@ func (r *Run) separately(in *figure.Plane) string {
 	return ""
 }
 
-func set(name string, s *likelihood.Space, v sampler.View, c sampler.Check, best []float64) figure.Set {
-	om, ol := index(s, "Om"), index(s, "OL")
-	out := figure.Set{Name: figure.Plain(name), X: v.Coordinate(om).Values(), Y: v.Coordinate(ol).Values(), ESS: c.ESS()}
+// set is the draws of two parameters.
+func set(name string, s *likelihood.Space, pair [2]string, v sampler.View, c sampler.Check, best []float64) figure.Set {
+	x, y := index(s, pair[0]), index(s, pair[1])
+	out := figure.Set{Name: figure.Plain(name), X: v.Coordinate(x).Values(), Y: v.Coordinate(y).Values(), ESS: c.ESS()}
 	if best != nil {
-		out.Best = &[2]float64{best[om], best[ol]}
+		out.Best = &[2]float64{best[x], best[y]}
 	}
 	return out
+}
+
+// Has reports whether a parameter is free in a run.
+func (r *Run) Has(name string) bool { return index(r.Job.Space, name) >= 0 }
+
+// PlaneOf is several runs in the plane of two parameters that all of them have.
+// The edges of a prior that all of them share are respected.
+func PlaneOf(runs []*Run, names []string, pair [2]string, caption, alt string) *Picture {
+	in := figure.Plane{X: axis(pair[0]), Y: axis(pair[1])}
+	var x, y []density.Edges
+	same := true
+	for i, r := range runs {
+		s := r.Job.Space
+		in.Sets = append(in.Sets, set(names[i], s, pair, r.sample(planeDraws), r.Outcome.Check, nil))
+		in.Unfinished = in.Unfinished || r.Unfinished()
+		x, y = append(x, edges(s.Free()[index(s, pair[0])].Prior)), append(y, edges(s.Free()[index(s, pair[1])].Prior))
+		same = same && x[i] == x[0] && y[i] == y[0]
+	}
+	if same {
+		in.XEdges, in.YEdges = x[0], y[0]
+	}
+	if pair == [2]string{"Om", "OL"} {
+		of := runs[0]
+		for _, r := range runs {
+			if r.Job.Space.Family().DarkEnergy != likelihood.Constant { // the lines that hold for all
+				of = r
+			}
+		}
+		in.Dividers = dividers(of.Job.Space)
+		if same {
+			in.Frame = frame(in.Sets, in.XEdges, in.YEdges)
+		} else {
+			in.Frame = frame(in.Sets, density.NoEdges(), density.NoEdges())
+		}
+	}
+	return NewPicture("plane", "One plane", caption, alt, false, func(w figure.Width) (*figure.Figure, error) { return figure.DrawPlane(in, w) })
 }
 
 // The part of the plane that is always shown: the lines between the fates run
@@ -174,7 +211,7 @@ func (r *Run) planeCaption(in *figure.Plane) string {
 }
 
 func (r *Run) planeAlt() string {
-	s := "Posterior regions in the plane of Om and OL: " + r.values("Om", "OL") + "; " + r.values("Ok") + "."
+	s := "Posterior regions in the plane of Om and OL: " + r.Values("Om", "OL") + "; " + r.Values("Ok") + "."
 	if c := r.correlation("Om", "OL"); !math.IsNaN(c) {
 		s += fmt.Sprintf(" Their correlation is %.2f.", c)
 	}

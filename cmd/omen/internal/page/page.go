@@ -103,19 +103,29 @@ func Report(w io.Writer, r *gather.Run, pictures []*gather.Picture) error {
 	for _, t := range s.Fit.Tables {
 		v.Tables = append(v.Tables, table{t.Name, t.Kind, t.Rows, fmt.Sprintf("%.2f", float64(t.Chi2))})
 	}
+	var err error
+	if v.Figures, v.Missing, err = drawings(pictures); err != nil {
+		return err
+	}
+	return reportTemplate.Execute(w, v)
+}
+
+// drawings makes figures part of the page, and says which there are not.
+func drawings(pictures []*gather.Picture) (figures []drawing, missing []string, err error) {
 	for _, p := range pictures {
 		if p.Why != "" {
-			v.Missing = append(v.Missing, p.Title+" ("+p.Why+")")
+			missing = append(missing, p.Title+" ("+p.Why+")")
 			continue
 		}
 		d, err := draw(p)
 		if err != nil {
-			return err
+			return nil, nil, err
 		}
-		v.Figures = append(v.Figures, *d)
+		figures = append(figures, *d)
 	}
-	return reportTemplate.Execute(w, v)
+	return figures, missing, nil
 }
+
 
 // draw makes a figure part of the page.
 func draw(p *gather.Picture) (*drawing, error) {

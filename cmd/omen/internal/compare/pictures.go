@@ -1,0 +1,107 @@
+package compare
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"omen/cmd/omen/internal/figure"
+	"omen/cmd/omen/internal/gather"
+	"omen/cmd/omen/internal/report"
+)
+
+// mostWhiskers is how many quantities are drawn: a page full.
+const mostWhiskers = 8
+
+// mostRegions is how many runs can be told apart in a plane.
+const mostRegions = 6
+
+// Pictures are the figures of a comparison: the runs in one plane, and their
+// constraints side by side.
+func (c *Comparison) Pictures() []*gather.Picture {
+	return []*gather.Picture{c.plane(), c.whiskers()}
+}
+
+// plane is the regions of all runs that have both of two parameters, the pair
+// that most runs have.
+func (c *Comparison) plane() *gather.Picture {
+	best, most := [2]string{}, 1
+	for _, pair := range [][2]string{{"Om", "OL"}, {"w0", "wa"}, {"Om", "w0"}, {"Om", "H0"}, {"Om", "hrd"}, {"H0", "hrd"}, {"Om", "M"}} {
+		n := 0
+		for _, r := range c.Runs {
+			if r.Has(pair[0]) && r.Has(pair[1]) {
+				n++
+			}
+		}
+		if n > most {
+			best, most = pair, n
+		}
+	}
+	if most < 2 {
+		return gather.Absent("plane", "One plane", "no two parameters are free in two of the runs")
+	}
+	var runs []*gather.Run
+	var names, values, left []string
+	for _, r := range c.Runs {
+		if !r.Has(best[0]) || !r.Has(best[1]) || len(runs) == mostRegions {
+			left = append(left, r.Name)
+			continue
+		}
+		runs, names = append(runs, r.Run), append(names, r.Name)
+		values = append(values, r.Name+": "+r.Values(best[0], best[1]))
+	}
+	caption := fmt.Sprintf("Regions of highest density that hold 68%% and 95%% of the posterior of %s and %s in each run.", best[0], best[1])
+	if len(left) > 0 {
+		caption += " Not shown: " + strings.Join(left, ", ") + "."
+	}
+	return gather.PlaneOf(runs, names, best, caption, "Regions of each run. "+strings.Join(values, "; ")+".")
+}
+
+// whiskers is the constraints of all runs side by side.
+func (c *Comparison) whiskers() *gather.Picture {
+	in := figure.Whiskers{Unfinished: c.Unfinished()}
+	for _, r := range c.Runs {
+		in.Runs = append(in.Runs, figure.Plain(r.Name))
+	}
+	var parts []string
+	for _, q := range c.chosen() {
+		symbol, unit := gather.Symbol(q.Name)
+		f := figure.Quantity{Symbol: symbol, Unit: unit}
+		for i, v := range q.Values {
+			w := figure.Constraint{Median: math.NaN()}
+			if v != nil {
+				w = figure.Constraint{Median: float64(v.Median), Lo68: float64(v.Interval68[0]), Hi68: float64(v.Interval68[1]),
+					Lo95: float64(v.Interval95[0]), Hi95: float64(v.Interval95[1])}
+				parts = append(parts, fmt.Sprintf("%s of %s %s", q.Name, c.Runs[i].Name, report.MeanSD(*v)))
+			}
+			f.Runs = append(f.Runs, w)
+		}
+		in.Quantities = append(in.Quantities, f)
+	}
+	return gather.NewPicture("whiskers", "Constraints side by side",
+		"Median, central 68% interval (thick) and central 95% interval (thin) of each run.",
+		strings.Join(parts, "; ")+".", len(in.Quantities) > 2,
+		func(w figure.Width) (*figure.Figure, error) { return figure.DrawWhiskers(in, w) })
+}
+
+// chosen are the quantities to draw: those that several runs have come first.
+func (c *Comparison) chosen() []Quantity {
+	var several, one []Quantity
+	for _, q := range c.Quantities {
+		n := 0
+		for _, v := range q.Values {
+			if v != nil {
+				n++
+			}
+		}
+		if n > 1 {
+			several = append(several, q)
+		} else {
+			one = append(one, q)
+		}
+	}
+	if len(several) == 0 {
+		several = one
+	}
+	return several[:min(len(several), mostWhiskers)]
+}
