@@ -3,6 +3,7 @@ package compare
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"omen/cmd/omen/internal/figure"
@@ -19,31 +20,36 @@ const mostRegions = 6
 // Pictures are the figures of a comparison: the runs in one plane, and their
 // constraints side by side.
 func (c *Comparison) Pictures() []*gather.Picture {
-	return []*gather.Picture{c.plane(), c.whiskers()}
+	plane, first := c.plane()
+	return []*gather.Picture{plane, c.whiskers(first)}
 }
 
+// pairs are the planes that can be shown, the more telling ones first.
+var pairs = [][2]string{{"Om", "OL"}, {"w0", "wa"}, {"Om", "w0"}, {"Om", "H0"}, {"Om", "hrd"}, {"H0", "hrd"}, {"Om", "M"}}
+
 // plane is the regions of all runs that have both of two parameters, the pair
-// that most runs have.
-func (c *Comparison) plane() *gather.Picture {
-	best, most := [2]string{}, 1
-	for _, pair := range [][2]string{{"Om", "OL"}, {"w0", "wa"}, {"Om", "w0"}, {"Om", "H0"}, {"Om", "hrd"}, {"H0", "hrd"}, {"Om", "M"}} {
-		n := 0
-		for _, r := range c.Runs {
-			if r.Has(pair[0]) && r.Has(pair[1]) {
-				n++
+// that most runs have. It returns the runs in it, too.
+func (c *Comparison) plane() (*gather.Picture, []int) {
+	var best [2]string
+	var in []int
+	for _, pair := range pairs {
+		var have []int
+		for i, r := range c.Runs {
+			if r.Has(pair[0]) && r.Has(pair[1]) && len(have) < mostRegions {
+				have = append(have, i)
 			}
 		}
-		if n > most {
-			best, most = pair, n
+		if len(have) > max(1, len(in)) {
+			best, in = pair, have
 		}
 	}
-	if most < 2 {
-		return gather.Absent("plane", "One plane", "no two parameters are free in two of the runs")
+	if in == nil {
+		return gather.Absent("plane", "One plane", "no two parameters are free in two of the runs"), nil
 	}
 	var runs []*gather.Run
 	var names, values, left []string
-	for _, r := range c.Runs {
-		if !r.Has(best[0]) || !r.Has(best[1]) || len(runs) == mostRegions {
+	for i, r := range c.Runs {
+		if !slices.Contains(in, i) {
 			left = append(left, r.Name)
 			continue
 		}
@@ -54,21 +60,28 @@ func (c *Comparison) plane() *gather.Picture {
 	if len(left) > 0 {
 		caption += " Not shown: " + strings.Join(left, ", ") + "."
 	}
-	return gather.PlaneOf(runs, names, best, caption, "Regions of each run. "+strings.Join(values, "; ")+".")
+	return gather.PlaneOf(runs, names, best, caption, "Regions of each run. "+strings.Join(values, "; ")+"."), in
 }
 
-// whiskers is the constraints of all runs side by side.
-func (c *Comparison) whiskers() *gather.Picture {
+// whiskers is the constraints of all runs side by side, those of the plane first,
+// so that they have the same colours.
+func (c *Comparison) whiskers(first []int) *gather.Picture {
 	in := figure.Whiskers{Unfinished: c.Unfinished()}
-	for _, r := range c.Runs {
-		in.Runs = append(in.Runs, figure.Plain(r.Name))
+	order := slices.Clone(first)
+	for i := range c.Runs {
+		if !slices.Contains(first, i) {
+			order = append(order, i)
+		}
+	}
+	for _, i := range order {
+		in.Runs = append(in.Runs, figure.Plain(c.Runs[i].Name))
 	}
 	var parts []string
 	for _, q := range c.chosen() {
 		symbol, unit := gather.Symbol(q.Name)
 		f := figure.Quantity{Symbol: symbol, Unit: unit}
-		for i, v := range q.Values {
-			w := figure.Constraint{Median: math.NaN()}
+		for _, i := range order {
+			v, w := q.Values[i], figure.Constraint{Median: math.NaN()}
 			if v != nil {
 				w = figure.Constraint{Median: float64(v.Median), Lo68: float64(v.Interval68[0]), Hi68: float64(v.Interval68[1]),
 					Lo95: float64(v.Interval95[0]), Hi95: float64(v.Interval95[1])}

@@ -52,7 +52,7 @@ func (c *Comparison) Text(w io.Writer) error {
 
 func (c *Comparison) pairText(b *strings.Builder, p Pair) {
 	fmt.Fprintf(b, "  %s to %s\n", shorten(c.Runs[p.A].Name, 34), shorten(c.Runs[p.B].Name, 34))
-	fmt.Fprintf(b, "    scatter %s: %s\n", p.Rule.Formula(), p.Why())
+	fmt.Fprintf(b, "    %s\n    scatter %s\n", p.Why(), p.Rule.Formula())
 	line := "   "
 	for _, s := range p.Shifts {
 		item := fmt.Sprintf(" %s %s", s.Name, Sigmas(s))

@@ -100,9 +100,14 @@ func Constraints(r *gather.Run) []byte {
 		row(&b, q, math.NaN(), false)
 	}
 	b.WriteString("\\midrule\n")
-	for _, f := range append(s.Fates[:len(s.Fates):len(s.Fates)], s.Today...) {
-		fmt.Fprintf(&b, "$P$(%s) & $%s$ & & \\\\\n", Escape(event(f.Name)), probability(f))
+	rows := func(fates []result.Fate, condition string) {
+		for _, f := range fates {
+			fmt.Fprintf(&b, "$P$(%s%s) & $%s$ & & \\\\\n", Escape(event(f.Name)), condition, probability(f))
+		}
 	}
+	rows(s.Fates, "")
+	rows(s.FatesHeldW, " if $w$ stays")
+	rows(s.Today, "")
 	b.WriteString("\\bottomrule\n\\end{tabular}\n")
 	if !s.Complete {
 		b.WriteString("\\par\\smallskip\\textbf{Unfinished: the run stopped before its goal.}\n")

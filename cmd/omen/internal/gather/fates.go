@@ -36,7 +36,7 @@ func (r *Run) fates() (*Picture, error) {
 	for _, f := range series[0].Fates {
 		words = append(words, f.Name+" "+report.Probability(f))
 	}
-	return &Picture{Caption: "The probability of each fate with its Monte Carlo error. An open bar with an arrow is an upper limit: no draw of the posterior has that fate.",
+	return &Picture{Caption: "The probability of each fate with its Monte Carlo error. An open bar with an arrow is an upper limit: no draw of the posterior has that fate." + r.extrapolation(),
 		Alt: "Probabilities: " + strings.Join(words, "; ") + ".", draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawFates(in, w) }}, nil
 }
 

@@ -1,8 +1,10 @@
 package gather
 
 import (
+	"cmp"
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 
 	"omen/cmd/omen/internal/figure"
@@ -268,4 +270,50 @@ func (h *hubble) alt(in *figure.Hubble) string {
 	}
 	return fmt.Sprintf("Measured distances against redshift from %.3g to %.3g with the best fit. %s. In all chi-squared %.1f for %d degrees of freedom.",
 		h.z[0], h.z[len(h.z)-1], strings.Join(parts, "; "), float64(f.Chi2), f.DoF)
+}
+
+// Outlier is a measurement that is far from the best fit.
+type Outlier struct {
+	Table, Name         string
+	Line                int // of the file
+	Z                   float64
+	Measured, Predicted float64
+	Sigmas              float64
+}
+
+// Outliers are the n measurements that are furthest from the best fit, in units
+// of their own errors.
+func (r *Run) Outliers(n int) []Outlier {
+	each, ok := r.Job.Posterior.Evaluator().Predictions(r.Best)
+	if !ok {
+		return nil
+	}
+	var out []Outlier
+	for i := range r.Job.Tables {
+		t := &r.Job.Tables[i]
+		term, ok := t.Term.(interface {
+			Residuals(*likelihood.Prediction) []likelihood.Residual
+		})
+		if !ok {
+			continue
+		}
+		for k, v := range term.Residuals(&each[i]) {
+			out = append(out, Outlier{t.Name, rowName(t, k), t.Selection().Lines[k], v.Z, v.Measured, v.Predicted, v.Sigmas})
+		}
+	}
+	slices.SortStableFunc(out, func(a, b Outlier) int { return cmp.Compare(math.Abs(b.Sigmas), math.Abs(a.Sigmas)) })
+	return out[:min(n, len(out))]
+}
+
+// rowName is the name of an object or of what was measured.
+func rowName(t *job.Table, k int) string {
+	switch {
+	case t.Supernovae != nil && t.Supernovae.Name != nil:
+		return t.Supernovae.Name[k]
+	case t.BAO != nil:
+		return t.BAO.Quantity[k].String()
+	case t.Ages != nil && t.Ages.Name != nil:
+		return t.Ages.Name[k]
+	}
+	return ""
 }

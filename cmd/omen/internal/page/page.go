@@ -40,6 +40,7 @@ type view struct {
 	Figures                          []drawing
 	Chain                            template.HTML
 	Tables                           []table
+	Outliers                         []outlier
 	Convergence                      []quantity
 	Assumptions                      []string
 	Inputs                           []result.InputFile
@@ -75,6 +76,16 @@ type table struct {
 	Chi2       string
 }
 
+// outlier is a row of those that fit worst.
+type outlier struct {
+	Table, Name                 string
+	Line                        int
+	Z                           string
+	Measured, Predicted, Sigmas template.HTML
+}
+
+const mostOutliers = 6
+
 // Report writes report.html.
 func Report(w io.Writer, r *gather.Run, pictures []*gather.Picture) error {
 	s := r.Summary
@@ -100,6 +111,10 @@ func Report(w io.Writer, r *gather.Run, pictures []*gather.Picture) error {
 		v.Fates = append(v.Fates, newShares(sentence(f.Name), "Fate", f.Fates))
 	}
 	v.Fates = append(v.Fates, newShares("Today", "Statement", s.Today))
+	for _, o := range r.Outliers(mostOutliers) {
+		v.Outliers = append(v.Outliers, outlier{o.Table, o.Name, o.Line, digits.Format(o.Z, -4), text(fmt.Sprintf("%.3f", o.Measured)),
+			text(fmt.Sprintf("%.3f", o.Predicted)), text(fmt.Sprintf("%+.1f", o.Sigmas))})
+	}
 	for _, t := range s.Fit.Tables {
 		v.Tables = append(v.Tables, table{t.Name, t.Kind, t.Rows, fmt.Sprintf("%.2f", float64(t.Chi2))})
 	}
@@ -125,7 +140,6 @@ func drawings(pictures []*gather.Picture) (figures []drawing, missing []string, 
 	}
 	return figures, missing, nil
 }
-
 
 // draw makes a figure part of the page.
 func draw(p *gather.Picture) (*drawing, error) {

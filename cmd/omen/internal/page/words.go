@@ -50,7 +50,7 @@ func sentence(s string) string {
 // words is the result in a few sentences.
 func words(r *gather.Run) []template.HTML {
 	s := r.Summary
-	return []template.HTML{constraints(r), text(fate(s)), today(r), text(fit(s)), text(converged(s))}
+	return []template.HTML{constraints(r), text(fate(r)), today(r), text(fit(s)), text(converged(s))}
 }
 
 // constraints names what the data know.
@@ -97,24 +97,29 @@ func universe(f likelihood.Family) string {
 }
 
 // fate names the most probable end, and how sure it is.
-func fate(s *result.Summary) string {
-	if len(s.Fates) == 0 {
+func fate(r *gather.Run) string {
+	fates := r.Summary.Fates
+	if len(fates) == 0 {
 		return "No fate was determined."
 	}
-	best := s.Fates[0]
-	for _, f := range s.Fates {
+	best := fates[0]
+	for _, f := range fates {
 		if f.Probability > best.Probability {
 			best = f
 		}
 	}
-	p := report.Probability(best)
+	lead := "No fate is more probable than not; the first is that it"
 	switch {
 	case best.Probability > 0.95:
-		return fmt.Sprintf("Its fate, almost surely: it %s, with probability %s.", verb(best.Name), p)
+		lead = "Its fate, almost surely: it"
 	case best.Probability > 0.5:
-		return fmt.Sprintf("Its most probable fate: it %s, with probability %s.", verb(best.Name), p)
+		lead = "Its most probable fate: it"
 	}
-	return fmt.Sprintf("No fate is more probable than not; the first is that it %s, with probability %s.", verb(best.Name), p)
+	s := fmt.Sprintf("%s %s, with probability %s.", lead, verb(best.Name), report.Probability(best))
+	if len(r.Summary.FatesHeldW) > 0 {
+		s += " That extrapolates w0 + wa (1-a) into a future that nobody measured; below are also the fates if w stays as it is today."
+	}
+	return s
 }
 
 // verb makes the name of a fate the end of a sentence.
