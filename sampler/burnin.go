@@ -31,8 +31,7 @@ func burnIn(logp Draws, parameters []Draws) int {
 	drop := mser(stepMeans(logp))
 	for _, d := range parameters {
 		late, _, _ := meanVariance(d.after(half))
-		square := d.Map(func(x float64) float64 { return (x - late) * (x - late) })
-		drop = max(drop, mser(stepMeans(d)), mser(stepMeans(square)))
+		drop = max(drop, mser(stepMeans(d)), mser(stepSquares(d, late)))
 	}
 	longest := 0.0
 	for _, d := range parameters {
@@ -53,6 +52,18 @@ func stepMeans(d Draws) []float64 {
 		}
 	}
 	return means
+}
+
+// stepSquares returns the mean squared distance from a value at each step, of
+// draws without weights.
+func stepSquares(d Draws, from float64) []float64 {
+	squares := make([]float64, d.steps())
+	for _, x := range d.x {
+		for i, v := range x {
+			squares[i/d.walkers] += (v - from) * (v - from) / float64(len(d.x)*d.walkers)
+		}
+	}
+	return squares
 }
 
 // mser truncates a series by the marginal standard error rule of White (1997,

@@ -8,9 +8,10 @@ import (
 	"gonum.org/v1/gonum/mat"
 )
 
-// DefaultRecord bounds the numbers that a chain keeps in memory: 2²² of them,
-// 32 MB.
-const DefaultRecord = 1 << 22
+// DefaultRecord bounds the numbers that a chain keeps in memory: 2²¹ of them,
+// 16 MB. For six parameters that is at least 150 000 draws; a summary of them all,
+// with what is derived from them, takes ten times the memory.
+const DefaultRecord = 1 << 21
 
 // Chain is the record of a run: the positions and log-densities of all walkers
 // of all ensembles at steps every, 2·every, … It also knows the last complete

@@ -73,15 +73,15 @@ func Assess(c *Chain, s Settings) Check {
 }
 
 // glance is Assess at a fraction of its cost, for chains that are clearly too
-// short. Its effective sample sizes are a little too small: of two draws for
-// every effective one that is asked for, some 8% of the information is lost
-// between the rows (AR(1) series at its goal).
+// short. Its effective sample sizes are noisier and a little too small: with three
+// draws for every effective one, some 4% of the information is lost between the
+// rows (an AR(1) series at its goal).
 func glance(c *Chain, s Settings) Check {
-	return assess(c, s, max(glanceRows, c.rowsFor(2*s.Effective)))
+	return assess(c, s, max(glanceRows, c.rowsFor(3*s.Effective)))
 }
 
 // nearly is the fraction of the goal from which on a glance is not enough.
-const nearly = 0.8
+const nearly = 0.75
 
 // hopeless reports whether a glance has shown that the goal is not met.
 func (c Check) hopeless(s Settings) bool { return s.Effective <= 0 || c.ESS() < nearly*s.Effective }

@@ -37,7 +37,7 @@ func undisturbed(t *testing.T) (dir, text string) {
 
 // endless is a run that would go on for hours.
 var endless = []string{"--set", "sampling.sync-interval=20ms", "--set", "sampling.record-every=10",
-	"--effective-samples", "100000000", "--max-steps", "100000000"}
+	"--effective-samples", "100000", "--max-steps", "100000000"}
 
 func fitting(dir string, args ...string) []string {
 	return append([]string{"fit", runFile("bao-flat.toml"), "-o", dir}, args...)
@@ -225,7 +225,7 @@ func TestLimits(t *testing.T) {
 		t.Errorf("not marked as unfinished:\n%s", text)
 	}
 	must(t, 3, "unfinished (step limit) after 200 steps", "resume", dir)
-	must(t, 3, "unfinished (time limit) after", "resume", dir, "--max-steps", "100000000", "--effective-samples", "100000000", "--max-time", "30ms")
+	must(t, 3, "unfinished (time limit) after", "resume", dir, "--max-steps", "100000000", "--effective-samples", "100000", "--max-time", "30ms")
 	if text, _ := must(t, 0, "", "status", dir); !strings.Contains(text, "it stopped (time limit); omen resume "+dir+" goes on") {
 		t.Errorf("status:\n%s", text)
 	}

@@ -13,9 +13,9 @@ import (
 const slack = 1.5
 
 // enoughSteps is how many steps of a converged sample are looked at, at least;
-// otherwise one draw for every effective one that is asked for. That loses a
-// quarter of the information (AR(1) series at its goal), for which slack leaves
-// room, and keeps the look from costing more than all other checks.
+// otherwise two draws for every effective one that is asked for. A longer look
+// would cost more than all other checks, and slack leaves room for what is lost
+// between the steps.
 const enoughSteps = 64
 
 // Enough tells whether a sample is enough for everything that is reported beyond
@@ -25,14 +25,14 @@ const enoughSteps = 64
 func Enough(j *job.Job, threads int) func(sampler.View) bool {
 	goal := float64(j.Run.Sampling.EffectiveSamples)
 	return func(v sampler.View) bool {
-		steps := max(enoughSteps, int(goal)/(v.Ensembles()*v.Walkers()))
+		steps := max(enoughSteps, int(2*goal)/(v.Ensembles()*v.Walkers()))
 		d := derive(j.Space, v.Thin(max(1, v.Steps()/steps)), threads)
 		for _, draws := range d.draws {
 			if sampler.ESS(draws) < goal/(slack*slack) { // MCSE = sd/√ESS; NaN of a constant passes
 				return false
 			}
 		}
-		fates, held, today := d.fates(goal)
+		fates, held, today := tables(d.belief(goal), d.family)
 		for _, f := range append(append(fates, held...), today...) {
 			if float64(f.Error) > slack*0.5/math.Sqrt(goal) {
 				return false

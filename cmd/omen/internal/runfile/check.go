@@ -110,6 +110,10 @@ func (r *Run) checkData(i int) error {
 	return err
 }
 
+// mostEffective is what the bounded record of a chain can show with some three
+// draws for every effective one; see [sampler.DefaultRecord].
+const mostEffective = 100_000
+
 func (r *Run) checkSampling() error {
 	s := r.Sampling
 	if err := r.oneOf("sampling.engine", s.Engine, "both", "chain", "quadrature"); err != nil {
@@ -122,6 +126,8 @@ func (r *Run) checkSampling() error {
 		return r.Errorf("sampling.walkers", "found %d walkers; expected an even number, or 0 to choose it", s.Walkers)
 	case s.EffectiveSamples < 100:
 		return r.Errorf("sampling.effective-samples", "found %d; expected at least 100", s.EffectiveSamples)
+	case s.EffectiveSamples > mostEffective:
+		return r.Errorf("sampling.effective-samples", "found %d; expected at most %d, which knows a mean to 0.3%% of its standard deviation", s.EffectiveSamples, mostEffective)
 	case s.RecordEvery < 1:
 		return r.Errorf("sampling.record-every", "found %d; expected at least 1", s.RecordEvery)
 	case s.MaxSteps < 1:
