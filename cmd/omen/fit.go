@@ -74,11 +74,22 @@ func runFit(ctx context.Context, args []string, stdout, stderr io.Writer) error 
 		dir = freeFolder(f.Arg(0))
 	}
 	o.explore.Version = version()
-	run, err := explore.Start(ctx, j, dir, o.explore, stderr)
+	run, err := begin(ctx, j, dir, o.explore, stderr)
 	if err != nil {
 		return err
 	}
-	return conclude(run, dir, o.noReport, stdout)
+	return conclude(ctx, run, dir, o.noReport, stdout)
+}
+
+// begin explores the posterior by a chain, unless the run asks for quadrature alone.
+func begin(ctx context.Context, j *job.Job, dir string, o explore.Options, stderr io.Writer) (*result.Run, error) {
+	if j.Run.Sampling.Engine != "quadrature" {
+		return explore.Start(ctx, j, dir, o, stderr)
+	}
+	if err := explore.Prepare(j, dir); err != nil {
+		return nil, err
+	}
+	return &result.Run{Job: j, Threads: o.Threads, Version: o.Version}, nil
 }
 
 // load reads a run file and everything that it names.
@@ -106,7 +117,13 @@ func freeFolder(file string) string {
 }
 
 // conclude writes the result of a run to its folder and to stdout.
-func conclude(run *result.Run, dir string, noReport bool, stdout io.Writer) error {
+func conclude(ctx context.Context, run *result.Run, dir string, noReport bool, stdout io.Writer) error {
+	if err := run.Investigate(ctx); err != nil {
+		return err
+	}
+	if run.Chain == nil && run.Exact == nil {
+		return explore.ErrTooEarly
+	}
 	s := result.Build(*run)
 	var text bytes.Buffer
 	if err := report.JSON(&text, s); err != nil {
@@ -115,10 +132,19 @@ func conclude(run *result.Run, dir string, noReport bool, stdout io.Writer) erro
 	if err := chainfile.Replace(filepath.Join(dir, "summary.json"), text.Bytes()); err != nil {
 		return fmt.Errorf("%w; the chain is safe, omen resume %s writes the result again", err, dir)
 	}
+	if trace := run.Trace(); trace != nil {
+		if err := chainfile.Replace(filepath.Join(dir, "history.csv"), report.History(trace)); err != nil {
+			return err
+		}
+	}
 	if err := report.Text(stdout, s); err != nil {
 		return err
 	}
-	fmt.Fprintf(stdout, "\nIn %s: chain.csv, summary.json, run.toml\n", dir)
+	if run.Chain == nil {
+		fmt.Fprintf(stdout, "\nIn %s: summary.json, history.csv, run.toml; figures are drawn from a chain, which quadrature does without\n", dir)
+		return nil
+	}
+	fmt.Fprintf(stdout, "\nIn %s: chain.csv, summary.json, history.csv, run.toml\n", dir)
 	if err := concludeReport(run, s, dir, noReport, stdout); err != nil {
 		return err
 	}

@@ -34,5 +34,5 @@ func runResume(ctx context.Context, args []string, stdout, stderr io.Writer) err
 	if err != nil {
 		return err
 	}
-	return conclude(run, dir, l.noReport, stdout)
+	return conclude(ctx, run, dir, l.noReport, stdout)
 }

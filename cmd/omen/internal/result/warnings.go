@@ -3,10 +3,12 @@ package result
 import (
 	"fmt"
 	"math"
+	"sort"
 
 	"omen/cmd/omen/internal/runfile"
 	"omen/likelihood"
 	"omen/sampler"
+	"omen/sampler/quadrature"
 )
 
 // warnings lists the soft problems of a result, each with the number behind it
@@ -17,6 +19,17 @@ func warnings(r Run, s *Summary, view sampler.View) []string {
 	if why := r.Ended(); why != "" {
 		add("unfinished: %s after %d steps, before the goal was met; omen resume goes on", why, r.Chain.Steps())
 	}
+	if r.Chain != nil {
+		out = append(out, chainWarnings(r)...)
+	}
+	out = append(out, exactWarnings(r, s)...)
+	out = append(out, priorWarnings(r, s, view)...)
+	return append(out, fitWarnings(s.Fit)...)
+}
+
+func chainWarnings(r Run) []string {
+	var out []string
+	add := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
 	check := r.Outcome.Check
 	if rhat := check.RHat(); !(rhat < 1.01) {
 		add("R-hat is %.3f, above 1.01: the ensembles disagree; run longer, or look for a second peak", rhat)
@@ -24,8 +37,40 @@ func warnings(r Run, s *Summary, view sampler.View) []string {
 	if goal := float64(r.Job.Run.Sampling.EffectiveSamples); check.ESS() < goal {
 		add("effective samples %.0f, below the goal of %.0f: intervals are uncertain; run longer", math.Floor(check.ESS()), goal)
 	}
-	out = append(out, priorWarnings(r, s, view)...)
-	return append(out, fitWarnings(s.Fit)...)
+	return out
+}
+
+// tooManySigmas is how many of its standard errors a statistic of the chain may differ
+// from the integral. There are dozens of them, and their errors are themselves
+// estimates.
+const tooManySigmas = 5
+
+// exactWarnings compares chain and integral, and hands on what went wrong beside the
+// chain.
+func exactWarnings(r Run, s *Summary) []string {
+	var out []string
+	if d := s.Engine.Largest; d != nil && d.Sigmas > tooManySigmas && d.Widths > 0.01 {
+		out = append(out, fmt.Sprintf("chain and quadrature disagree: %s by %.1f of its Monte Carlo errors (the largest difference is %.2g widths, in %s, %s); run longer, or look for a second peak",
+			d.Of, float64(d.Sigmas), float64(d.Widths), d.Quantity, d.Statistic))
+	}
+	if r.Exact != nil {
+		for _, w := range r.Exact.Warnings {
+			out = append(out, "quadrature: "+w)
+		}
+	}
+	if r.Nested == nil && r.Job.Run.Fates.Nested && r.Ended() != "" {
+		out = append(out, "the nested universes were not compared, for the run was interrupted; omen resume does it")
+	}
+	if r.Nested != nil {
+		for _, m := range r.Nested.Models {
+			for _, w := range m.Warnings {
+				if !m.Own || r.Exact == nil {
+					out = append(out, m.Words+": "+w)
+				}
+			}
+		}
+	}
+	return out
 }
 
 func priorWarnings(r Run, s *Summary, view sampler.View) []string {
@@ -40,7 +85,11 @@ func priorWarnings(r Run, s *Summary, view sampler.View) []string {
 			out = append(out, fmt.Sprintf("%s is decided by its prior: sd %.3g, prior %.3g; the data add little", q.Name, float64(q.SD), free.Prior.SD()))
 			continue
 		}
-		out = append(out, edgeWarnings(free.Prior, q, view.Coordinate(i))...)
+		if r.Exact != nil {
+			out = append(out, edgeWarnings(free.Prior, q, exactEdges(free.Prior, &r.Exact.Marginals[i]))...)
+		} else {
+			out = append(out, edgeWarnings(free.Prior, q, drawnEdges(free.Prior, q, view.Coordinate(i)))...)
+		}
 	}
 	return out
 }
@@ -50,8 +99,9 @@ func priorWarnings(r Run, s *Summary, view sampler.View) []string {
 // that of a Gaussian 2.1 standard deviations from its peak.
 const edgeDensity = 0.1
 
-// edgeWarnings looks at the density of draws next to each end of a prior's range.
-func edgeWarnings(p likelihood.Prior, q Quantity, d sampler.Draws) []string {
+// drawnEdges is the density of draws next to each end of a prior's range, relative to
+// the peak of a Gaussian of the same width.
+func drawnEdges(p likelihood.Prior, q Quantity, d sampler.Draws) [2]float64 {
 	lo, hi := p.Range()
 	sd := float64(q.SD)
 	strip := sd / 4
@@ -62,14 +112,40 @@ func edgeWarnings(p likelihood.Prior, q Quantity, d sampler.Draws) []string {
 		above += indicator(hi-x < strip)
 	}
 	peak := n * strip / (sd * math.Sqrt(2*math.Pi))
+	return [2]float64{below / peak, above / peak}
+}
+
+// exactEdges is the same of an integrated marginal.
+func exactEdges(p likelihood.Prior, m *quadrature.Marginal) [2]float64 {
+	lo, hi := p.Range()
+	strip := m.SD / 4
+	expected := strip / (m.SD * math.Sqrt(2*math.Pi))
+	return [2]float64{below(m, lo+strip) / expected, (1 - below(m, hi-strip)) / expected}
+}
+
+// below is the probability below x.
+func below(m *quadrature.Marginal, x float64) float64 {
+	i := sort.SearchFloat64s(m.X, x)
+	switch {
+	case i == 0:
+		return 0
+	case i == len(m.X):
+		return 1
+	}
+	return m.CDF[i-1] + (m.CDF[i]-m.CDF[i-1])*(x-m.X[i-1])/(m.X[i]-m.X[i-1])
+}
+
+// edgeWarnings says where a prior's range cuts the posterior.
+func edgeWarnings(p likelihood.Prior, q Quantity, density [2]float64) []string {
+	lo, hi := p.Range()
 	var out []string
-	for _, end := range []struct {
-		count, edge float64
-		name        string
-	}{{below, lo, "lower"}, {above, hi, "upper"}} {
-		if end.count > edgeDensity*peak {
+	for i, end := range []struct {
+		edge float64
+		name string
+	}{{lo, "lower"}, {hi, "upper"}} {
+		if density[i] > edgeDensity {
 			out = append(out, fmt.Sprintf("%s runs into the %s end of its prior, %g (density there %.0f%% of a Gaussian's peak): widen the prior, or call the result a limit",
-				q.Name, end.name, end.edge, 100*end.count/peak))
+				q.Name, end.name, end.edge, 100*density[i]))
 		}
 	}
 	return out

@@ -1,0 +1,230 @@
+package report
+
+import (
+	"fmt"
+	"math"
+	"slices"
+	"strconv"
+	"strings"
+
+	"omen/cmd/omen/internal/digits"
+	"omen/cmd/omen/internal/result"
+)
+
+// fates writes a block of probabilities: within the family, what the chain alone says, and
+// averaged over the nested universes, as far as there are such.
+func fates(b *strings.Builder, title string, own, averaged []result.Fate) {
+	if len(own) == 0 {
+		return
+	}
+	columns := []string{"probability"}
+	counted := slices.ContainsFunc(own, func(f result.Fate) bool { return f.Chain != nil })
+	if counted {
+		columns = append(columns, "from the chain")
+	}
+	if len(averaged) > 0 {
+		columns = append(columns, "over nested")
+	}
+	row := func(name string, cells []string) {
+		text := pad(name, 32)
+		for _, c := range cells {
+			text += " " + pad(c, 16)
+		}
+		line(b, text)
+	}
+	row(title, columns)
+	for _, name := range names(own, averaged) {
+		f, here := find(own, name)
+		cells := []string{"0"}
+		if here {
+			cells[0] = Probability(f)
+		}
+		if counted {
+			cells = append(cells, "")
+			if f.Chain != nil {
+				cells[1] = Probability(*f.Chain)
+			}
+		}
+		if len(averaged) > 0 {
+			a, ok := find(averaged, name)
+			if !ok {
+				a = result.Fate{Upper95: result.Number(math.NaN()), Exact: true}
+			}
+			a.Exact = a.Exact || here && f.Exact
+			cells = append(cells, Probability(a))
+		}
+		row("  "+name, cells)
+	}
+	b.WriteString("\n")
+}
+
+// names lists those of the family and then those that only nested universes have.
+func names(own, averaged []result.Fate) []string {
+	var out []string
+	for _, f := range append(own[:len(own):len(own)], averaged...) {
+		if !slices.Contains(out, f.Name) {
+			out = append(out, f.Name)
+		}
+	}
+	return out
+}
+
+func find(fs []result.Fate, name string) (result.Fate, bool) {
+	i := slices.IndexFunc(fs, func(f result.Fate) bool { return f.Name == name })
+	if i < 0 {
+		return result.Fate{}, false
+	}
+	return fs[i], true
+}
+
+// Probability writes a probability with its error, or the limit that a count of none (or of all) leaves. What
+// was integrated has an error below the digits that are shown.
+func Probability(f result.Fate) string {
+	p, e, up := float64(f.Probability), float64(f.Error), float64(f.Upper95)
+	switch {
+	case p == 0 && up > 0:
+		return "< " + small(up) + " (95%)"
+	case p == 1 && up > 0:
+		return "> " + digits.Format(1-up, limitPlace(up)) + " (95%)"
+	case p == 0 || p == 1:
+		return strconv.Itoa(int(p))
+	case p < 1e-3 && (!(e > 0) || e < p/30):
+		return small(p)
+	case 1-p < 1e-3 && (!(e > 0) || e < (1-p)/30):
+		return "1 - " + small(1-p)
+	case !(e > 0) || e < 5e-5:
+		return digits.Format(p, -4)
+	}
+	return digits.Share(p, e)
+}
+
+// small writes a small number with two digits, below 1e-4 with an exponent.
+func small(p float64) string {
+	if p >= 1e-4 {
+		return digits.Error(p)
+	}
+	return strings.Replace(strconv.FormatFloat(p, 'e', 1, 64), "e-0", "e-", 1)
+}
+
+func limitPlace(up float64) int {
+	p, ok := digits.Spread(up)
+	if !ok {
+		return -3
+	}
+	return p
+}
+
+// nested writes the table of nested universes.
+func nested(b *strings.Builder, models []result.Nested) {
+	if len(models) < 2 {
+		return
+	}
+	aic, bic := math.Inf(1), math.Inf(1)
+	for _, m := range models {
+		if m.Ruled == "" {
+			aic, bic = math.Min(aic, float64(m.AIC)), math.Min(bic, float64(m.BIC))
+		}
+	}
+	fmt.Fprintf(b, "%-19s %5s %9s %8s %8s %13s  %s\n", "Nested universes", "free", "chi²", "ΔAIC", "ΔBIC", "ln Bayes", "probability")
+	for _, m := range models {
+		name := m.Words
+		if m.Own {
+			name += " *"
+		}
+		if m.Ruled != "" {
+			line(b, fmt.Sprintf("  %s %5d  %s", pad(name, 17), m.Parameters, "cannot be: "+m.Ruled))
+			continue
+		}
+		line(b, fmt.Sprintf("  %s %5d %9.2f %8.2f %8.2f %13s  %s", pad(name, 17), m.Parameters, float64(m.Chi2),
+			float64(m.AIC)-aic, float64(m.BIC)-bic, bayes(m), modelProbability(m)))
+	}
+	b.WriteString("  * this run's family; ln Bayes is against the best\n\n")
+}
+
+// bayes writes ln of the Bayes factor against the best, with its error where that shows.
+func bayes(m result.Nested) string {
+	v, e := float64(m.LogBayesFactor), float64(m.BayesError)
+	if v == 0 {
+		return "0"
+	}
+	if e < 0.005 {
+		return digits.Format(v, -2)
+	}
+	return digits.Share(v, e)
+}
+
+func modelProbability(m result.Nested) string {
+	if m.Odds == 0 {
+		return "– (odds 0)"
+	}
+	return Probability(result.Fate{Probability: m.Probability, Error: m.ProbabilityErr, Upper95: result.Number(math.NaN())})
+}
+
+// priors writes what other priors would change.
+func priors(b *strings.Builder, s *result.Summary) {
+	if len(s.Priors) == 0 {
+		return
+	}
+	var same []string
+	for _, p := range s.Priors {
+		if p.Same {
+			same = append(same, p.Name)
+			continue
+		}
+		changed(b, s, p)
+	}
+	if len(same) > 0 {
+		b.WriteString("Other priors\n")
+		wrap(b, "  ", strings.Join(same, " or ")+": the same density as this prior, for the map is linear; only where the ranges end could differ")
+		b.WriteString("\n")
+	}
+}
+
+// changed writes the probabilities under another prior.
+func changed(b *strings.Builder, s *result.Summary, p result.Prior) {
+	if p.Effective == 0 {
+		return
+	}
+	var own, over []result.Fate
+	own = append(append(append(own, p.Fates...), p.Held...), p.Today...)
+	if p.Averaged != nil {
+		over = append(append(append(over, p.Averaged.Fates...), p.Averaged.FatesHeldW...), p.Averaged.Today...)
+	}
+	_ = own
+	title := "Prior " + p.Name
+	if p.Averaged == nil {
+		p.Averaged = &result.Averaged{}
+	}
+	fates(b, title, join(p.Fates, p.Today), join(p.Averaged.Fates, p.Averaged.Today))
+	fates(b, title+", w held", p.Held, p.Averaged.FatesHeldW)
+	if p.Effective < 0.2 {
+		wrap(b, "  ", fmt.Sprintf("the reweighting leaves %.0f%% of the sample effective: take these as rough", 100*float64(p.Effective)))
+		b.WriteString("\n")
+	}
+}
+
+func join(a, b []result.Fate) []result.Fate { return append(a[:len(a):len(a)], b...) }
+
+// times writes when things happen.
+func times(b *strings.Builder, s *result.Summary) {
+	if len(s.Times) == 0 {
+		return
+	}
+	fmt.Fprintf(b, "%-34s %-9s %-18s %s\n", "Times", "median", "68% interval", "95% interval")
+	for _, t := range s.Times {
+		name := t.Words
+		if t.Unit != "" {
+			name += " [" + t.Unit + "]"
+		}
+		if math.IsNaN(float64(t.Median)) {
+			line(b, fmt.Sprintf("  %s –  too few draws: %.0f in which %s", pad(name, 40), math.Max(0, float64(t.ESS)), t.Given))
+			continue
+		}
+		spread := float64(t.Interval68[1]-t.Interval68[0]) / 2
+		place := digits.Place(spread, float64(t.MCSE))
+		cell := func(v result.Number) string { return digits.Format(float64(v), place) }
+		line(b, fmt.Sprintf("  %s %s %s %s", pad(name, 40), pad(cell(t.Median), 8), pad(cell(t.Interval68[0])+" … "+cell(t.Interval68[1]), 15),
+			cell(t.Interval95[0])+" … "+cell(t.Interval95[1])))
+	}
+	b.WriteString("  each in those universes alone in which it comes to be\n\n")
+}

@@ -1,0 +1,63 @@
+package report
+
+import (
+	"fmt"
+	"math"
+	"strings"
+
+	"omen/cmd/omen/internal/digits"
+	"omen/cmd/omen/internal/result"
+)
+
+func fit(b *strings.Builder, s *result.Summary) {
+	f := s.Fit
+	fmt.Fprintf(b, "Best fit: chi² %.2f for %d rows, %d degrees of freedom (probability %s)\n",
+		float64(f.Chi2), f.Rows, f.DoF, chance(float64(f.Probability)))
+	var best []string
+	for _, q := range s.Parameters {
+		best = append(best, fmt.Sprintf("%s %s", q.Name, digits.Format(float64(f.Best[q.Name]), fine(q))))
+	}
+	wrap(b, "  ", "at "+strings.Join(best, ", "))
+	if len(f.Tables) > 1 {
+		for _, t := range f.Tables {
+			fmt.Fprintf(b, "  %s chi² %8.2f for %d rows\n", pad(t.Name, 30), float64(t.Chi2), t.Rows)
+		}
+	}
+	b.WriteString("\n")
+}
+
+// fine is one digit more than the spread asks for: a best fit comes from an
+// optimiser and has no Monte Carlo error.
+func fine(q result.Quantity) int { return digits.Place(float64(q.SD), 0) - 2 }
+
+func chance(p float64) string {
+	switch {
+	case math.IsNaN(p):
+		return "unknown"
+	case p < 0.0005:
+		return "< 0.001"
+	case p > 0.9995:
+		return "> 0.999"
+	}
+	return fmt.Sprintf("%.3f", p)
+}
+
+// engine says how the posterior was explored, and whether two ways agree.
+func engine(b *strings.Builder, s *result.Summary) {
+	if m := s.Sampling; m.Steps > 0 {
+		fmt.Fprintf(b, "Chain: %d ensembles of %d walkers, %d steps, the first %d burn-in\n", m.Ensembles, m.Walkers, m.Steps, m.BurnIn)
+		fmt.Fprintf(b, "  effective samples %.0f at least (goal %d), R-hat %.4f at most\n", math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat))
+		fmt.Fprintf(b, "  acceptance %.2f, %d evaluations in %.1f s, seed %d\n", float64(m.Acceptance), m.Evaluations, m.Seconds, m.Seed)
+	}
+	e := s.Engine
+	if e.Name == "both" || e.Name == "quadrature" {
+		fmt.Fprintf(b, "Quadrature: %d evaluations in %.1f s, ln evidence %.2f ± %.0g\n", e.Evaluations, e.Seconds, float64(e.LogEvidence), float64(e.Error))
+	}
+	if d := e.Largest; d != nil {
+		wrap(b, "  ", fmt.Sprintf("the chain differs by %.3f of the width at most (%s, %s), its Monte Carlo error there being %.3f",
+			float64(d.Widths), d.Quantity, d.Statistic, float64(d.MonteCarlo)))
+	}
+	if s.Sampling.Steps > 0 || e.Evaluations > 0 {
+		b.WriteString("\n")
+	}
+}

@@ -1,0 +1,93 @@
+package result
+
+import (
+	"context"
+	"fmt"
+
+	"omen/cmd/omen/internal/exact"
+	"omen/cmd/omen/internal/nested"
+	"omen/cmd/omen/internal/outlook"
+	"omen/sampler"
+)
+
+// Investigate computes what the run asks for beside its chain: the integral of the
+// posterior, and the nested universes. A run that was interrupted is in a hurry: nothing is
+// computed then.
+func (r *Run) Investigate(ctx context.Context) error {
+	if ctx.Err() != nil {
+		return nil
+	}
+	if err := r.integrate(ctx); err != nil {
+		return quiet(ctx, err)
+	}
+	if !r.Job.Run.Fates.Nested {
+		return nil
+	}
+	own := nested.Own{Exact: r.Exact, Best: r.Best}
+	if r.Chain != nil {
+		own.Drawn = nested.Draws(r.Job.Space, r.Outcome.Check, r.Threads)
+	}
+	o := nested.Options{Seed: r.Job.Run.Sampling.Seed, Threads: r.Threads, Odds: r.Job.Run.Fates.Odds}
+	c, err := nested.Compare(ctx, r.Job.Posterior, own, o)
+	if err != nil {
+		return quiet(ctx, fmt.Errorf("the nested universes: %w", err))
+	}
+	r.Nested = c
+	return nil
+}
+
+func (r *Run) integrate(ctx context.Context) error {
+	engine := r.Job.Run.Sampling.Engine
+	if engine == "chain" || r.Job.Space.Dim() > exact.Most {
+		return nil
+	}
+	e, err := exact.Integrate(ctx, r.Job.Posterior, r.Best, r.Threads)
+	if err != nil {
+		return err
+	}
+	r.Exact = e
+	if r.Chain == nil {
+		r.Best = e.Best
+	}
+	return nil
+}
+
+// quiet is no error if the user interrupted.
+func quiet(ctx context.Context, err error) error {
+	if ctx.Err() != nil {
+		return nil
+	}
+	return err
+}
+
+// traceUniverses is how many universes the bands of a history are made of.
+const traceUniverses = 1500
+
+// Trace is the scale factor through time: the best fit and the bands of the
+// posterior. Nil if the best fit had no big bang.
+func (r *Run) Trace() *outlook.Trace {
+	space := r.Job.Space
+	var points [][]float64
+	if r.Exact != nil {
+		points = r.Exact.Sample(traceUniverses)
+	} else if r.Chain != nil {
+		points = evenly(r.Outcome.Check, traceUniverses)
+	}
+	best := exact.Universes(space, [][]float64{r.Best})[0]
+	return outlook.Traces(best, exact.Universes(space, points), space.KnowsH0(), r.Job.Run.Fates.Ahead)
+}
+
+// evenly takes about n positions of a sample, evenly along it.
+func evenly(c sampler.Check, n int) [][]float64 {
+	v := c.Sample
+	total := v.Steps() * v.Ensembles() * v.Walkers()
+	var out [][]float64
+	k := 0
+	for row := range v.Rows() {
+		if k*n/max(total, n) == len(out) {
+			out = append(out, row.X)
+		}
+		k++
+	}
+	return out
+}
