@@ -7,6 +7,7 @@ import (
 
 	"gonum.org/v1/gonum/blas"
 	"gonum.org/v1/gonum/blas/blas64"
+	"gonum.org/v1/gonum/floats"
 )
 
 // Chi-squared of any number of supernovae costs the same. Write the logarithmic
@@ -69,12 +70,12 @@ const magnitudes = 5 / math.Ln10
 // columns says where things stand in v, and in the rows of a triangle over
 // [v, the aliased polynomial].
 type columns struct {
-	nodes, zero, m int // number of nodes; places of the zero point and of M, -1 if not needed
-	one            int // place of the last element of v, which is 1
+	g, zero, m int // number of nodes; places of the zero point and of M, -1 if not needed
+	one        int // place of the last element of v, which is 1
 }
 
 func columnsFor(nodes int, tables []*Supernovae) columns {
-	c := columns{nodes: nodes, zero: -1, m: -1, one: nodes}
+	c := columns{g: nodes, zero: -1, m: -1, one: nodes}
 	for _, s := range tables {
 		if s.offset.Kind != FreeOffset && c.zero < 0 {
 			c.zero = c.one
@@ -100,8 +101,8 @@ func (s *Supernovae) condense(nodes *model.Nodes, c columns) []float64 {
 	s.noise.reduce(t, func(i int, row []float64) {
 		clear(row)
 		v := row[1:]
-		nodes.Interpolation(s.z[i], v[:c.nodes])
-		for k := range v[:c.nodes] {
+		nodes.Interpolation(s.z[i], v[:c.g])
+		for k := range v[:c.g] {
 			v[k] *= magnitudes
 		}
 		if s.offset.Kind != AbsoluteOffset {
@@ -119,7 +120,24 @@ func (s *Supernovae) condense(nodes *model.Nodes, c columns) []float64 {
 	return t.without(1)
 }
 
-// newLevel condenses tables on so many nodes.
+// newLevels condenses tables on few nodes and on twice as many: as few as universes
+// like ours need, and more for those near the no-big-bang line. The data are gone
+// through once, with the many; a polynomial through the few is one through the
+// many, too.
+func newLevels(span float64, further []float64, tables []*Supernovae) []*level {
+	n := model.NodesFor(span)
+	few, many := newLevel(span, n, further, tables), newLevel(span, 2*n, further, tables)
+	if len(tables) > 0 {
+		t := newTriangle(many.one + 2)
+		for _, s := range tables {
+			t.add(s.condense(many.nodes, many.columns))
+		}
+		few.split(many.onto(few, t))
+		many.split(t)
+	}
+	return []*level{few, many}
+}
+
 func newLevel(span float64, n int, further []float64, tables []*Supernovae) *level {
 	nodes, err := model.NewNodes(span, n, further)
 	if err != nil {
@@ -129,17 +147,39 @@ func newLevel(span float64, n int, further []float64, tables []*Supernovae) *lev
 	if len(further) > 0 {
 		l.enough = distanceTolerance
 	}
-	if len(tables) == 0 {
-		return l
+	if len(tables) > 0 {
+		l.columns = columnsFor(n, tables)
 	}
-	l.columns = columnsFor(n, tables)
-	t := newTriangle(l.one + 2)
 	for _, s := range tables {
-		t.add(s.condense(nodes, l.columns))
 		l.constant += s.standing.Chi2
 	}
-	l.split(t)
 	return l
+}
+
+// onto turns a triangle over [v, the aliased polynomial] into that of a level with
+// fewer nodes.
+func (l *level) onto(few *level, t *triangle) *triangle {
+	n := few.columns.g
+	weights := make([][]float64, l.columns.g) // values at our nodes from those at the few
+	alias := make([]float64, l.columns.g)
+	for k := range weights {
+		z := l.nodes.Z(k)
+		weights[k] = make([]float64, n)
+		few.nodes.Interpolation(z, weights[k])
+		alias[k] = few.nodes.Alias(z)
+	}
+	out := newTriangle(few.one + 2)
+	r := t.rows()
+	out.stream(t.columns, func(i int, row []float64) {
+		clear(row)
+		wide := r[i*t.columns : (i+1)*t.columns]
+		for k, w := range weights {
+			floats.AddScaled(row[:n], wide[k], w)
+			row[few.one+1] += wide[k] * alias[k]
+		}
+		copy(row[n:few.one+1], wide[l.columns.g:])
+	})
+	return out
 }
 
 // split takes the triangle over [v, the aliased polynomial] apart.
@@ -180,7 +220,7 @@ func (l *level) scratch(dm, dh []float64) levelScratch {
 	s.sight.DM, s.sight.DH = dm, dh
 	s.sight.Shape = nil
 	if l.one > 0 {
-		s.sight.Shape = s.v[:l.columns.nodes]
+		s.sight.Shape = s.v[:l.columns.g]
 	}
 	return s
 }

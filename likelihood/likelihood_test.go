@@ -210,14 +210,23 @@ func TestNeeds(t *testing.T) {
 	}
 }
 
+// Neither the few nodes, the many, nor the direct evaluation allocates.
 func TestNoAllocation(t *testing.T) {
 	sn, cov := invented(9, 30)
 	s := must[*Supernovae](t)(NewSupernovae(sn, correlate(t, cov), Offset{}, Standing{}))
-	f := Family{RequireBigBang: true, Free: []Parameter{param(t, "Om", 0, 1), param(t, "OL", 0, 1)}}
-	e := posterior(t, f, s).Evaluator()
-	x := []float64{0.3, 0.7}
-	if n := testing.AllocsPerRun(100, func() { e.LogDensity(x) }); n != 0 {
-		t.Errorf("%v allocations per evaluation", n)
+	p := posterior(t, curvedFamily(t), s)
+	e := p.Evaluator()
+	for _, c := range []struct {
+		x      []float64
+		direct bool
+	}{{[]float64{0.3, 0.7}, false}, {[]float64{0.3, 1.6}, false}, {[]float64{0.3, noBigBang(0.3) - 1e-7}, true}} {
+		before := p.DirectEvaluations()
+		if n := testing.AllocsPerRun(100, func() { e.LogDensity(c.x) }); n != 0 {
+			t.Errorf("%v allocations per evaluation at %v", n, c.x)
+		}
+		if (p.DirectEvaluations() > before) != c.direct {
+			t.Errorf("at %v: %d direct evaluations", c.x, p.DirectEvaluations()-before)
+		}
 	}
 }
 

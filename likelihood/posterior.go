@@ -95,8 +95,7 @@ func checkNeeds(s *Space, t Term) error {
 	return nil
 }
 
-// condense sorts the terms and prepares two levels of nodes: as few as universes
-// like ours need, and twice as many for those near the no-big-bang line.
+// condense sorts the terms and prepares the levels of nodes.
 func (p *Posterior) condense() {
 	var tables []*Supernovae
 	span := 0.0
@@ -120,8 +119,7 @@ func (p *Posterior) condense() {
 	if span == 0 {
 		return
 	}
-	n := model.NodesFor(span)
-	p.levels = []*level{newLevel(span, n, o.z[:o.near], tables), newLevel(span, 2*n, o.z[:o.near], tables)}
+	p.levels = newLevels(span, o.z[:o.near], tables)
 }
 
 func newPath(z []float64) *model.Path {

@@ -181,11 +181,11 @@ func (p *Nodes) coefficient(k int, row []float64) {
 	}
 }
 
-// Len is the number of points n; Span is the last of them.
+// Len is the number of points n.
 func (p *Nodes) Len() int { return p.n }
 
-// Span is the redshift of the last point.
-func (p *Nodes) Span() float64 { return p.z[p.n-1] }
+// Z is the redshift of point k, of 0 … n-1.
+func (p *Nodes) Z(k int) float64 { return p.z[k] }
 
 // Interpolation fills row, of length n, with the weights of the values at the points in the value at z, for a
 // function that is 0 today. z must not be above the span.
