@@ -19,7 +19,7 @@ func fit(t *testing.T, args ...string) *result.Summary {
 	t.Helper()
 	dir := filepath.Join(t.TempDir(), "out")
 	var stdout, stderr bytes.Buffer
-	if err := run(context.Background(), append([]string{"fit", "--quiet", "-o", dir}, args...), &stdout, &stderr); err != nil {
+	if err := run(context.Background(), append([]string{"fit", "--quiet", "--no-report", "-o", dir}, args...), &stdout, &stderr); err != nil {
 		t.Fatalf("omen fit %v: %v", args, err)
 	}
 	text, err := os.ReadFile(filepath.Join(dir, "summary.json"))
@@ -157,7 +157,7 @@ func TestThreadsDoNotMatter(t *testing.T) {
 	var first []byte
 	for _, threads := range []string{"1", "2", "8"} {
 		dir := filepath.Join(t.TempDir(), "out")
-		err := run(context.Background(), []string{"fit", "--quiet", "-o", dir, "--threads", threads, runsFile("fate.toml")}, &bytes.Buffer{}, &bytes.Buffer{})
+		err := run(context.Background(), []string{"fit", "--quiet", "--no-report", "-o", dir, "--threads", threads, runsFile("fate.toml")}, &bytes.Buffer{}, &bytes.Buffer{})
 		if err != nil {
 			t.Fatal(err)
 		}
