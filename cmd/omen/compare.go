@@ -20,14 +20,15 @@ const compareHelp = `omen compare sets runs side by side: constraints, and how f
   omen compare flat curved
   omen compare all without-lya no-lowz -o cuts
 
-The shift between two runs is the difference of their means in units of the scatter
-it should have: √(σ1² + σ2²) for runs that share no input, by the SHA-256 of the
-files; √|σ1² − σ2²| where one run has all the data of the other and no wider a family
-of universes (Gratton & Challinor 2020). Other runs that share data move together,
-and the shift is at least that of independent ones. It says which was taken.
+The shift between two runs is the difference of their means in units of the
+scatter it should have: √(σ1² + σ2²) for runs that share no input, by the
+SHA-256 of the files; √|σ1² − σ2²| where one run has all the data of the other
+and no wider a family of universes (Gratton & Challinor 2020). Other runs that
+share data move together, and the shift is at least that of independent ones.
+It says which was taken.
 
-With -o, a new folder holds comparison.html, the figures plane and whiskers (pdf,
-svg), comparison.tex, comparison.csv and shifts.csv.
+With -o, a new folder holds comparison.html, the figures plane and whiskers
+(pdf, svg), comparison.tex, comparison.csv and shifts.csv.
 `
 
 func compareFlags(dir *string) *pflag.FlagSet {

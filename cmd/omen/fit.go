@@ -22,7 +22,8 @@ import (
 	"github.com/spf13/pflag"
 )
 
-const fitHelp = `omen fit explores the posterior of a run file and reports constraints and fates.
+const fitHelp = `omen fit explores the posterior of a run file and reports constraints and
+fates.
 
   omen fit fate.toml
   omen fit fate.toml -o curved --seed 7
@@ -33,10 +34,11 @@ The result goes to standard output, the chain and everything else to a folder:
 -o, or the run file's name with a number. --set changes a key of the run file;
 data.1 is the first [[data]] table, and the value none removes a key.
 
-The run ends when the goal is met. Interrupt it (Ctrl-C) and it finishes the step
-under way, writes the result so far, marked as unfinished, and ends with status 3;
-so it does at --max-time or --max-steps. Interrupt it twice and it ends at once.
-Whatever ends it, omen resume DIR goes on; omen status DIR looks at it meanwhile.
+The run ends when the goal is met. Interrupt it (Ctrl-C) and it finishes the
+step under way, writes the result so far, marked as unfinished, and ends with
+status 3; so it does at --max-time or --max-steps. Interrupt it twice and it
+ends at once. Whatever ends it, omen resume DIR goes on; omen status DIR looks
+at it meanwhile.
 `
 
 type fitOptions struct {

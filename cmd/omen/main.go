@@ -52,6 +52,9 @@ Every command explains itself with --help.
 func main() {
 	ctx, stop := signal.NotifyContext(context.Background(), os.Interrupt, syscall.SIGTERM)
 	context.AfterFunc(ctx, stop) // the second signal is the system's to deal with
+	if len(os.Args) > 1 && (os.Args[1] == "fit" || os.Args[1] == "resume") {
+		signal.Ignore(syscall.SIGPIPE) // a reader that goes away does not end a run
+	}
 	err := run(ctx, os.Args[1:], os.Stdout, os.Stderr)
 	if err != nil && err.Error() != "" {
 		fmt.Fprintln(os.Stderr, "omen:", err)
@@ -158,7 +161,7 @@ func parse(f *pflag.FlagSet, args []string, stdout io.Writer, want int) (done bo
 		return false, usagef("%s: %v; see omen %s --help", f.Name(), err, f.Name())
 	}
 	if asked, _ := f.GetBool("help"); asked {
-		fmt.Fprintf(stdout, "%s\n%s", f.Lookup("help").Annotations["text"][0], f.FlagUsages())
+		fmt.Fprintf(stdout, "%s\n%s", f.Lookup("help").Annotations["text"][0], f.FlagUsagesWrapped(80))
 		return true, nil
 	}
 	if want >= 0 && f.NArg() != want {

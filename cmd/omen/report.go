@@ -30,19 +30,20 @@ const reportHelp = `omen report draws the figures of a run and writes what a dra
   omen report fate-1 --only draft
   omen report fate-1 --only plane --width page
 
-omen fit and omen resume do this when they end. A run that has not reached its goal,
-or is still under way, can be reported too; every figure then says so.
+omen fit and omen resume do this when they end. A run that has not reached its
+goal, or is still under way, can be reported too; every figure then says so.
 
 In the folder of the run:
   report.html       the whole result as one page to share: no network, no script
   figures/          hubble, plane, marginals, history, fates, convergence
   constraints.tex   a table for \input, with the rules of booktabs
   numbers.tex       one macro for every number
-  methods.md        two paragraphs on data, priors, likelihood and chain, to adapt
+  methods.md        two paragraphs on data, priors, likelihood, chain, to adapt
   constraints.csv   the constraints for a program
 
---only takes names of figures, and page or draft for the texts. A column is 86 mm
-wide, a page 178 mm; figures that a column cannot hold are a page wide by themselves.
+--only takes names of figures, and page or draft for the texts. A column is 86
+mm wide, a page 178 mm; figures that a column cannot hold are a page wide by
+themselves.
 `
 
 // reportOptions say what of a report to write.

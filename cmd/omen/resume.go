@@ -14,11 +14,11 @@ const resumeHelp = `omen resume takes a run on from its last step, as if it had 
   omen resume fate-1 --effective-samples 20000
   omen resume fate-1 --max-time 8h --quiet
 
-Without a flag it goes on to the goal and the limits that the run has; those given
-here take their place. --max-time counts from now, --max-steps from the run's first
-step. A run whose goal is met already writes its result again. A run is not
-continued if one of its tables, its run.toml (but for the goals) or the format
-of its chain has changed.
+Without a flag it goes on to the goal and the limits that the run has; those
+given here take their place. --max-time counts from now, --max-steps from the
+run's first step. A run whose goal is met already writes its result again. A
+run is not continued if one of its tables, its run.toml (but for the goals) or
+the format of its chain has changed.
 `
 
 func runResume(ctx context.Context, args []string, stdout, stderr io.Writer) error {

@@ -62,9 +62,22 @@ func describe(dir string, state chainfile.State) (string, error) {
 	u.Note = ""
 	var b strings.Builder
 	fmt.Fprintf(&b, "%s: %s\n", dir, how)
-	fmt.Fprintf(&b, "  %s\n", u.String())
+	wrap(&b, u.String())
 	fmt.Fprintf(&b, "  last made safe: step %d, %s\n", state.Step, synced(dir))
 	return b.String(), nil
+}
+
+// wrap writes a list, broken after its commas, in lines of at most 80 columns.
+func wrap(b *strings.Builder, text string) {
+	line := " "
+	for _, item := range strings.SplitAfter(text, ", ") {
+		if len(line)+len(strings.TrimSpace(item)) > 79 && line != " " {
+			fmt.Fprintf(b, "%s\n", strings.TrimRight(line, " "))
+			line = "   "
+		}
+		line += " " + strings.TrimSpace(item)
+	}
+	fmt.Fprintf(b, "%s\n", line)
 }
 
 // condition says whether the run goes on, and what to do if it does not.

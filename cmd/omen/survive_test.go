@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"encoding/json"
 	"fmt"
+	"io/fs"
 	"math/rand/v2"
 	"os"
 	"os/exec"
@@ -20,7 +21,7 @@ import (
 )
 
 // quick makes a run short, and makes it sync often: tens of times in its life.
-var quick = []string{"--set", "sampling.sync-interval=20ms", "--effective-samples", "1500", "--quiet"}
+var quick = []string{"--set", "sampling.sync-interval=20ms", "--effective-samples", "1500", "--no-report", "--quiet"}
 
 // undisturbed is the folder of a quick run that nothing happened to, and what it
 // said.
@@ -37,7 +38,7 @@ func undisturbed(t *testing.T) (dir, text string) {
 
 // endless is a run that would go on for hours.
 var endless = []string{"--set", "sampling.sync-interval=20ms", "--set", "sampling.record-every=10",
-	"--effective-samples", "100000", "--max-steps", "100000000"}
+	"--effective-samples", "100000", "--max-steps", "100000000", "--no-report"}
 
 func fitting(dir string, args ...string) []string {
 	return append([]string{"fit", runFile("bao-flat.toml"), "-o", dir}, args...)
@@ -127,7 +128,7 @@ func testKills(t *testing.T, runs int) {
 		dir := filepath.Join(base, fmt.Sprint(i))
 		threads := []string{"--threads", fmt.Sprint(1 + i%2)}
 		for range 1 + rng.IntN(3) {
-			args := append([]string{"resume", dir, "--quiet"}, threads...)
+			args := append([]string{"resume", dir, "--quiet", "--no-report"}, threads...)
 			if _, err := os.Stat(filepath.Join(dir, chainfile.StateName)); err != nil {
 				args = append(fitting(dir, quick...), threads...)
 			}
@@ -138,7 +139,7 @@ func testKills(t *testing.T, runs int) {
 		if _, err := os.Stat(filepath.Join(dir, chainfile.StateName)); err != nil {
 			must(t, 0, "", append(fitting(dir, quick...), threads...)...)
 		}
-		text, _ := must(t, 0, "", append([]string{"resume", dir, "--quiet"}, threads...)...)
+		text, _ := must(t, 0, "", append([]string{"resume", dir, "--quiet", "--no-report"}, threads...)...)
 		sameRun(t, want, dir, wantText, text)
 		os.RemoveAll(dir)
 	}
@@ -160,19 +161,12 @@ func TestInterrupted(t *testing.T) {
 		cmd.Process.Signal(signal)
 		cmd.Wait()
 		check(t, cmd, 3, "unfinished (interrupted) after", stderr.String())
-		for _, words := range []string{"interrupt again to stop at once", "omen resume " + dir + " goes on"} {
-			if !strings.Contains(stderr.String(), words) {
-				t.Errorf("%v: no %q in\n%s", signal, words, stderr.String())
-			}
-		}
-		summary := string(read(t, dir, "summary.json"))
-		if !strings.Contains(summary, `"complete": false`) || !strings.Contains(summary, "unfinished: interrupted after") || !strings.Contains(stdout.String(), "UNFINISHED") {
-			t.Errorf("%v: not marked as unfinished:\n%s\n%s", signal, stdout.String(), summary)
-		}
-		if text, _ := must(t, 0, "", "status", dir); !strings.Contains(text, "it stopped (interrupted); omen resume "+dir+" goes on") {
-			t.Errorf("status:\n%s", text)
-		}
-		text, _ := must(t, 0, "", "resume", dir)
+		has(t, signal.String(), stderr.String(), "interrupt again to stop at once", "omen resume "+dir+" goes on")
+		has(t, signal.String(), string(read(t, dir, "summary.json")), `"complete": false`, "unfinished: interrupted after")
+		has(t, signal.String(), stdout.String(), "UNFINISHED")
+		text, _ := must(t, 0, "", "status", dir)
+		has(t, "status", text, "it stopped (interrupted); omen resume "+dir+" goes on")
+		text, _ = must(t, 0, "", "resume", dir, "--no-report")
 		want, wantText := undisturbed(t)
 		sameRun(t, want, dir, wantText, text)
 	}
@@ -195,14 +189,13 @@ func TestInterruptedTwice(t *testing.T) {
 		}
 	}
 	if ws := cmd.ProcessState.Sys().(syscall.WaitStatus); ws.Signaled() && ws.Signal() == syscall.SIGTERM {
-		if text, _ := must(t, 0, "", "status", dir); !strings.Contains(text, "it was killed") {
-			t.Errorf("status:\n%s", text)
-		}
+		text, _ := must(t, 0, "", "status", dir)
+		has(t, "status", text, "it was killed")
 	} else if ws.ExitStatus() != 3 { // the run was faster
 		t.Errorf("ended by %v", cmd.ProcessState)
 	}
 	steps := chainState(t, dir).Step
-	must(t, 3, "step limit", "resume", dir, "--max-steps", fmt.Sprint(steps+100))
+	must(t, 3, "step limit", "resume", dir, "--max-steps", fmt.Sprint(steps+100), "--no-report")
 	if is := chainState(t, dir).Step; is < steps+100 {
 		t.Errorf("resumed from step %d, ended at %d", steps, is)
 	}
@@ -220,24 +213,20 @@ func chainState(t *testing.T, dir string) chainfile.State {
 func TestLimits(t *testing.T) {
 	base := t.TempDir()
 	dir, want := filepath.Join(base, "run"), filepath.Join(base, "undisturbed")
-	text, _ := must(t, 3, "unfinished (step limit) after 200 steps", fitting(dir, "--max-steps", "200")...)
-	if !strings.Contains(text, "UNFINISHED") {
-		t.Errorf("not marked as unfinished:\n%s", text)
-	}
-	must(t, 3, "unfinished (step limit) after 200 steps", "resume", dir)
-	must(t, 3, "unfinished (time limit) after", "resume", dir, "--max-steps", "100000000", "--effective-samples", "100000", "--max-time", "30ms")
-	if text, _ := must(t, 0, "", "status", dir); !strings.Contains(text, "it stopped (time limit); omen resume "+dir+" goes on") {
-		t.Errorf("status:\n%s", text)
-	}
-	goal := []string{"--max-steps", "1000000", "--effective-samples", "12000", "--max-time", "0s"}
+	text, _ := must(t, 3, "unfinished (step limit) after 200 steps", fitting(dir, "--max-steps", "200", "--no-report")...)
+	has(t, "the result", text, "UNFINISHED")
+	must(t, 3, "unfinished (step limit) after 200 steps", "resume", dir, "--no-report")
+	must(t, 3, "unfinished (time limit) after", "resume", dir, "--max-steps", "100000000", "--effective-samples", "100000", "--max-time", "30ms", "--no-report")
+	text, _ = must(t, 0, "", "status", dir)
+	has(t, "status", text, "it stopped (time limit); omen resume "+dir+" goes on")
+	goal := []string{"--max-steps", "1000000", "--effective-samples", "12000", "--max-time", "0s", "--no-report"}
 	got, _ := must(t, 0, "", append([]string{"resume", dir}, goal...)...)
 	wantText, _ := must(t, 0, "", fitting(want, goal...)...)
 	sameRun(t, want, dir, wantText, got)
-	again, _ := must(t, 0, "", "resume", dir) // finished, and with the goal it was given last
+	again, _ := must(t, 0, "", "resume", dir, "--no-report") // finished, and with the goal it was given last
 	sameRun(t, want, dir, wantText, again)
-	if text, _ := must(t, 0, "", "status", dir); !strings.HasPrefix(text, dir+": finished\n") {
-		t.Errorf("status:\n%s", text)
-	}
+	text, _ = must(t, 0, "", "status", dir)
+	has(t, "status", text, dir+": finished\n")
 }
 
 func TestRefusals(t *testing.T) {
@@ -246,7 +235,7 @@ func TestRefusals(t *testing.T) {
 		write(t, read(t, runFile(name)), base, name)
 	}
 	dir := filepath.Join(base, "run")
-	begin := []string{"fit", filepath.Join(base, "bao-flat.toml"), "-o", dir, "--max-steps", "100"}
+	begin := []string{"fit", filepath.Join(base, "bao-flat.toml"), "-o", dir, "--max-steps", "100", "--no-report"}
 	must(t, 3, "", begin...)
 	must(t, 2, dir+": the folder holds a run already; go on with it by omen resume "+dir+", or choose another folder with -o", begin...)
 	must(t, 2, "the folder exists and is not empty; choose another with -o", "fit", runFile("bao-flat.toml"), "-o", base)
@@ -288,7 +277,7 @@ func TestRefusals(t *testing.T) {
 // is the chain that differs, with checksums in order.
 func TestOtherPosterior(t *testing.T) {
 	dir := filepath.Join(t.TempDir(), "run")
-	must(t, 3, "", fitting(dir, "--max-steps", "20")...)
+	must(t, 3, "", fitting(dir, "--max-steps", "20", "--no-report")...)
 	state := chainState(t, dir)
 	var steps []chainfile.Step
 	_, err := chainfile.Recover(dir, state, func(s chainfile.Step) error {
@@ -353,7 +342,7 @@ func TestDamagedChains(t *testing.T) {
 			must(t, 1, c.words, "resume", dir)
 			continue
 		}
-		text, _ := must(t, 0, c.words, "resume", dir, "--quiet")
+		text, _ := must(t, 0, c.words, "resume", dir, "--quiet", "--no-report")
 		sameRun(t, want, dir, wantText, text)
 	}
 }
@@ -365,18 +354,12 @@ func TestOneRunPerFolder(t *testing.T) {
 	must(t, 1, holder, "resume", dir)
 	must(t, 1, holder, fitting(dir)...)
 	text, _ := must(t, 0, "", "status", dir)
-	for _, words := range []string{fmt.Sprintf("running, process %d on ", cmd.Process.Pid), "of at most 100000000 steps", "last made safe: step "} {
-		if !strings.Contains(text, words) {
-			t.Errorf("no %q in\n%s", words, text)
-		}
-	}
+	has(t, "status", text, fmt.Sprintf("running, process %d on ", cmd.Process.Pid), "of at most 100000000 steps", "last made safe: step ")
 	cmd.Process.Kill()
 	cmd.Wait()
 	text, _ = must(t, 0, "", "status", dir)
-	if !strings.Contains(text, "not running, it was killed; omen resume "+dir+" goes on") {
-		t.Errorf("status:\n%s", text)
-	}
-	must(t, 3, "time limit", "resume", dir, "--max-time", "100ms") // takes the stale lock over
+	has(t, "status", text, "not running, it was killed; omen resume "+dir+" goes on")
+	must(t, 3, "time limit", "resume", dir, "--max-time", "100ms", "--no-report") // takes the stale lock over
 }
 
 // A folder that is moved away while its run goes on ends the run; back in place,
@@ -395,7 +378,7 @@ func TestFolderMovedWhileRunning(t *testing.T) {
 	if err := os.Rename(dir+"-moved", dir); err != nil {
 		t.Fatal(err)
 	}
-	text, _ := must(t, 0, "", "resume", dir)
+	text, _ := must(t, 0, "", "resume", dir, "--no-report")
 	want, wantText := undisturbed(t)
 	sameRun(t, want, dir, wantText, text)
 }
@@ -432,7 +415,63 @@ func TestClockSetBack(t *testing.T) {
 	if text, _ := must(t, 0, "", "status", dir); strings.Contains(text, "ago") {
 		t.Errorf("an age from a clock that was set back:\n%s", text)
 	}
-	text, _ := must(t, 0, "", "resume", dir, "--max-steps", "1000000")
+	text, _ := must(t, 0, "", "resume", dir, "--max-steps", "1000000", "--no-report")
 	want, wantText := undisturbed(t)
 	sameRun(t, want, dir, wantText, text)
+}
+
+// A reader of the output that goes away does not take the run with it.
+func TestBrokenPipe(t *testing.T) {
+	dir := filepath.Join(t.TempDir(), "run")
+	r, w, err := os.Pipe()
+	if err != nil {
+		t.Fatal(err)
+	}
+	cmd := omen(t, fitting(dir, quick[:len(quick)-1]...)...)
+	cmd.Stdout, cmd.Stderr = w, w
+	r.Close()
+	if err := cmd.Start(); err != nil {
+		t.Fatal(err)
+	}
+	w.Close()
+	cmd.Wait()
+	if got := cmd.ProcessState.ExitCode(); got != 1 {
+		t.Errorf("ended by %v", cmd.ProcessState)
+	}
+	if !chainState(t, dir).Finished {
+		t.Error("the run did not go on to its goal")
+	}
+	read(t, dir, "summary.json")
+}
+
+// Figures and pages of a run that was interrupted are those of an undisturbed one.
+func TestReportsAreTheSame(t *testing.T) {
+	base := t.TempDir()
+	dir, want := filepath.Join(base, "run"), filepath.Join(base, "undisturbed")
+	must(t, 0, "", fitting(want, "--effective-samples", "1500")...)
+	must(t, 3, "", fitting(dir, "--effective-samples", "1500", "--max-steps", "500")...)
+	must(t, 0, "", "resume", dir, "--max-steps", "1000000")
+	files := map[string]string{}
+	for _, root := range []string{want, dir} {
+		err := filepath.WalkDir(root, func(path string, d fs.DirEntry, err error) error {
+			name, _ := filepath.Rel(root, path)
+			if err != nil || d.IsDir() || name == chainfile.StateName {
+				return err
+			}
+			text := differing.ReplaceAllString(string(read(t, path)), "")
+			if root == want {
+				files[name] = text
+			} else if was, ok := files[name]; !ok || was != text {
+				t.Errorf("%s is not that of an undisturbed run", name)
+			}
+			delete(files, map[bool]string{true: "", false: name}[root == want])
+			return nil
+		})
+		if err != nil {
+			t.Fatal(err)
+		}
+	}
+	for name := range files {
+		t.Errorf("%s is missing", name)
+	}
 }

@@ -164,6 +164,7 @@ func (s *session) elapsed() time.Duration { return s.before + time.Since(s.begun
 
 // Advanced writes new rows down; see [sampler.Observer].
 func (s *session) Advanced(step int, rows sampler.View) error {
+	s.refresh(step)
 	for i := range rows.Steps() {
 		x, logp := rows.Step(i)
 		err := s.writer.Append(chainfile.Step{Number: rows.Number(i), Accepted: rows.Accepted(i), X: x, LogP: logp})
@@ -171,7 +172,6 @@ func (s *session) Advanced(step int, rows sampler.View) error {
 			return err
 		}
 	}
-	s.refresh(step)
 	s.meter.Show(s.update)
 	return s.writer.Tick()
 }

@@ -84,6 +84,11 @@ func occupy(dir string) (*chainfile.Lock, error) {
 	}
 	lock, err := chainfile.Acquire(dir)
 	if err != nil {
+		var busy *chainfile.Busy
+		if !errors.As(err, &busy) { // no room for the lock, say
+			os.Remove(filepath.Join(dir, chainfile.LockName))
+			os.Remove(dir)
+		}
 		return nil, err
 	}
 	if err := vacate(dir, true); err != nil {
