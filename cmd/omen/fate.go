@@ -17,9 +17,18 @@ const fateHelp = `omen fate says what one universe does: its fate, its age, its 
 
   omen fate --Om 0.3 --OL 0.7
   omen fate --Om 0.3 --w0 -1.1 --H0 70 --z 0.5,1,2 --json
+  omen fate --samples posterior.csv --columns Om=omega_m,OL=omega_l
 
 Distances are in Mpc and times in Gyr. Without --OL the universe is flat.
+
+With --samples it reads a posterior sample that someone has published and says
+what omen fit would: constraints, the probability of each fate, times. Columns:
+Om; OL or Ok (without them: flat); H0, w0, wa, Or and weight if there are such.
+Times are in units of 1/H0 unless there is a column H0, or --H0 is given.
 `
+
+// fromTemperature is the radiation that follows from the CMB temperature.
+const fromTemperature = "from-temperature"
 
 // fateOptions are the flags of omen fate.
 type fateOptions struct {
@@ -27,6 +36,8 @@ type fateOptions struct {
 	radiation string
 	z         []float64
 	asJSON    bool
+	samples   string
+	columns   []string
 }
 
 func fateFlags(o *fateOptions) *pflag.FlagSet {
@@ -38,14 +49,28 @@ func fateFlags(o *fateOptions) *pflag.FlagSet {
 	f.Float64Var(&o.u.Wa, "wa", 0, "its change: w(a) = w0 + wa (1-a)")
 	f.StringVar(&o.radiation, "Or", "0", "density parameter of radiation today, or from-temperature")
 	f.Float64SliceVar(&o.z, "z", []float64{0.5, 1, 2, 3}, "redshifts for the table of distances")
+	f.StringVar(&o.samples, "samples", "", "read universes from a posterior sample instead")
+	f.StringSliceVar(&o.columns, "columns", nil, "which columns of it carry what, as Om=omega_m,OL=omega_l,weight=w")
 	f.BoolVar(&o.asJSON, "json", false, "write JSON")
 	return f
 }
 
 func runFate(args []string, stdout io.Writer) error {
 	var o fateOptions
-	if done, err := parse(fateFlags(&o), args, stdout, 0); done || err != nil {
+	f := fateFlags(&o)
+	if done, err := parse(f, args, stdout, 0); done || err != nil {
 		return err
+	}
+	switch {
+	case o.samples == "" && len(o.columns) > 0:
+		return usagef("--columns maps the columns of --samples FILE, which is missing")
+	case o.samples != "" && (f.Changed("Om") || f.Changed("OL")):
+		return usagef("--samples brings its own Om and OL; remove --Om and --OL")
+	case o.samples != "":
+		if err := o.common(); err != nil {
+			return err
+		}
+		return o.runSamples(f.Changed("H0"), stdout)
 	}
 	if err := o.complete(); err != nil {
 		return err
@@ -67,13 +92,7 @@ func (o *fateOptions) complete() error {
 	if o.u.Om < 0 {
 		return usagef("--Om %g: matter cannot have a negative density", o.u.Om)
 	}
-	if !(o.u.H0 > 0) || math.IsInf(o.u.H0, 0) {
-		return usagef("--H0 %g: expected a positive number of km/s/Mpc", o.u.H0)
-	}
-	if o.u.H0 < 10 {
-		return usagef("--H0 %g: expected km/s/Mpc; this looks like h = H0/100, write --H0 %g", o.u.H0, 100*o.u.H0)
-	}
-	if err := o.setRadiation(); err != nil {
+	if err := o.common(); err != nil {
 		return err
 	}
 	if math.IsNaN(o.u.OL) {
@@ -84,7 +103,7 @@ func (o *fateOptions) complete() error {
 			return usagef("--z %g: expected redshifts above 0", z)
 		}
 	}
-	for _, v := range []float64{o.u.Om, o.u.OL, o.u.W0, o.u.Wa} {
+	for _, v := range []float64{o.u.Om, o.u.OL} {
 		if math.IsInf(v, 0) || math.IsNaN(v) {
 			return usagef("expected finite numbers, found %g", v)
 		}
@@ -92,8 +111,24 @@ func (o *fateOptions) complete() error {
 	return nil
 }
 
+// common checks the flags that go with a sample too.
+func (o *fateOptions) common() error {
+	if !(o.u.H0 > 0) || math.IsInf(o.u.H0, 0) {
+		return usagef("--H0 %g: expected a positive number of km/s/Mpc", o.u.H0)
+	}
+	if o.u.H0 < 10 {
+		return usagef("--H0 %g: expected km/s/Mpc; this looks like h = H0/100, write --H0 %g", o.u.H0, 100*o.u.H0)
+	}
+	for _, v := range []float64{o.u.W0, o.u.Wa} {
+		if math.IsInf(v, 0) || math.IsNaN(v) {
+			return usagef("expected finite numbers, found %g", v)
+		}
+	}
+	return o.setRadiation()
+}
+
 func (o *fateOptions) setRadiation() error {
-	if o.radiation == "from-temperature" {
+	if o.radiation == fromTemperature {
 		o.u.Or = model.RadiationFromTemperature(o.u.H0)
 		return nil
 	}

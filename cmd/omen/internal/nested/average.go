@@ -2,6 +2,7 @@ package nested
 
 import (
 	"math"
+	"slices"
 
 	"omen/cmd/omen/internal/outlook"
 )
@@ -39,7 +40,7 @@ func (c *Comparison) Average(holds func(outlook.Label) bool) outlook.Share {
 		if m.Belief == nil {
 			continue
 		}
-		shares[i] = m.Belief.Probability(holds)
+		shares[i] = m.probability(holds)
 		w := m.Probability.Value
 		p += w * shares[i].P
 		upper += w * or(shares[i].Upper, shares[i].P)
@@ -63,6 +64,29 @@ func (c *Comparison) Average(holds func(outlook.Label) bool) outlook.Share {
 		s.P, s.Lower = 1, lower
 	}
 	return s
+}
+
+// probability is that of the belief, and exactly 0 or 1 where the model leaves no choice.
+func (f *Fitted) probability(holds func(outlook.Label) bool) outlook.Share {
+	switch {
+	case !outlook.Possible(f.Family, holds):
+		return outlook.Exactly(0)
+	case !outlook.Possible(f.Family, func(l outlook.Label) bool { return !holds(l) }):
+		return outlook.Exactly(1)
+	}
+	return f.Belief.Probability(holds)
+}
+
+// Possible tells whether a statement can hold in any of the models that have odds.
+func (c *Comparison) Possible(holds func(outlook.Label) bool) bool {
+	return slices.ContainsFunc(c.Models, func(m Fitted) bool {
+		return m.Belief != nil && m.Odds > 0 && outlook.Possible(m.Family, holds)
+	})
+}
+
+// Exact tells whether every model was integrated, so that no probability is a count.
+func (c *Comparison) Exact() bool {
+	return !slices.ContainsFunc(c.Models, func(m Fitted) bool { return m.Method == bridged })
 }
 
 func or(x, otherwise float64) float64 {

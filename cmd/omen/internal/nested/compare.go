@@ -13,6 +13,9 @@ import (
 	"omen/sampler/evidence"
 )
 
+// bridged is the method of evidences that come from a chain.
+const bridged = "bridge sampling"
+
 // Fitted is a model with what the data say of it.
 type Fitted struct {
 	Model
@@ -170,7 +173,7 @@ func (f *Fitted) integrated(e *exact.Posterior) {
 
 // bridge estimates the evidence from a chain.
 func (f *Fitted) bridge(ctx context.Context, p *likelihood.Posterior, own Own, o Options) (err error) {
-	f.Method, f.Best = "bridge sampling", own.Best
+	f.Method, f.Best = bridged, own.Best
 	drawn := own.Drawn
 	if drawn == nil {
 		if drawn, f.Best, err = explore(ctx, p, o); err != nil {

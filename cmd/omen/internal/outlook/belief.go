@@ -14,8 +14,8 @@ type Share struct {
 	Upper, Lower float64
 }
 
-// exactly is a share that is known without error.
-func exactly(p float64) Share { return Share{P: p, Upper: math.NaN(), Lower: math.NaN()} }
+// Exactly is a share that is known without error.
+func Exactly(p float64) Share { return Share{P: p, Upper: math.NaN(), Lower: math.NaN()} }
 
 // Belief is a posterior as far as labels go.
 type Belief interface {
@@ -41,9 +41,9 @@ var _ Belief = Certain{}
 // Probability is 0 or 1.
 func (c Certain) Probability(holds func(Label) bool) Share {
 	if holds(c.Label) {
-		return exactly(1)
+		return Exactly(1)
 	}
-	return exactly(0)
+	return Exactly(0)
 }
 
 // Reweighted changes nothing.

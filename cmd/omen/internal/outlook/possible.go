@@ -39,6 +39,8 @@ func possibleFates(f likelihood.Family, energy likelihood.DarkEnergy) []model.Fa
 		return append(out, model.Recollapse, model.Decelerating)
 	case energy == likelihood.Constant:
 		return append(out, model.Recollapse, model.Accelerating)
+	case energy == likelihood.W0Wa: // wa = 0 has no volume
+		return append(out, model.Recollapse, model.Decelerating, model.BigRip)
 	}
 	return append(out, model.Recollapse, model.Accelerating, model.Decelerating, model.BigRip)
 }

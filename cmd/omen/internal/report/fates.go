@@ -77,21 +77,35 @@ func find(fs []result.Fate, name string) (result.Fate, bool) {
 	return fs[i], true
 }
 
-// Probability writes a probability with its error, or the limit that a count of none (or of all) leaves. What
-// was integrated has an error below the digits that are shown.
+// tiniest is the probability below which none is written: the model of the errors is
+// trusted no further, and no prior is known so well.
+const tiniest = 1e-12
+
+// Probability writes a probability with its error, or the limit that a count of none (or
+// of all) leaves. What was integrated has an error below the digits that are shown.
 func Probability(f result.Fate) string {
 	p, e, up := float64(f.Probability), float64(f.Error), float64(f.Upper95)
-	switch {
+	level := " (95%)"
+	if f.Exact {
+		level = ""
+	}
+	switch rest := 1 - p; {
 	case p == 0 && up > 0:
-		return "< " + small(up) + " (95%)"
+		return "< " + small(max(up, tiniest)) + level
+	case p == 1 && up > 1e-4:
+		return "> " + digits.Format(1-up, limitPlace(up)) + level
 	case p == 1 && up > 0:
-		return "> " + digits.Format(1-up, limitPlace(up)) + " (95%)"
+		return "> 1 - " + small(max(up, tiniest)) + level
 	case p == 0 || p == 1:
 		return strconv.Itoa(int(p))
+	case p < tiniest:
+		return "< " + small(tiniest)
+	case rest < tiniest:
+		return "> 1 - " + small(tiniest)
 	case p < 1e-3 && (!(e > 0) || e < p/30):
 		return small(p)
-	case 1-p < 1e-3 && (!(e > 0) || e < (1-p)/30):
-		return "1 - " + small(1-p)
+	case rest < 1e-3 && (!(e > 0) || e < rest/30):
+		return "1 - " + small(rest)
 	case !(e > 0) || e < 5e-5:
 		return digits.Format(p, -4)
 	}
@@ -103,7 +117,8 @@ func small(p float64) string {
 	if p >= 1e-4 {
 		return digits.Error(p)
 	}
-	return strings.Replace(strconv.FormatFloat(p, 'e', 1, 64), "e-0", "e-", 1)
+	s := strconv.FormatFloat(p, 'e', 1, 64)
+	return strings.Replace(strings.Replace(s, "e-0", "e-", 1), ".0e", "e", 1)
 }
 
 func limitPlace(up float64) int {
@@ -157,7 +172,7 @@ func modelProbability(m result.Nested) string {
 	if m.Odds == 0 {
 		return "– (odds 0)"
 	}
-	return Probability(result.Fate{Probability: m.Probability, Error: m.ProbabilityErr, Upper95: result.Number(math.NaN())})
+	return Probability(result.Fate{Probability: max(m.Probability, math.SmallestNonzeroFloat64), Error: m.ProbabilityErr, Upper95: result.Number(math.NaN())})
 }
 
 // priors writes what other priors would change.
@@ -185,12 +200,6 @@ func changed(b *strings.Builder, s *result.Summary, p result.Prior) {
 	if p.Effective == 0 {
 		return
 	}
-	var own, over []result.Fate
-	own = append(append(append(own, p.Fates...), p.Held...), p.Today...)
-	if p.Averaged != nil {
-		over = append(append(append(over, p.Averaged.Fates...), p.Averaged.FatesHeldW...), p.Averaged.Today...)
-	}
-	_ = own
 	title := "Prior " + p.Name
 	if p.Averaged == nil {
 		p.Averaged = &result.Averaged{}

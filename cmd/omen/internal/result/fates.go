@@ -29,7 +29,7 @@ func table(list []outlook.Statement, b outlook.Belief, f likelihood.Family) []Fa
 			if s.Name == flatToday {
 				continue // it was assumed
 			}
-			share = outlook.Share{P: 1, Upper: math.NaN(), Lower: math.NaN()}
+			share = outlook.Exactly(1)
 		}
 		out = append(out, fateOf(s.Name, share))
 	}

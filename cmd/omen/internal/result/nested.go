@@ -1,8 +1,6 @@
 package result
 
 import (
-	"math"
-
 	"omen/cmd/omen/internal/nested"
 	"omen/cmd/omen/internal/outlook"
 	"omen/likelihood"
@@ -46,13 +44,14 @@ func nestedOf(m *nested.Fitted, best evidence.Estimate, isBest bool) Nested {
 // averaged are the tables over all models.
 func averaged(c *nested.Comparison, f likelihood.Family) *Averaged {
 	a := &Averaged{}
+	exact := c.Exact()
 	add := func(to *[]Fate, list []outlook.Statement) {
 		for _, s := range list {
-			share := c.Average(s.Holds)
-			if share.P == 0 && math.IsNaN(share.Upper) {
-				continue
+			if share := c.Average(s.Holds); c.Possible(s.Holds) {
+				f := fateOf(s.Name, share)
+				f.Exact = exact
+				*to = append(*to, f)
 			}
-			*to = append(*to, fateOf(s.Name, share))
 		}
 	}
 	add(&a.Fates, outlook.Fates())

@@ -11,8 +11,8 @@ import (
 )
 
 // fewestForTimes is how many effective draws must meet a condition before anything is
-// said of when: at fewer the ends of a 95% interval are those of a draw or two.
-const fewestForTimes = 100
+// said of when: the ends of a 95% interval then rest on one draw each.
+const fewestForTimes = 40
 
 // timeDraws is how many draws the times are computed at, about.
 const timeDraws = 20_000
