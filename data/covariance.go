@@ -8,6 +8,9 @@ import (
 	"slices"
 	"strings"
 
+	"gonum.org/v1/gonum/blas"
+	"gonum.org/v1/gonum/blas/blas64"
+	"gonum.org/v1/gonum/lapack/lapack64"
 	"gonum.org/v1/gonum/mat"
 )
 
@@ -32,9 +35,9 @@ func Covariance(file string, m *Matrix, role Role, s Selection, err []float64) (
 	return c, e
 }
 
-// Factorised is Covariance together with its Cholesky factor, which the proof that it is positive definite has
-// yielded anyway.
-func Factorised(file string, m *Matrix, role Role, s Selection, err []float64) (*mat.SymDense, *mat.Cholesky, error) {
+// Factorised is Covariance together with its upper triangular Cholesky factor U, UᵀU being the covariance, which
+// the proof that it is positive definite has yielded anyway.
+func Factorised(file string, m *Matrix, role Role, s Selection, err []float64) (*mat.SymDense, *mat.TriDense, error) {
 	if e := needErrors(m, role, s, err); e != nil {
 		return nil, nil, e
 	}
@@ -50,11 +53,25 @@ func Factorised(file string, m *Matrix, role Role, s Selection, err []float64) (
 			c.SetSym(k, k, c.At(k, k)+sigma*sigma)
 		}
 	}
-	var chol mat.Cholesky
-	if !chol.Factorize(c) {
+	u, ok := factor(c)
+	if !ok {
 		return nil, nil, notPositive(file, c, s.Label)
 	}
-	return c, &chol, nil
+	return c, u, nil
+}
+
+// factor is the upper Cholesky factor of a matrix, if that is positive definite. [mat.Cholesky] would estimate the
+// condition number too, which takes as long again.
+func factor(c *mat.SymDense) (*mat.TriDense, bool) {
+	n := c.SymmetricDim()
+	u := mat.NewTriDense(n, mat.Upper, nil)
+	raw := u.RawTriangular()
+	from := c.RawSymmetric()
+	for i := range n {
+		copy(raw.Data[i*raw.Stride+i:(i+1)*raw.Stride], from.Data[i*from.Stride+i:i*from.Stride+n])
+	}
+	_, ok := lapack64.Potrf(blas64.Symmetric{N: n, Stride: raw.Stride, Data: raw.Data, Uplo: blas.Upper})
+	return u, ok
 }
 
 func needErrors(m *Matrix, role Role, s Selection, err []float64) error {

@@ -78,18 +78,18 @@ type correlated struct {
 	sigmas []float64
 }
 
-// Correlated is the noise of a full covariance by its Cholesky factor, which is
-// kept.
-func Correlated(chol *mat.Cholesky) Noise {
-	u := chol.RawU().(*mat.TriDense).RawTriangular()
+// Correlated is the noise of a full covariance by its upper triangular Cholesky
+// factor, UᵀU being the covariance. It is kept.
+func Correlated(factor *mat.TriDense) Noise {
+	u := factor.RawTriangular()
 	c := &correlated{u: u, sigmas: make([]float64, u.N)}
-	for i := range c.sigmas { // Cᵢᵢ is the square of the i-th column of U
-		sum := 0.0
-		for k := range i + 1 {
-			v := u.Data[k*u.Stride+i]
-			sum += v * v
+	for k := range u.N { // Cᵢᵢ is the square of the i-th column of U
+		for i, v := range u.Data[k*u.Stride+k : k*u.Stride+u.N] {
+			c.sigmas[k+i] += v * v
 		}
-		c.sigmas[i] = math.Sqrt(sum)
+	}
+	for i, v := range c.sigmas {
+		c.sigmas[i] = math.Sqrt(v)
 	}
 	return c
 }

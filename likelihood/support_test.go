@@ -65,7 +65,7 @@ func correlate(t testing.TB, cov *mat.SymDense) Noise {
 	if !chol.Factorize(cov) {
 		t.Fatal("the covariance is not positive definite")
 	}
-	return Correlated(&chol)
+	return Correlated(chol.RawU().(*mat.TriDense))
 }
 
 // baoTerm is a table of BAO ratios with its covariance.

@@ -67,7 +67,12 @@ func runFit(ctx context.Context, args []string, stdout, stderr io.Writer) error 
 	if f.Changed("seed") {
 		sets = append(sets, "sampling.seed="+strconv.FormatUint(o.seed, 10))
 	}
-	j, err := load(f.Arg(0), sets)
+	o.explore.Cache = o.cache()
+	run, err := parseRun(f.Arg(0), sets)
+	if err != nil {
+		return err
+	}
+	j, err := job.LoadToFit(run, o.explore.Cache)
 	if err != nil {
 		return err
 	}
@@ -76,11 +81,11 @@ func runFit(ctx context.Context, args []string, stdout, stderr io.Writer) error 
 		dir = freeFolder(f.Arg(0))
 	}
 	o.explore.Version = version()
-	run, err := begin(ctx, j, dir, o.explore, stderr)
+	done, err := begin(ctx, j, dir, o.explore, stderr)
 	if err != nil {
 		return err
 	}
-	return conclude(ctx, run, dir, o.noReport, stdout)
+	return conclude(ctx, done, dir, o.noReport, stdout)
 }
 
 // begin explores the posterior by a chain, unless the run asks for quadrature alone.
@@ -96,15 +101,20 @@ func begin(ctx context.Context, j *job.Job, dir string, o explore.Options, stder
 
 // load reads a run file and everything that it names.
 func load(file string, sets []string) (*job.Job, error) {
-	text, err := os.ReadFile(file)
-	if err != nil {
-		return nil, usagef("cannot read %s: %v; omen new makes a run file", file, err.(*os.PathError).Err)
-	}
-	run, err := runfile.Parse(file, text, sets)
+	run, err := parseRun(file, sets)
 	if err != nil {
 		return nil, err
 	}
 	return job.Load(run)
+}
+
+// parseRun reads a run file and nothing that it names.
+func parseRun(file string, sets []string) (*runfile.Run, error) {
+	text, err := os.ReadFile(file)
+	if err != nil {
+		return nil, usagef("cannot read %s: %v; omen new makes a run file", file, err.(*os.PathError).Err)
+	}
+	return runfile.Parse(file, text, sets)
 }
 
 // freeFolder is the run file's name with the first number that is not taken.

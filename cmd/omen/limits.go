@@ -4,6 +4,7 @@ import (
 	"strconv"
 	"time"
 
+	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/explore"
 
 	"github.com/spf13/pflag"
@@ -14,6 +15,7 @@ type limits struct {
 	effective, steps int
 	time             time.Duration
 	noReport         bool
+	noCache          bool
 	explore          explore.Options
 }
 
@@ -23,7 +25,16 @@ func (l *limits) add(f *pflag.FlagSet) {
 	f.IntVar(&l.steps, "max-steps", 0, "stop at this many steps in all")
 	f.BoolVar(&l.explore.Quiet, "quiet", false, "show no progress")
 	f.BoolVar(&l.noReport, "no-report", false, "leave out figures and pages; the text and summary.json remain")
+	f.BoolVar(&l.noCache, "no-cache", false, "factorise covariances anew, and keep nothing in the user's cache folder")
 	f.IntVar(&l.explore.Threads, "threads", 0, "ensembles that run at the same time; 0: one per processor")
+}
+
+// cache keeps what is slow to compute, unless it is not wanted.
+func (l *limits) cache() *cache.Cache {
+	if l.noCache {
+		return nil
+	}
+	return cache.Default()
 }
 
 // sets are the flags that were given as settings of the run file.

@@ -28,7 +28,7 @@ func runResume(ctx context.Context, args []string, stdout, stderr io.Writer) err
 	if done, err := parse(f, args, stdout, 1); done || err != nil {
 		return err
 	}
-	l.explore.Version = version()
+	l.explore.Version, l.explore.Cache = version(), l.cache()
 	dir := filepath.Clean(f.Arg(0))
 	run, err := explore.Resume(ctx, dir, l.sets(f), l.explore, stderr)
 	if err != nil {

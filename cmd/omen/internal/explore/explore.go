@@ -13,6 +13,7 @@ import (
 	"slices"
 	"time"
 
+	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/chainfile"
 	"omen/cmd/omen/internal/job"
 	"omen/cmd/omen/internal/progress"
@@ -29,6 +30,7 @@ type Options struct {
 	Threads int // 0: one per processor
 	Quiet   bool
 	Version string
+	Cache   *cache.Cache // of what is slow to read; nil for none
 }
 
 // Refused is a folder that a run cannot begin or go on in, for a reason that

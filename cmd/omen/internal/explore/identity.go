@@ -50,6 +50,9 @@ func keys(r *runfile.Run) []string {
 		if d.Covariance != "" {
 			out = append(out, fmt.Sprintf("data.%d.covariance", i+1))
 		}
+		if d.Templates != "" {
+			out = append(out, fmt.Sprintf("data.%d.templates", i+1))
+		}
 	}
 	return out
 }
@@ -68,6 +71,9 @@ func settle(j *job.Job, dir string, text []byte) error {
 		paths = append(paths, d.Table)
 		if d.Covariance != "" {
 			paths = append(paths, d.Covariance)
+		}
+		if d.Templates != "" {
+			paths = append(paths, d.Templates)
 		}
 	}
 	for i, path := range paths {

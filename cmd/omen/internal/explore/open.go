@@ -19,7 +19,7 @@ func Open(dir string, o Options) (*result.Run, error) {
 	if err != nil {
 		return nil, err
 	}
-	j, text, err := reload(dir, nil)
+	j, text, err := reload(dir, nil, o.Cache)
 	if err != nil {
 		return nil, err
 	}

@@ -12,6 +12,7 @@ import (
 	"strings"
 	"time"
 
+	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/chainfile"
 	"omen/cmd/omen/internal/job"
 	"omen/cmd/omen/internal/progress"
@@ -36,7 +37,7 @@ func Resume(ctx context.Context, dir string, sets []string, o Options, stderr io
 	if state, err = readState(dir); err != nil { // now that nobody writes
 		return nil, err
 	}
-	j, text, err := reload(dir, sets)
+	j, text, err := reload(dir, sets, o.Cache)
 	if err != nil {
 		return nil, err
 	}
@@ -76,7 +77,7 @@ func readState(dir string) (chainfile.State, error) {
 const NoRun = "no run in this folder (no " + chainfile.StateName + "); name the folder that omen fit made, or begin with omen fit RUN.toml"
 
 // reload reads the run file in dir and everything it names, as they are now.
-func reload(dir string, sets []string) (*job.Job, []byte, error) {
+func reload(dir string, sets []string, c *cache.Cache) (*job.Job, []byte, error) {
 	file := filepath.Join(dir, RunFileName)
 	text, err := os.ReadFile(file)
 	if errors.Is(err, fs.ErrNotExist) {
@@ -89,7 +90,7 @@ func reload(dir string, sets []string) (*job.Job, []byte, error) {
 	if err != nil {
 		return nil, nil, err
 	}
-	j, err := job.Load(run)
+	j, err := job.LoadToFit(run, c)
 	if err != nil {
 		return nil, nil, err
 	}

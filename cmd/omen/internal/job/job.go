@@ -11,6 +11,7 @@ import (
 	"os"
 	"path/filepath"
 
+	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/runfile"
 	"omen/data"
 	"omen/likelihood"
@@ -45,20 +46,32 @@ type Job struct {
 	Tables    []Table
 	Space     *likelihood.Space
 	Posterior *likelihood.Posterior
+
+	cache *cache.Cache
+	whole bool // matrices stay in memory, to be looked at
 }
 
-// Load reads the tables of a run. Paths are relative to the run file.
-func Load(run *runfile.Run) (*Job, error) {
-	j := &Job{Run: run}
-	family, err := run.Family()
+// Load reads the tables of a run and all that belongs to them. Paths are relative
+// to the run file.
+func Load(run *runfile.Run) (*Job, error) { return load(&Job{Run: run, whole: true}) }
+
+// LoadToFit is Load for a run that will be computed and not looked at: its Tables
+// have no Matrix and no Covariance. What takes long is taken from c where it has
+// been computed before; nil is no cache. No number depends on it.
+func LoadToFit(run *runfile.Run, c *cache.Cache) (*Job, error) {
+	return load(&Job{Run: run, cache: c})
+}
+
+func load(j *Job) (*Job, error) {
+	family, err := j.Run.Family()
 	if err != nil {
 		return nil, err
 	}
 	if j.Space, err = likelihood.NewSpace(family); err != nil {
-		return nil, run.Errorf("prior", "%v", err)
+		return nil, j.Run.Errorf("prior", "%v", err)
 	}
 	var terms []likelihood.Term
-	for i := range run.Data {
+	for i := range j.Run.Data {
 		t, err := j.table(i)
 		if err != nil {
 			return nil, err
@@ -67,7 +80,7 @@ func Load(run *runfile.Run) (*Job, error) {
 		terms = append(terms, t.Term)
 	}
 	if j.Posterior, err = likelihood.NewPosterior(j.Space, terms...); err != nil {
-		return nil, run.Errorf("prior", "%v", err)
+		return nil, j.Run.Errorf("prior", "%v", err)
 	}
 	return j, nil
 }
@@ -83,16 +96,11 @@ func (j *Job) table(i int) (*Table, error) {
 	if err := j.open(key+".table", spec.Table, t.read); err != nil {
 		return nil, err
 	}
-	if spec.Covariance != "" {
-		err := j.open(key+".covariance", spec.Covariance, func(r io.Reader, file string) (err error) {
-			t.Matrix, err = data.ReadMatrix(r, file)
-			return err
-		})
-		if err != nil {
-			return nil, err
-		}
+	noise, err := j.noise(key, t)
+	if err != nil {
+		return nil, err
 	}
-	return t, j.term(i, t)
+	return t, j.term(i, t, noise)
 }
 
 // open hands a file to read and records its hash.
@@ -177,17 +185,7 @@ func (t *Table) Errors() []float64 {
 }
 
 // term builds the likelihood term of a table that has been read.
-func (j *Job) term(i int, t *Table) (err error) {
-	var noise likelihood.Noise // nil: the table's own errors
-	if t.Matrix != nil {
-		roles := map[string]data.Role{"": data.Total, "total": data.Total, "added": data.Added, "inverse": data.Inverse}
-		var chol *mat.Cholesky
-		t.Covariance, chol, err = data.Factorised(j.Path(t.Spec.Covariance), t.Matrix, roles[t.Spec.CovarianceHolds], t.Selection(), t.Errors())
-		if err != nil {
-			return err
-		}
-		noise = likelihood.Correlated(chol)
-	}
+func (j *Job) term(i int, t *Table, noise likelihood.Noise) (err error) {
 	switch {
 	case t.Supernovae != nil:
 		err = j.supernovae(i, t, noise)

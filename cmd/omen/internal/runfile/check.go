@@ -100,6 +100,9 @@ func (r *Run) checkData(i int) error {
 			return err
 		}
 	}
+	if d.Templates != "" && d.Covariance != "" {
+		return r.Errorf(key+".templates", "found both templates and a covariance, expected one: the templates stand for a covariance, remove either")
+	}
 	if d.Kind != "supernovae" && (d.Offset != nil || d.StandsFor != nil) {
 		return r.Errorf(key, "offset and stands-for belong to supernovae, this table is of kind %q; remove them", d.Kind)
 	}

@@ -32,6 +32,7 @@ func Identity(text []byte) (string, error) {
 		if table, ok := t.(map[string]any); ok {
 			delete(table, "table")
 			delete(table, "covariance")
+			delete(table, "templates")
 		}
 	}
 	b, err := json.Marshal(tree) // with its keys in order

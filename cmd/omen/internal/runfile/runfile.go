@@ -44,6 +44,7 @@ type Data struct {
 	Keep            string            `toml:"keep,omitempty"`
 	Covariance      string            `toml:"covariance,omitempty"`
 	CovarianceHolds string            `toml:"covariance-holds,omitempty"`
+	Templates       string            `toml:"templates,omitempty"`
 	Offset          any               `toml:"offset,omitempty"`
 	StandsFor       *StandsFor        `toml:"stands-for,omitempty"`
 }
@@ -139,6 +140,7 @@ func (r *Run) Resolved(dir string) ([]byte, error) {
 		d := &out.Data[i]
 		d.Table = r.relocate(d.Table, dir)
 		d.Covariance = r.relocate(d.Covariance, dir)
+		d.Templates = r.relocate(d.Templates, dir)
 	}
 	return toml.Marshal(out)
 }

@@ -46,6 +46,7 @@ func TestMistakes(t *testing.T) {
 		{"nothing free", strings.Replace(good, "{ flat = [0, 1] }", "0.3", 1), "my.toml:1: no parameter is free"},
 		{"unknown kind", strings.Replace(good, "supernovae", "supernova", 1), `my.toml:6: data.1.kind: found "supernova", expected one of supernovae, bao, ages, rates; the nearest is "supernovae"`},
 		{"no table", strings.Replace(good, "table =", "#", 1), "my.toml:5: no file is named"},
+		{"templates and a covariance", good + "covariance = \"c.cov\"\ntemplates = \"s.csv\"\n", "my.toml:9: found both templates and a covariance, expected one"},
 		{"offset of another kind", strings.Replace(good, "supernovae", "bao", 1) + "offset = \"free\"\n", "my.toml:5: offset and stands-for belong to supernovae"},
 		{"bad offset", good + "offset = { normal = [-19.3, -1] }\n", "my.toml:8: data.1.offset: found"},
 		{"odd walkers", good + "[sampling]\nwalkers = 33\n", "my.toml:9: found 33 walkers; expected an even number"},
