@@ -2,6 +2,7 @@ package main
 
 import (
 	"bytes"
+	"context"
 	"fmt"
 	"io"
 	"os"
@@ -37,7 +38,7 @@ func compareFlags(dir *string) *pflag.FlagSet {
 	return f
 }
 
-func runCompare(args []string, stdout io.Writer) error {
+func runCompare(ctx context.Context, args []string, stdout io.Writer) error {
 	var dir string
 	f := compareFlags(&dir)
 	if done, err := parse(f, args, stdout, -1); done || err != nil {
@@ -51,7 +52,7 @@ func runCompare(args []string, stdout io.Writer) error {
 	}
 	var runs []*gather.Run
 	for _, name := range f.Args() {
-		r, err := gather.Open(filepath.Clean(name), explore.Options{Version: version()})
+		r, err := gather.Open(ctx, filepath.Clean(name), explore.Options{Version: version()})
 		if err != nil {
 			return err
 		}

@@ -2,6 +2,7 @@ package main
 
 import (
 	"bytes"
+	"context"
 	"errors"
 	"fmt"
 	"io"
@@ -36,7 +37,8 @@ goal, or is still under way, can be reported too; every figure then says so.
 In the folder of the run:
   report.html       the whole result as one page to share: no network, no script
   figures/          hubble, plane, marginals, history, fates, convergence
-  constraints.tex   a table for \input, with the rules of booktabs
+  constraints.tex   a table for \input, with the rules of booktabs; fates.tex and
+                    nested.tex likewise
   numbers.tex       one macro for every number
   methods.md        two paragraphs on data, priors, likelihood, chain, to adapt
   constraints.csv   the constraints for a program
@@ -68,7 +70,7 @@ func reportFlags(o *reportOptions) *pflag.FlagSet {
 	return f
 }
 
-func runReport(args []string, stdout io.Writer) error {
+func runReport(ctx context.Context, args []string, stdout io.Writer) error {
 	o := defaultReport()
 	f := reportFlags(&o)
 	if done, err := parse(f, args, stdout, 1); done || err != nil {
@@ -78,7 +80,7 @@ func runReport(args []string, stdout io.Writer) error {
 		return err
 	}
 	dir := filepath.Clean(f.Arg(0))
-	r, err := gather.Open(dir, explore.Options{Version: version()})
+	r, err := gather.Open(ctx, dir, explore.Options{Version: version()})
 	if err != nil {
 		return err
 	}
@@ -231,6 +233,10 @@ func render(r *gather.Run, pictures []*gather.Picture, o reportOptions) ([]file,
 	}
 	if o.wants(partDraft) {
 		add("constraints.tex", func() ([]byte, error) { return draft.Constraints(r), nil })
+		add("fates.tex", func() ([]byte, error) { return draft.Fates(r), nil })
+		if text := draft.Nested(r); text != nil {
+			add("nested.tex", func() ([]byte, error) { return text, nil })
+		}
 		add("numbers.tex", func() ([]byte, error) { return draft.Numbers(r), nil })
 		add("methods.md", func() ([]byte, error) { return draft.Methods(r), nil })
 		add("constraints.csv", func() ([]byte, error) { return draft.CSV(r) })

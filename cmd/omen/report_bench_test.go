@@ -19,12 +19,12 @@ func BenchmarkReport(b *testing.B) {
 	}
 	b.Run("open", func(b *testing.B) {
 		for b.Loop() {
-			if _, err := gather.Open(dir, explore.Options{Version: version()}); err != nil {
+			if _, err := gather.Open(context.Background(), dir, explore.Options{Version: version()}); err != nil {
 				b.Fatal(err)
 			}
 		}
 	})
-	r, err := gather.Open(dir, explore.Options{Version: version()})
+	r, err := gather.Open(context.Background(), dir, explore.Options{Version: version()})
 	if err != nil {
 		b.Fatal(err)
 	}

@@ -1,6 +1,8 @@
 // Package draft writes what a run has to say in the form that a paper takes it:
 //
 //	Constraints  constraints.tex: a tabular for \input, with the rules of booktabs
+//	Fates        fates.tex: another, of the probability of each fate
+//	Nested       nested.tex: and one of the nested universes
 //	Numbers      numbers.tex: one macro for every number, so that a text updates itself
 //	Methods      methods.md: two paragraphs on data, priors, likelihood and chain
 //	CSV          constraints.csv: the same numbers for a program
@@ -19,6 +21,7 @@ import (
 
 	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/gather"
+	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
 )
 
@@ -99,15 +102,6 @@ func Constraints(r *gather.Run) []byte {
 	for _, q := range s.Derived {
 		row(&b, q, math.NaN(), false)
 	}
-	b.WriteString("\\midrule\n")
-	rows := func(fates []result.Fate, condition string) {
-		for _, f := range fates {
-			fmt.Fprintf(&b, "$P$(%s%s) & $%s$ & & \\\\\n", Escape(event(f.Name)), condition, probability(f))
-		}
-	}
-	rows(s.Fates, "")
-	rows(s.FatesHeldW, " if $w$ stays")
-	rows(s.Today, "")
 	b.WriteString("\\bottomrule\n\\end{tabular}\n")
 	if !s.Complete {
 		b.WriteString("\\par\\smallskip\\textbf{Unfinished: the run stopped before its goal.}\n")
@@ -148,15 +142,14 @@ func end(q result.Quantity, ends, mcse [2]result.Number, i int) string {
 }
 
 // probability is a probability in math mode, with its error or as a limit.
-func probability(f result.Fate) string {
-	p, e, up := float64(f.Probability), float64(f.Error), float64(f.Upper95)
-	switch {
-	case p == 0 && up > 0:
-		return "< " + scientific(up)
-	case p == 1 && up > 0:
-		return "> " + digits.Format(1-up, place(up, 0))
-	}
-	return strings.ReplaceAll(digits.Share(p, e), "±", `\pm`)
+func probability(f result.Fate) string { return inMath(report.Probability(f)) }
+
+// inMath sets a number of the screen in math mode.
+func inMath(s string) string {
+	s = gather.Scientific(strings.TrimSuffix(s, " (95%)"), func(times, exponent string) string {
+		return strings.Replace(times, "×", ` \times `, 1) + "10^{" + strings.Replace(exponent, "−", "-", 1) + "}"
+	})
+	return strings.NewReplacer("±", `\pm`, "–", `\text{--}`).Replace(s)
 }
 
 // event is the name of a fate or statement without its explanation.
@@ -166,16 +159,6 @@ func event(name string) string {
 		name += " today"
 	}
 	return name
-}
-
-// scientific writes a small number with two digits.
-func scientific(x float64) string {
-	if x >= 1e-3 {
-		return digits.Error(x)
-	}
-	m, exp, _ := strings.Cut(strconv.FormatFloat(x, 'e', 1, 64), "e")
-	n, _ := strconv.Atoi(exp)
-	return fmt.Sprintf(`%s \times 10^{%d}`, m, n)
 }
 
 // heading says in comments what a file is and where it comes from.

@@ -10,6 +10,7 @@ import (
 	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/gather"
 	"omen/cmd/omen/internal/job"
+	"omen/cmd/omen/internal/result"
 	"omen/likelihood"
 )
 
@@ -154,7 +155,8 @@ func sampling(r *gather.Run) string {
 	f := r.Summary.Fit
 	s += fmt.Sprintf("The best fit, the point of highest posterior density, has chi-squared %.2f for %d degrees of freedom. ", float64(f.Chi2), f.DoF)
 	s += "We quote posterior means with standard deviations, or medians with central 68% intervals where these are lopsided, and central 95% intervals. " +
-		"The probability of a fate is the share of the posterior whose universes meet it (Carroll, Press & Turner 1992; Felten & Isaacman 1986); where no sample does, the 95% upper limit is 3 over the effective sample size. "
+		"The probability of a fate is the share of the posterior whose universes meet it (Carroll, Press & Turner 1992; Felten & Isaacman 1986); "
+	s += fates(r.Summary)
 	return s + fmt.Sprintf("Computed with omen %s, seed %d.", markdown(r.Summary.Version), m.Seed)
 }
 
@@ -165,4 +167,21 @@ func percent(x float64) string {
 	}
 	unit := math.Pow10(int(math.Floor(math.Log10(100 * x))))
 	return digits.Format(math.Ceil(100*x/unit)*unit, int(math.Floor(math.Log10(unit)+0.5))) + "%"
+}
+
+// fates is how their probabilities were found.
+func fates(s *result.Summary) string {
+	text := "where no sample does, the 95% upper limit is 3 over the effective sample size. "
+	if len(s.Engine.Exact) > 0 {
+		text = "it is integrated by adaptive quadrature, which also checks the chain"
+		if d := s.Engine.Largest; d != nil {
+			text += fmt.Sprintf(" (largest difference %.2f of a posterior width)", float64(d.Widths))
+		}
+		text += ". "
+	}
+	if len(s.Nested) > 1 {
+		text += fmt.Sprintf("Exactly flat, critical and empty universes have no volume in the posterior; "+
+			"the %d nested universes are compared by their evidences under the priors above, with the prior odds stated beside the result. ", len(s.Nested))
+	}
+	return text
 }

@@ -8,6 +8,7 @@ import (
 
 	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/gather"
+	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
 )
 
@@ -31,14 +32,7 @@ func Numbers(r *gather.Run) []byte {
 	for _, q := range s.Derived {
 		m.quantity(q)
 	}
-	for _, series := range []struct {
-		suffix string
-		fates  []result.Fate
-	}{{"", s.Fates}, {"HeldW", s.FatesHeldW}, {"", s.Today}} {
-		for _, f := range series.fates {
-			m.define("P"+letters(event(f.Name))+series.suffix, probability(f))
-		}
-	}
+	m.fates(s)
 	m.fit(s)
 	return m.Bytes()
 }
@@ -62,6 +56,42 @@ func (m *macros) quantity(q result.Quantity) {
 	m.define(name+"HighSixtyEight", end(q, q.Interval68, q.MCSE68, 1))
 	m.define(name+"LowNinetyFive", end(q, q.Interval95, q.MCSE95, 0))
 	m.define(name+"HighNinetyFive", end(q, q.Interval95, q.MCSE95, 1))
+}
+
+// fates defines every probability, and what the nested universes and times are.
+func (m *macros) fates(s *result.Summary) {
+	series := func(fates []result.Fate, suffix string) {
+		for _, f := range fates {
+			m.define("P"+letters(event(f.Name))+suffix, probability(f))
+		}
+	}
+	series(s.Fates, "")
+	series(s.FatesHeldW, "HeldW")
+	series(s.Today, "")
+	if s.Averaged != nil {
+		series(s.Averaged.Fates, "Averaged")
+		series(s.Averaged.FatesHeldW, "HeldWAveraged")
+		series(s.Averaged.Today, "Averaged")
+	}
+	for _, n := range s.Nested {
+		if n.Ruled == "" {
+			m.define("LnBayes"+letters(n.Name), inMath(report.Bayes(n)))
+			m.define("PModel"+letters(n.Name), inMath(report.ModelProbability(n)))
+		}
+	}
+	for _, t := range s.Times {
+		if median, _, _ := report.When(t); median != "" {
+			m.define("Time"+letters(t.Name), when(t))
+		}
+	}
+}
+
+// when is a time as a median with errors.
+func when(t result.Time) string {
+	up, down := float64(t.Interval68[1]-t.Median), float64(t.Median-t.Interval68[0])
+	e := estimate{float64(t.Median), up, down, false, place(math.Min(up, down), float64(t.MCSE))}
+	e.symmetric = digits.Format(up, e.place) == digits.Format(down, e.place)
+	return e.tex()
 }
 
 // fit defines the goodness of the best fit and the chain's own numbers.

@@ -2,6 +2,7 @@ package gather
 
 import (
 	"math"
+	"regexp"
 	"slices"
 	"strings"
 
@@ -9,36 +10,6 @@ import (
 	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
 )
-
-// fates is the bar chart of probabilities.
-func (r *Run) fates() (*Picture, error) {
-	series := r.Series()
-	in := figure.Fates{LimitLevel: figure.Plain("95% upper limit"), Unfinished: r.Unfinished()}
-	var rows []string
-	for _, s := range series {
-		for _, f := range s.Fates {
-			if !slices.Contains(rows, f.Name) {
-				rows = append(rows, f.Name)
-			}
-		}
-	}
-	for _, name := range rows {
-		in.Rows = append(in.Rows, figure.Plain(name))
-	}
-	for _, s := range series {
-		bars := figure.FateSeries{Name: figure.Plain(s.Name)}
-		for _, name := range rows {
-			bars.Values = append(bars.Values, bar(s.Fates, name))
-		}
-		in.Series = append(in.Series, bars)
-	}
-	var words []string
-	for _, f := range series[0].Fates {
-		words = append(words, f.Name+" "+report.Probability(f))
-	}
-	return &Picture{Caption: "The probability of each fate with its Monte Carlo error. An open bar with an arrow is an upper limit: no draw of the posterior has that fate." + r.extrapolation(),
-		Alt: "Probabilities: " + strings.Join(words, "; ") + ".", draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawFates(in, w) }}, nil
-}
 
 // FateSeries is one table of fates under a name.
 type FateSeries struct {
@@ -48,11 +19,65 @@ type FateSeries struct {
 
 // Series lists the tables of fates of a run.
 func (r *Run) Series() []FateSeries {
-	out := []FateSeries{{"within the fitted family", r.Summary.Fates}}
-	if len(r.Summary.FatesHeldW) > 0 {
-		out = append(out, FateSeries{"if w stays at today's value", r.Summary.FatesHeldW})
+	s := r.Summary
+	all := []FateSeries{{"within the fitted family", s.Fates}, {"if w stays at today's value", s.FatesHeldW}}
+	if s.Averaged != nil {
+		all = append(all, FateSeries{"averaged over the nested universes", s.Averaged.Fates})
 	}
-	return out
+	return slices.DeleteFunc(all, func(f FateSeries) bool { return len(f.Fates) == 0 })
+}
+
+// smallest is the probability below which a bar says no more, and below which a
+// fate is left out of the figure unless it is one of the usual three.
+const smallest = 1e-6
+
+// fates is the bar chart of probabilities.
+func (r *Run) fates() (*Picture, error) {
+	series := r.Series()
+	if len(series) == 0 {
+		return absent("no fate was determined"), nil
+	}
+	in := figure.Fates{LimitLevel: figure.Plain("95% upper limit"), Unfinished: r.Unfinished()}
+	names := fateRows(series)
+	for _, name := range names {
+		in.Rows = append(in.Rows, figure.Plain(name))
+	}
+	for _, s := range series {
+		bars := figure.FateSeries{Name: figure.Plain(s.Name)}
+		for _, name := range names {
+			bars.Values = append(bars.Values, bar(s.Fates, name))
+		}
+		in.Series = append(in.Series, bars)
+	}
+	var words []string
+	for _, s := range series {
+		var list []string
+		for _, f := range s.Fates {
+			list = append(list, f.Name+" "+report.Probability(f))
+		}
+		words = append(words, s.Name+": "+strings.Join(list, "; "))
+	}
+	caption := "The probability of each fate with its error. An open bar with an arrow is an upper limit."
+	if len(series) > 1 && r.Summary.Averaged != nil {
+		caption += " The nested universes are weighted with their own probabilities; an exactly flat, critical or coasting one has none in the continuous posterior of the fitted family."
+	}
+	return &Picture{Caption: caption + r.extrapolation(), Alt: "Probabilities " + strings.Join(words, ". Probabilities ") + ".",
+		draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawFates(in, w) }}, nil
+}
+
+// fateRows are the fates to show: those that have a probability to speak of in
+// one of the series, and what the fitted family could do.
+func fateRows(series []FateSeries) []string {
+	var names []string
+	for i, s := range series {
+		for _, f := range s.Fates {
+			possible := i == 0 && (f.Probability > 0 || f.Upper95 > 0)
+			if (possible || f.Probability > smallest) && !slices.Contains(names, f.Name) {
+				names = append(names, f.Name)
+			}
+		}
+	}
+	return names
 }
 
 // bar is the probability of a fate in a series, printed as everywhere else.
@@ -62,13 +87,32 @@ func bar(fates []result.Fate, name string) figure.Probability {
 		return figure.Probability{P: math.NaN()}
 	}
 	f := fates[i]
-	text := figure.Plain(strings.TrimSuffix(report.Probability(f), " (95%)"))
-	if f.Probability == 0 {
-		return figure.Probability{P: float64(f.Upper95), Limit: true, Text: text}
+	text := figure.Markup(Scientific(strings.TrimSuffix(report.Probability(f), " (95%)"), func(m, e string) string { return m + "10^{" + e + "}" }))
+	p, up := float64(f.Probability), float64(f.Upper95)
+	switch {
+	case p == 0 && up > 0:
+		return figure.Probability{P: max(up, smallest), Limit: true, Text: text}
+	case p > 0 && p < smallest:
+		return figure.Probability{P: smallest, Limit: true, Text: text}
 	}
-	p := figure.Probability{P: float64(f.Probability), Text: text}
-	if e := float64(f.Error); e > 0 {
-		p.Err = e
+	out := figure.Probability{P: p, Text: text}
+	if e := float64(f.Error); e > 0 && e > p/1000 {
+		out.Err = e
 	}
-	return p
+	return out
+}
+
+var exponent = regexp.MustCompile(`(\d+(?:\.\d+)?)e(-?)(\d+)`)
+
+// Scientific replaces every number such as 6.3e-5 in a text by what set makes of
+// "6.3×" (nothing for 1) and "−5".
+func Scientific(s string, set func(times, exponent string) string) string {
+	return exponent.ReplaceAllStringFunc(s, func(n string) string {
+		m := exponent.FindStringSubmatch(n)
+		times := m[1] + "×"
+		if m[1] == "1" {
+			times = ""
+		}
+		return set(times, strings.Replace(m[2], "-", "−", 1)+strings.TrimLeft(m[3], "0"))
+	})
 }

@@ -10,6 +10,7 @@
 package gather
 
 import (
+	"context"
 	"encoding/json"
 	"os"
 	"path/filepath"
@@ -29,13 +30,18 @@ type Run struct {
 
 // Open reads the run in dir as it stands. Its summary is that of summary.json if
 // it belongs to the chain as it is, and made anew if not.
-func Open(dir string, o explore.Options) (*Run, error) {
+func Open(ctx context.Context, dir string, o explore.Options) (*Run, error) {
 	run, err := explore.Open(dir, o)
 	if err != nil {
 		return nil, err
 	}
 	s, ok := kept(dir, run)
 	if !ok {
+		if run.Ended() == "" { // of an unfinished run the chain alone is told
+			if err := run.Investigate(ctx); err != nil {
+				return nil, err
+			}
+		}
 		s = result.Build(*run)
 	}
 	return Of(run, s, dir)

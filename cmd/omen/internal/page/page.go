@@ -37,6 +37,9 @@ type view struct {
 	Words                            []template.HTML
 	Blocks                           [][]quantity
 	Fates                            []shares
+	Nested                           []universeRow
+	Times                            []when
+	SamePriors                       string
 	Figures                          []drawing
 	Chain                            template.HTML
 	Tables                           []table
@@ -59,10 +62,33 @@ type quantity struct {
 // shares is a table of probabilities.
 type shares struct {
 	Name, What string
+	Columns    []string
 	Rows       []share
 }
 
-type share struct{ Name, Probability, Percent string }
+type share struct {
+	Name, Percent string
+	Cells         []shareCell
+}
+
+type shareCell struct {
+	Column string
+	Text   template.HTML
+}
+
+// universeRow is one of the nested universes.
+type universeRow struct {
+	Name, Ruled, Chi2, AIC, BIC string
+	Own                         bool
+	Free                        int
+	Bayes, Probability          template.HTML
+}
+
+// when is a time with its intervals, or why it is not known.
+type when struct {
+	Name, Unit, Why    string
+	Median, In68, In95 template.HTML
+}
 
 // drawing is a figure, with a narrow version where the other is for a page.
 type drawing struct {
@@ -107,10 +133,8 @@ func Report(w io.Writer, r *gather.Run, pictures []*gather.Picture) error {
 			v.Convergence = append(v.Convergence, rows...)
 		}
 	}
-	for _, f := range r.Series() {
-		v.Fates = append(v.Fates, newShares(sentence(f.Name), "Fate", f.Fates))
-	}
-	v.Fates = append(v.Fates, newShares("Today", "Statement", s.Today))
+	v.Fates, v.SamePriors = fateTables(s)
+	v.Nested, v.Times = nested(s.Nested), times(s.Times)
 	for _, o := range r.Outliers(mostOutliers) {
 		v.Outliers = append(v.Outliers, outlier{o.Table, o.Name, o.Line, digits.Format(o.Z, -4), text(fmt.Sprintf("%.3f", o.Measured)),
 			text(fmt.Sprintf("%.3f", o.Predicted)), text(fmt.Sprintf("%+.1f", o.Sigmas))})
@@ -168,16 +192,4 @@ func newQuantity(q result.Quantity) quantity {
 	return quantity{Symbol: symbol(q.Name), Unit: q.Unit, Value: text(report.MeanSD(q)), In68: text(report.Interval(q.Interval68, q.MCSE68, q)),
 		In95: text(report.Interval(q.Interval95, q.MCSE95, q)), Constrained: q.Constrained,
 		ESS: digits.Format(math.Floor(float64(q.ESS)), 0), RHat: digits.Format(float64(q.RHat), -4), MCSE: digits.Error(float64(q.MCSE))}
-}
-
-func newShares(name, what string, fates []result.Fate) shares {
-	s := shares{Name: name, What: what}
-	for _, f := range fates {
-		p := float64(f.Probability)
-		if math.IsNaN(p) {
-			p = 0
-		}
-		s.Rows = append(s.Rows, share{f.Name, report.Probability(f), fmt.Sprintf("%.1f", 100*p)})
-	}
-	return s
 }

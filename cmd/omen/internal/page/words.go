@@ -50,7 +50,11 @@ func sentence(s string) string {
 // words is the result in a few sentences.
 func words(r *gather.Run) []template.HTML {
 	s := r.Summary
-	return []template.HTML{constraints(r), text(fate(r)), today(r), text(fit(s)), text(converged(s))}
+	out := []template.HTML{constraints(r), probability(fate(r))}
+	if l := likeliest(s.Nested); l != "" {
+		out = append(out, probability(l))
+	}
+	return append(out, today(r), text(fit(s)), text(converged(s)))
 }
 
 // constraints names what the data know.
@@ -141,9 +145,11 @@ func verb(name string) string {
 func today(r *gather.Run) template.HTML {
 	var parts []string
 	for _, f := range r.Summary.Today {
-		parts = append(parts, f.Name+" with probability "+report.Probability(f))
+		if f.Probability > 0 {
+			parts = append(parts, f.Name+" with probability "+report.Probability(f))
+		}
 	}
-	s := text("Today it is " + join(parts) + ".")
+	s := probability("Today it is " + join(parts) + ".")
 	if q, ok := gather.Find(r.Summary, "age"); ok {
 		return s + " Its age: " + template.HTML(value(q)) + "."
 	}
@@ -162,7 +168,20 @@ func fit(s *result.Summary) string {
 func chain(s *result.Summary) string {
 	m := s.Sampling
 	return fmt.Sprintf("%d ensembles of %d walkers, %d steps, the first %d discarded as burn-in. Effective samples %.0f at least (goal %d), R-hat %.4f at most. Acceptance %.2f, %d evaluations, seed %d.",
-		m.Ensembles, m.Walkers, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), float64(m.Acceptance), m.Evaluations, m.Seed)
+		m.Ensembles, m.Walkers, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), float64(m.Acceptance), m.Evaluations, m.Seed) + engine(s.Engine)
+}
+
+// engine is what an integral says of the chain.
+func engine(e result.Engine) string {
+	if len(e.Exact) == 0 {
+		return ""
+	}
+	s := fmt.Sprintf(" Quadrature beside it: %d evaluations, ln evidence %.2f.", e.Evaluations, float64(e.LogEvidence))
+	if d := e.Largest; d != nil {
+		s += fmt.Sprintf(" The chain differs from it by %.3f of the posterior's width at most (%s of %s), its Monte Carlo error there being %.3f.",
+			float64(d.Widths), d.Statistic, d.Quantity, float64(d.MonteCarlo))
+	}
+	return s
 }
 
 // converged is the chain in a sentence.
