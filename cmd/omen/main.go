@@ -76,9 +76,9 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 	case "status":
 		return runStatus(rest, stdout)
 	case "report":
-		return runReport(rest, stdout)
+		return runReport(ctx, rest, stdout)
 	case "compare":
-		return runCompare(rest, stdout)
+		return runCompare(ctx, rest, stdout)
 	case "fate":
 		return runFate(rest, stdout)
 	case "inspect":
