@@ -79,15 +79,12 @@ func (p *pass) guessScales(mass float64) {
 }
 
 // sections returns where a level is cut, in conditional standard deviations from the conditional mean: pieces
-// on which the rule sees a Gaussian well within the tolerance at once.
+// on which the rule sees a Gaussian to a relative 1e-8 at once, or to 1e-3 where no more is asked for.
 func (p *pass) sections() []float64 {
-	switch {
-	case p.relative >= 1e-3: // to some 1e-3
+	if p.relative >= 1e-3 {
 		return []float64{-6, 6}
-	case p.relative >= 1e-5: // 1e-6
-		return []float64{-6, 0, 6}
 	}
-	return []float64{-6, -2, 2, 6} // 1e-8
+	return []float64{-6, -2, 2, 6}
 }
 
 // cuts returns the edges of the box of a level and, between them, the sections about the conditional mean given
@@ -103,9 +100,13 @@ func (w *worker) cuts(level int) []float64 {
 		z[l] = (w.x[w.order[l]] - mean) / w.chol.At(l, l)
 	}
 	sd := w.chol.At(level, level)
+	sliver := sd
+	if w.relative >= 1e-5 { // one piece from 2 to 9 is good enough
+		sliver *= 3
+	}
 	c := append(w.buf[level][:0], w.lo[level])
 	for _, k := range w.sections() {
-		if t := mean + k*sd; t > w.lo[level]+sd && t < w.hi[level]-sd {
+		if t := mean + k*sd; t > w.lo[level]+sliver && t < w.hi[level]-sliver {
 			c = append(c, t)
 		}
 	}

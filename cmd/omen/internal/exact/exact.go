@@ -14,6 +14,7 @@ import (
 	"omen/cmd/omen/internal/outlook"
 	"omen/likelihood"
 	"omen/model"
+	"omen/sampler"
 	"omen/sampler/quadrature"
 )
 
@@ -27,11 +28,12 @@ type Posterior struct {
 	LogBest     float64   // ln p there
 	LogEvidence quadrature.Estimate
 	Marginals   []quadrature.Marginal // of the free parameters
-	Nodes       *quadrature.Nodes
+	Nodes       *quadrature.Nodes     // in coordinates of the integral
 	Evaluations int
 	Seconds     float64
 	Warnings    []string
 
+	frame   *frame                // of the coordinates of Nodes, nil where they are the parameters
 	labels  []outlook.Label       // by class
 	classes []quadrature.Estimate // their probabilities
 	rare    []rareNodes           // what belongs to no class
@@ -59,22 +61,124 @@ func Options(dim, threads int) quadrature.Options {
 func Integrate(ctx context.Context, p *likelihood.Posterior, start []float64, threads int) (*Posterior, error) {
 	begun := time.Now()
 	space := p.Space()
-	lo, hi := space.Box()
 	if d := space.Dim(); d < 1 || d > Most {
 		return nil, fmt.Errorf("quadrature goes from 1 to %d free parameters, not to %d", Most, d)
 	}
 	e := &Posterior{Space: space, labels: labels(space)}
-	problem := quadrature.Problem{Lo: lo, Hi: hi, Start: start, Classes: len(e.labels),
-		Density: func() quadrature.Density { return p.Evaluator().LogDensity }, Class: e.class}
-	r, err := quadrature.Integrate(ctx, problem, Options(space.Dim(), threads))
+	if space.Dim() == Most {
+		e.straighten(p, start)
+	}
+	o := Options(space.Dim(), threads)
+	r, err := quadrature.Integrate(ctx, e.problem(p, start), o)
+	for tries := 0; err == nil && e.frame != nil && e.cut(r); tries++ {
+		e.frame = e.frame.wider(tries) // it let something of the posterior out
+		r, err = quadrature.Integrate(ctx, e.problem(p, start), o)
+	}
 	if err != nil {
 		return nil, err
 	}
-	e.Best, e.LogBest, e.LogEvidence, e.Marginals = r.Mode, r.LogMode, r.LogEvidence, r.Marginals
-	e.Nodes, e.Evaluations, e.Warnings, e.classes = r.Nodes, r.Evaluations, r.Warnings, r.Classes
+	e.take(r)
 	e.gatherRare()
 	e.Seconds = time.Since(begun).Seconds()
 	return e, nil
+}
+
+// straighten looks for a frame.
+func (e *Posterior) straighten(p *likelihood.Posterior, start []float64) {
+	lo, hi := e.Space.Box()
+	density := p.Evaluator().LogDensity
+	best, _, err := sampler.Maximise(density, lo, hi, 1)
+	if err != nil {
+		return
+	}
+	if start != nil && density(start) > density(best) {
+		best = start
+	}
+	e.frame = newFrame(density, best, lo, hi)
+}
+
+// problem is the integral to do, in the frame if there is one.
+func (e *Posterior) problem(p *likelihood.Posterior, start []float64) quadrature.Problem {
+	lo, hi := e.Space.Box()
+	q := quadrature.Problem{Lo: lo, Hi: hi, Start: start, Classes: len(e.labels), Class: e.class,
+		Density: func() quadrature.Density { return p.Evaluator().LogDensity }}
+	if f := e.frame; f != nil {
+		q.Start = make([]float64, len(lo))
+		q.Hi, q.Lo = f.extent, make([]float64, len(lo))
+		for i, x := range f.extent {
+			q.Lo[i] = -x
+		}
+		q.Density = func() quadrature.Density {
+			density := p.Evaluator().LogDensity
+			x := make([]float64, len(lo))
+			return func(u []float64) float64 {
+				f.at(x, u)
+				return density(x)
+			}
+		}
+	}
+	return q
+}
+
+// cut reports whether the density is still there at the faces of the frame's box.
+func (e *Posterior) cut(r *quadrature.Result) bool {
+	for i := range r.Nodes.Len() {
+		if r.Nodes.LogP[i] < r.LogMode-reach*reach/2+3 {
+			continue
+		}
+		for k, u := range r.Nodes.At(i) {
+			if math.Abs(u) > 0.985*e.frame.extent[k] {
+				return true
+			}
+		}
+	}
+	return false
+}
+
+// take takes a result over, from the frame back to the parameters.
+func (e *Posterior) take(r *quadrature.Result) {
+	e.Best, e.LogBest, e.LogEvidence, e.Marginals = r.Mode, r.LogMode, r.LogEvidence, r.Marginals
+	e.Nodes, e.Evaluations, e.Warnings, e.classes = r.Nodes, r.Evaluations, r.Warnings, r.Classes
+	if e.frame == nil {
+		return
+	}
+	e.LogEvidence.Value += e.frame.logVolume()
+	e.Best = e.point(r.Mode)
+	e.Marginals = nil
+	for i := range e.Best {
+		m, err := e.Nodes.Marginal(func(u []float64) float64 {
+			x := e.frame.centre[i]
+			for k := range i + 1 {
+				x += e.frame.l.At(i, k) * u[k]
+			}
+			return x
+		})
+		if err != nil {
+			m.Mean, m.SD = math.NaN(), math.NaN()
+		}
+		e.Marginals = append(e.Marginals, m)
+	}
+}
+
+// point is the parameters at coordinates of the integral.
+func (e *Posterior) point(u []float64) []float64 {
+	if e.frame == nil {
+		return u
+	}
+	x := make([]float64, len(u))
+	e.frame.at(x, u)
+	return x
+}
+
+// universe fills the point of the universe at coordinates of the integral.
+func (e *Posterior) universe(u []float64, p *likelihood.Point) {
+	if e.frame == nil {
+		e.Space.Point(u, p)
+		return
+	}
+	var x [Most]float64
+	e.frame.at(x[:len(u)], u)
+	e.Space.Point(x[:len(u)], p)
 }
 
 // NoSupport reports an error that says that no point with a finite density was
@@ -84,7 +188,7 @@ func NoSupport(err error) bool { return errors.Is(err, quadrature.ErrNoSupport) 
 // class is the place of the label at x among the labels, -1 for a rare one.
 func (e *Posterior) class(x []float64) int {
 	var p likelihood.Point
-	e.Space.Point(x, &p)
+	e.universe(x, &p)
 	return slices.Index(e.labels, outlook.LabelOf(p.Universe))
 }
 
@@ -131,7 +235,7 @@ func (e *Posterior) gatherRare() {
 		if c >= 0 {
 			continue
 		}
-		e.Space.Point(e.Nodes.At(i), &p)
+		e.universe(e.Nodes.At(i), &p)
 		e.rare = append(e.rare, rareNodes{outlook.LabelOf(p.Universe), e.Nodes.Weight[i]})
 	}
 }
@@ -180,7 +284,8 @@ func share(yes, no quadrature.Estimate) outlook.Share {
 
 // Reweighted is the posterior under another prior.
 func (e *Posterior) Reweighted(ratio func(x []float64) float64) (outlook.Reweighted, error) {
-	nodes, mean, err := e.Nodes.Reweight(ratio)
+	at := func(u []float64) float64 { return ratio(e.point(u)) }
+	nodes, mean, err := e.Nodes.Reweight(at)
 	if err != nil {
 		return outlook.Reweighted{}, err
 	}
@@ -195,7 +300,7 @@ func (e *Posterior) Reweighted(ratio func(x []float64) float64) (outlook.Reweigh
 	again.gatherRare()
 	var first, second float64
 	for i, w := range e.Nodes.Weight {
-		f := ratio(e.Nodes.At(i))
+		f := at(e.Nodes.At(i))
 		first, second = first+w*f, second+w*f*f
 	}
 	return outlook.Reweighted{Belief: &again, LogMean: mean.Value, Err: mean.Err, Effective: first * first / second}, nil
@@ -211,7 +316,7 @@ const thinning = 1e-4
 func (e *Posterior) Distribution(of func(*likelihood.Point) float64) (quadrature.Marginal, error) {
 	var p likelihood.Point
 	return e.thinned().Marginal(func(x []float64) float64 {
-		e.Space.Point(x, &p)
+		e.universe(x, &p)
 		return of(&p)
 	})
 }
@@ -245,7 +350,7 @@ func (e *Posterior) Sample(n int) [][]float64 {
 	for i, w := range e.Nodes.Weight {
 		sum += w
 		for float64(len(out))+0.5 < sum*float64(n) {
-			out = append(out, e.Nodes.At(i))
+			out = append(out, e.point(e.Nodes.At(i)))
 		}
 	}
 	return out
