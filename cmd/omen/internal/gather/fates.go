@@ -1,7 +1,6 @@
 package gather
 
 import (
-	"math"
 	"regexp"
 	"slices"
 	"strings"
@@ -83,11 +82,11 @@ func fateRows(series []FateSeries) []string {
 // bar is the probability of a fate in a series, printed as everywhere else.
 func bar(fates []result.Fate, name string) figure.Probability {
 	i := slices.IndexFunc(fates, func(f result.Fate) bool { return f.Name == name })
-	if i < 0 {
-		return figure.Probability{P: math.NaN()}
+	if i < 0 { // it cannot be
+		return figure.Probability{Text: figure.Plain("0")}
 	}
 	f := fates[i]
-	text := figure.Markup(Scientific(strings.TrimSuffix(report.Probability(f), " (95%)"), func(m, e string) string { return m + "10^{" + e + "}" }))
+	text := figure.Markup(Scientific(strings.ReplaceAll(strings.TrimSuffix(report.Probability(f), " (95%)"), " - ", " − "), func(m, e string) string { return m + "10^{" + e + "}" }))
 	p, up := float64(f.Probability), float64(f.Upper95)
 	switch {
 	case p == 0 && up > 0:

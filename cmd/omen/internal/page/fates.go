@@ -103,7 +103,7 @@ func percent(f result.Fate) string {
 
 // probability sets powers of ten.
 func probability(s string) template.HTML {
-	return template.HTML(gather.Scientific(string(text(s)), func(times, exponent string) string {
+	return template.HTML(gather.Scientific(strings.ReplaceAll(string(text(s)), "1 - ", "1 − "), func(times, exponent string) string {
 		return times + "10<sup>" + exponent + "</sup>"
 	}))
 }
