@@ -66,7 +66,12 @@ func TestSessionsAddUp(t *testing.T) {
 	}
 	a, b := result.Build(*whole), result.Build(*last)
 	a.Sampling.Seconds, b.Sampling.Seconds = 0, 0
-	a.Inputs, b.Inputs = nil, nil // whose paths are relative to different folders
+	for _, in := range b.Inputs {
+		if _, err := os.Stat(filepath.Join(dir, in.Path)); err != nil || filepath.IsAbs(in.Path) {
+			t.Errorf("an input's path is not relative to the folder of the run: %s, %v", in.Path, err)
+		}
+	}
+	a.Inputs, b.Inputs = nil, nil // relative to different folders
 	var texts [2]bytes.Buffer
 	if err := errors.Join(report.JSON(&texts[0], a), report.JSON(&texts[1], b)); err != nil {
 		t.Fatal(err)
@@ -174,5 +179,23 @@ func TestProgressOfSessions(t *testing.T) {
 	}
 	if state, err := chainfile.ReadState(dir); err != nil || !strings.Contains(string(state.Progress), `"slowest": "hrd"`) {
 		t.Errorf("%s, %v", state.Progress, err)
+	}
+}
+
+// Enough sees what the parameters do not show: that derived quantities or fates
+// are not known well enough.
+func TestEnough(t *testing.T) {
+	j := load(t, "bao.toml", "sampling.effective-samples=2000", "sampling.engine=chain")
+	done, err := Start(t.Context(), j, filepath.Join(t.TempDir(), "run"), quiet(), io.Discard)
+	if err != nil || done.Outcome.Stop != sampler.Converged {
+		t.Fatal(done, err)
+	}
+	sample := done.Outcome.Check.Sample
+	enough := result.Enough(j, 0)
+	if !enough(sample) {
+		t.Error("a run ended although its sample is not enough")
+	}
+	if few := sample.After(done.Chain.Steps() * 95 / 100); enough(few) {
+		t.Errorf("%d steps of %d are enough", few.Steps(), sample.Steps())
 	}
 }
