@@ -9,11 +9,13 @@ import (
 
 // Marginal returns the distribution of a derived quantity g. Where g is NaN it is undefined, and the
 // distribution is conditional on its being defined. Each node's probability is spread over the values g takes
-// on the tile the node stands for, to first order; the variance that adds is taken out again, so that mean
-// and SD are those of the weighted nodes. Quantiles of a smooth g are good to some 1e-3 of the SD. g is called
-// 2·dim + 1 times per node, also a little outside of the node's class or the box.
+// on the tile the node stands for, to first order, in a way that adds no variance: mean and SD are those of
+// the weighted nodes. Quantiles of a smooth g are as fine as the tiles allow: against Gaussians in one to three
+// dimensions the median and the ends of the 68% interval are good to 0.4% of the SD and those of the 95% interval
+// to 1.5% at the default tolerance, to 0.5% and 1.5% at 1e-4. g is called 2·dim + 1 times per node, also a little
+// outside of the node's class or the box.
 func (n *Nodes) Marginal(g func(x []float64) float64) (Marginal, error) {
-	t, extra := n.tiles(g)
+	t := n.tiles(g)
 	if len(t) == 0 {
 		return Marginal{}, errors.New("the quantity is not defined anywhere in the posterior")
 	}
@@ -33,17 +35,16 @@ func (n *Nodes) Marginal(g func(x []float64) float64) (Marginal, error) {
 	}
 	m.Err = n.Mean(g).Err / m.SD
 	m.tabulate(t)
-	m.shrink(m.SD / math.Sqrt(variance+extra/m.Defined))
 	return m, nil
 }
 
-// tile is the probability w spread over [v-h, v+h] as a triangle: neighbouring tiles overlap by half and add
-// up to a linear interpolation.
+// tile is the probability w spread about v: as a triangle over [v-h, v+h], neighbouring tiles would overlap by half
+// and add up to a linear interpolation. See below for what is taken off.
 type tile struct{ v, h, w float64 }
 
 // tiles evaluates g and its spread over each node's tile: that of a sum of independent variables, taken for a
-// triangle with half the extents added in squares. extra is the variance spreading adds, times the probability.
-func (n *Nodes) tiles(g func(x []float64) float64) (t []tile, extra float64) {
+// triangle with half the extents added in squares.
+func (n *Nodes) tiles(g func(x []float64) float64) (t []tile) {
 	x := make([]float64, n.dim)
 	for k := range n.Len() {
 		copy(x, n.At(k))
@@ -62,9 +63,8 @@ func (n *Nodes) tiles(g func(x []float64) float64) (t []tile, extra float64) {
 			h2 += d * d
 		}
 		t = append(t, tile{v, 2 * math.Sqrt(h2), n.Weight[k]})
-		extra += n.Weight[k] * 4 * h2 / 6
 	}
-	return t, extra
+	return t
 }
 
 // slope is half of up - down, from one side where the other is undefined.
@@ -94,8 +94,8 @@ func (m *Marginal) tabulate(t []tile) {
 	for _, s := range t {
 		s.w /= m.Defined
 		m.CDF[0] += s.w * s.below(lo)
-		first := max(0, int((s.v-s.h-lo)/width))
-		for i := first; i < len(cells) && m.X[i] <= s.v+s.h; i++ {
+		first := max(0, int((s.v-2*s.h-lo)/width))
+		for i := first; i < len(cells) && m.X[i] <= s.v+2*s.h; i++ {
 			cells[i] += s.w * (s.below(m.X[i+1]) - s.below(m.X[i]))
 		}
 	}
@@ -109,7 +109,9 @@ func (m *Marginal) tabulate(t []tile) {
 	}
 }
 
-// below returns the share of the tile below x.
+// below returns the share of the tile below x: 4/3 of a triangle less 1/3 of one twice as wide. A triangle alone adds
+// the variance h²/6, which differs from place to place, and distorts the distribution by more than scaling its
+// width could mend (Richardson's extrapolation in h²; common practice).
 func (s tile) below(x float64) float64 {
 	if s.h == 0 {
 		if x >= s.v {
@@ -117,11 +119,21 @@ func (s tile) below(x float64) float64 {
 		}
 		return 0
 	}
-	u := min(max((x-s.v)/s.h, -1), 1)
-	if u < 0 {
+	u := (x - s.v) / s.h
+	return (4*triangle(u) - triangle(u/2)) / 3
+}
+
+// triangle is the distribution function of a triangle on [-1, 1].
+func triangle(u float64) float64 {
+	switch {
+	case u <= -1:
+		return 0
+	case u < 0:
 		return (1 + u) * (1 + u) / 2
+	case u < 1:
+		return 1 - (1-u)*(1-u)/2
 	}
-	return 1 - (1-u)*(1-u)/2
+	return 1
 }
 
 // tileSpan returns the range of the grid: all but 1e-6 at either end, and not more than 40 times the width of
@@ -149,15 +161,4 @@ func tileSpan(t []tile) (lo, hi float64) {
 		lo, hi = math.Max(lo, mid-20*q), math.Min(hi, mid+20*q)
 	}
 	return lo, hi
-}
-
-// shrink scales the table about the mean. A factor far from 1 is the doing of a tail, not of the tiles.
-func (m *Marginal) shrink(k float64) {
-	if k < 0.95 {
-		return
-	}
-	for i := range m.X {
-		m.X[i] = m.Mean + (m.X[i]-m.Mean)*k
-		m.Density[i] /= k
-	}
 }

@@ -164,6 +164,30 @@ func TestDerived(t *testing.T) {
 	}
 }
 
+// One pass at the tolerance that three parameters are given in practice: the nodes are few.
+func TestDerivedFromFewNodes(t *testing.T) {
+	o := DefaultOptions()
+	o.Tolerance, o.ClassTolerance, o.Passes = 1e-4, 3e-3, 1
+	for dim := 1; dim <= 3; dim++ {
+		g := randomGaussian(rand.New(rand.NewPCG(18, uint64(dim))), dim)
+		lo, hi := g.box()
+		r := integrate(t, Problem{Density: g.density, Lo: lo, Hi: hi}, o)
+		for axis := range dim {
+			a := make([]float64, dim)
+			a[axis] = 1
+			m, err := r.Nodes.Marginal(g.along(a))
+			if err != nil {
+				t.Fatal(err)
+			}
+			l, u := m.Interval(0.95)
+			d95 := math.Max(math.Abs(l+1.959963984540054), math.Abs(u-1.959963984540054))
+			if d := m.Disagreement(0, 1, 0, oneSigma, -1, 1); d > 0.006 || d95 > 0.015 {
+				t.Errorf("%d dim, coordinate %d: off by %.2g standard deviations, 95%% ends by %.2g", dim, axis, d, d95)
+			}
+		}
+	}
+}
+
 func TestDerivedWithinAClass(t *testing.T) {
 	r := integrate(t, Problem{Lo: []float64{-9, -9}, Hi: []float64{9, 9}, Classes: 2,
 		Density: fixed(func(x []float64) float64 { return -(x[0]*x[0] + x[1]*x[1]) / 2 }),
