@@ -134,8 +134,11 @@ func TestNewGoalIsKept(t *testing.T) {
 	}
 	for _, sets := range [][]string{{"sampling.max-steps=40"}, nil} {
 		done, err := Resume(t.Context(), dir, sets, quiet(), io.Discard)
-		if err != nil || done.Chain.Steps() != 40 || done.Outcome.Stop != sampler.StepLimit {
-			t.Errorf("%v: %d steps, %v, %v", sets, done.Chain.Steps(), done.Outcome.Stop, err)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if done.Chain.Steps() != 40 || done.Job.Run.Sampling.MaxSteps != 40 || done.Outcome.Stop != sampler.StepLimit {
+			t.Errorf("%v: %d steps of %d, %v", sets, done.Chain.Steps(), done.Job.Run.Sampling.MaxSteps, done.Outcome.Stop)
 		}
 	}
 	var refused *Refused
