@@ -89,7 +89,7 @@ var hostileFolder = sync.OnceValues(func() (string, string) {
 	return dir, stdout.String()
 })
 
-var reportFiles = []string{"report.html", "constraints.tex", "numbers.tex", "methods.md", "constraints.csv",
+var reportFiles = []string{"report.html", "constraints.tex", "fates.tex", "nested.tex", "numbers.tex", "methods.md", "constraints.csv",
 	"figures/hubble.pdf", "figures/hubble.svg", "figures/plane.pdf", "figures/plane.svg", "figures/marginals.pdf", "figures/marginals.svg",
 	"figures/history.pdf", "figures/history.svg", "figures/fates.pdf", "figures/fates.svg", "figures/convergence.pdf", "figures/convergence.svg"}
 
@@ -118,7 +118,7 @@ func TestReportOfAFolderIsThatOfTheRun(t *testing.T) {
 	if !strings.HasSuffix(said, out) {
 		t.Errorf("report printed %q, fit ended with\n%s", out, said)
 	}
-	for _, want := range []string{"report.html, constraints.tex, numbers.tex, methods.md, constraints.csv", "hubble, plane, marginals, history, fates, convergence (pdf, svg)"} {
+	for _, want := range []string{"report.html, constraints.tex, fates.tex, nested.tex, numbers.tex, methods.md, constraints.csv", "hubble, plane, marginals, history, fates, convergence (pdf, svg)"} {
 		if !strings.Contains(out, want) {
 			t.Errorf("report printed %q, without %q", out, want)
 		}
@@ -186,7 +186,7 @@ func TestReportParts(t *testing.T) {
 		want []string
 	}{
 		{[]string{"--only", "plane", "--format", "png", "--width", "page"}, []string{"figures/plane.png"}},
-		{[]string{"--only", "fates,draft", "--format", "svg"}, []string{"constraints.csv", "constraints.tex", "figures/fates.svg", "methods.md", "numbers.tex"}},
+		{[]string{"--only", "fates,draft", "--format", "svg"}, []string{"constraints.csv", "constraints.tex", "fates.tex", "figures/fates.svg", "methods.md", "nested.tex", "numbers.tex"}},
 		{[]string{"--only", "page"}, []string{"report.html"}},
 	} {
 		dir := filepath.Join(filepath.Dir(from), "parts") // beside it, for its paths
@@ -241,7 +241,7 @@ func TestReportUnfinished(t *testing.T) {
 	from, _ := hostileFolder()
 	dir := filepath.Join(filepath.Dir(from), "short")
 	var stdout bytes.Buffer
-	err := run(context.Background(), []string{"fit", "--quiet", "--no-report", "--max-steps", "120", "-o", dir, filepath.Join(filepath.Dir(from), "run.toml")}, &stdout, &stdout)
+	err := run(context.Background(), append(chainAlone, "--no-report", "--max-steps", "120", "-o", dir, filepath.Join(filepath.Dir(from), "run.toml")), &stdout, &stdout)
 	if status(err) != 3 {
 		t.Fatalf("fit: status %d, %v", status(err), err)
 	}
@@ -305,6 +305,9 @@ func TestReportMistakes(t *testing.T) {
 	}
 }
 
+// chainAlone is a fit that integrates nothing beside its chain.
+var chainAlone = []string{"fit", "--quiet", "--set", "sampling.engine=chain", "--set", "fates.nested=false"}
+
 // With 1590 supernovae the page can still be sent by mail.
 func TestReportSize(t *testing.T) {
 	base := t.TempDir()
@@ -315,7 +318,7 @@ func TestReportSize(t *testing.T) {
 		}
 	}
 	dir := filepath.Join(base, "out")
-	output(t, "fit", "--quiet", "--effective-samples", "4000", "-o", dir, filepath.Join(base, "run.toml"))
+	output(t, append(chainAlone, "--effective-samples", "4000", "-o", dir, filepath.Join(base, "run.toml"))...)
 	info, err := os.Stat(filepath.Join(dir, "report.html"))
 	if err != nil {
 		t.Fatal(err)
@@ -329,12 +332,8 @@ func TestReportSize(t *testing.T) {
 // The figures of a run from end to end: its folder, draws, densities, ink.
 func TestReportFigures(t *testing.T) {
 	dir := filepath.Join(t.TempDir(), "fate")
-	output(t, "fit", "--quiet", "--no-report", "--effective-samples", "1500", "-o", dir, runsFile("fate.toml"))
+	output(t, append(chainAlone, "--no-report", "--effective-samples", "1500", "-o", dir, runsFile("fate.toml"))...)
 	output(t, "report", dir, "--format", "png", "--only", "hubble,plane,marginals,history,fates,convergence")
-	flat := filepath.Join(filepath.Dir(dir), "flat")
-	output(t, "fit", "--quiet", "--no-report", "--effective-samples", "1500", "-o", flat, runsFile("bao.toml"))
-	side := filepath.Join(filepath.Dir(dir), "side")
-	output(t, "compare", dir, flat, "-o", side)
 	for _, name := range []string{"hubble", "plane", "marginals", "history", "fates", "convergence"} {
 		compareToGolden(t, name, filepath.Join(dir, "figures", name+".png"))
 	}
@@ -413,7 +412,7 @@ func TestReportCompiles(t *testing.T) {
 	side := filepath.Join(t.TempDir(), `si_de & <x> %`)
 	output(t, "compare", dir, dir, "-o", side)
 	work := t.TempDir()
-	copyFiles(t, dir, work, "numbers.tex", "constraints.tex")
+	copyFiles(t, dir, work, "numbers.tex", "constraints.tex", "fates.tex", "nested.tex")
 	copyFiles(t, side, work, "comparison.tex")
 	const document = `\documentclass{article}
 \usepackage{booktabs}
@@ -421,6 +420,7 @@ func TestReportCompiles(t *testing.T) {
 \def\omenprefix{other}\input{numbers}
 \begin{document}
 \begin{table}\centering\input{constraints}\caption{One.}\end{table}
+\begin{table}\centering\input{fates}\input{nested}\caption{Between.}\end{table}
 \begin{table}\centering\input{comparison}\caption{Two.}\end{table}
 \omenOm\ and $\Omega_\Lambda = \otherOL$; $P = \omenPRecollapse$; \omenHrdLowNinetyFive; omen \omenVersion.
 \end{document}
