@@ -35,12 +35,17 @@ import (
 // nodes, from the last Chebyshev coefficients of g and of the integrand of the
 // distance (Trefethen 2013, Approximation Theory and Approximation Practice,
 // ch. 4 and 8). It is carried by polynomials of degree n+1 and more; with s the
-// norm of W times the first of them, after the offsets are taken out,
+// norm of W times the first of them, after the offsets are taken out, and the
+// excess |T v + t|² of chi² over what no expansion could better,
 //
-//	|Δchi²| ≤ 2 √chi² s δ + (s δ)².
+//	|Δchi²| ≤ 2 (√excess + c) s δ + (s δ)².
 //
-// Where that is more than tolerance the universe goes to more nodes, and from
-// there to the direct evaluation over all rows.
+// Here c is for the part of the residuals that is noise to every polynomial. It has
+// the norm ρ = √constant, but no reason to be aligned with one in particular: of
+// its N numbers four standard deviations are allowed for, c = 4ρ/√N.
+//
+// Where that is too much the universe goes to more nodes, and from there to the
+// direct evaluation over all rows.
 type level struct {
 	nodes *model.Nodes
 	columns
@@ -49,20 +54,28 @@ type level struct {
 	squares  int            // rows of T
 	constant float64        // of chi²
 	weight   float64        // s
+	noise    float64        // c
 	enough   float64        // the largest error of distances that is not given up at once
 }
 
 const (
-	// tolerance is how much of an error of chi² is let pass, and relative how
-	// much in units of chi² itself, where rounding does no better.
-	tolerance = 1e-6
-	relative  = 1e-12
+	// tolerance is how much of an error of chi² is let pass. Universes whose excess
+	// is beyond remote have a likelihood below e⁻⁵⁰⁰⁰ of the best; with very many
+	// supernovae nearly all are such. Of these it is enough to know how remote.
+	tolerance = 5e-7
+	remote    = 1e4
 	// distanceTolerance bounds the relative error of the distances that other
 	// terms than supernovae are given, and hopeless that from which on the nodes
 	// are not tried for supernovae either.
 	distanceTolerance = 1e-11
-	hopeless          = 1e-8
+	hopeless          = 1e-4
 )
+
+// allowed is the error of chi² that is let pass at an excess.
+func allowed(excess float64) float64 {
+	far := excess / remote
+	return math.Min(tolerance*(1+far*far*far*far), 0.01*(1+excess))
+}
 
 // magnitudes is 5/ln 10: magnitudes per unit of the natural logarithm of distance.
 const magnitudes = 5 / math.Ln10
@@ -87,6 +100,24 @@ func columnsFor(nodes int, tables []*Supernovae) columns {
 		}
 	}
 	return c
+}
+
+// condensed is condense, computed once: a posterior is often followed by others of
+// the same tables, for other families.
+func (s *Supernovae) condensed(nodes *model.Nodes, c columns) []float64 {
+	key := condensedKey{nodes.Z(nodes.Len() - 1), c}
+	s.lock.Lock()
+	defer s.lock.Unlock()
+	if s.triangles[key] == nil {
+		s.triangles[key] = s.condense(nodes, c)
+	}
+	return s.triangles[key]
+}
+
+// condensedKey is what a condensed form depends on beside its table.
+type condensedKey struct {
+	span float64
+	columns
 }
 
 // condense is the triangle over [v, the aliased polynomial] of one table, its
@@ -120,22 +151,39 @@ func (s *Supernovae) condense(nodes *model.Nodes, c columns) []float64 {
 	return t.without(1)
 }
 
-// newLevels condenses tables on few nodes and on twice as many: as few as universes
-// like ours need, and more for those near the no-big-bang line. The data are gone
-// through once, with the many; a polynomial through the few is one through the
-// many, too.
-func newLevels(span float64, further []float64, tables []*Supernovae) []*level {
-	n := model.NodesFor(span)
-	few, many := newLevel(span, n, further, tables), newLevel(span, 2*n, further, tables)
-	if len(tables) > 0 {
-		t := newTriangle(many.one + 2)
-		for _, s := range tables {
-			t.add(s.condense(many.nodes, many.columns))
-		}
-		few.split(many.onto(few, t))
-		many.split(t)
+// manyRows is the number of supernovae from which on the last level is left out.
+// It would take longer to prepare than it saves, as most of the prior is remote.
+const manyRows = 50_000
+
+// newLevels condenses tables on as few nodes as universes like ours need, and on
+// twice and four times as many for those near the no-big-bang line. The data are
+// gone through once, with the most nodes; a polynomial through fewer is one
+// through more.
+func newLevels(span float64, further []float64, tables []*Supernovae) (levels []*level) {
+	n, rows := model.NodesFor(span), 0
+	for _, s := range tables {
+		rows += len(s.z)
 	}
-	return []*level{few, many}
+	factors := []int{1, 2, 4}
+	if rows > manyRows {
+		factors = []int{1, 2}
+	}
+	for _, f := range factors {
+		levels = append(levels, newLevel(span, f*n, further, tables))
+	}
+	if len(tables) == 0 {
+		return levels
+	}
+	most := levels[len(levels)-1]
+	t := newTriangle(most.one + 2)
+	for _, s := range tables {
+		t.add(s.condensed(most.nodes, most.columns))
+	}
+	for _, l := range levels[:len(levels)-1] {
+		l.split(most.onto(l, t), rows)
+	}
+	most.split(t, rows)
+	return levels
 }
 
 func newLevel(span float64, n int, further []float64, tables []*Supernovae) *level {
@@ -183,7 +231,7 @@ func (l *level) onto(few *level, t *triangle) *triangle {
 }
 
 // split takes the triangle over [v, the aliased polynomial] apart.
-func (l *level) split(t *triangle) {
+func (l *level) split(t *triangle, rows int) {
 	l.squares = l.one
 	r := t.rows()
 	at := func(i, j int) float64 { return r[i*t.columns+j] }
@@ -199,7 +247,9 @@ func (l *level) split(t *triangle) {
 	for i, row := range last {
 		copy(l.rule.Data[(l.squares+i)*l.one:], row)
 	}
-	l.constant += at(l.one, l.one) * at(l.one, l.one)
+	rest := at(l.one, l.one)
+	l.constant += rest * rest
+	l.noise = 4 * math.Abs(rest) / math.Sqrt(float64(rows))
 	for i := range t.columns {
 		l.weight = math.Hypot(l.weight, at(i, l.one+1))
 	}
@@ -251,5 +301,5 @@ func (s *levelScratch) chi2(p *Point) (chi2 float64, ok bool) {
 		chi2 += w * w
 	}
 	e := s.weight * (omitted + model.Remainder(s.out[s.squares:]))
-	return chi2 + s.constant, e*(2*math.Sqrt(chi2)+e) <= tolerance+relative*chi2
+	return chi2 + s.constant, e*(2*(math.Sqrt(chi2)+s.noise)+e) <= allowed(chi2)
 }

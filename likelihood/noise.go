@@ -4,6 +4,9 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"runtime"
+	"sync"
+	"sync/atomic"
 
 	"gonum.org/v1/gonum/blas"
 	"gonum.org/v1/gonum/blas/blas64"
@@ -108,8 +111,21 @@ func (c *correlated) reduce(t *triangle, fill func(int, []float64)) {
 	for i := range n {
 		fill(i, a.Data[i*a.Stride:(i+1)*a.Stride])
 	}
-	blas64.Trsm(blas.Left, blas.Trans, 1, c.u, a)
+	c.whitenAll(a)
 	t.stream(n, func(i int, row []float64) { copy(row, a.Data[i*a.Stride:]) })
+}
+
+// whitenAll is whiten for many columns, a share of them in each goroutine: what
+// happens to a column does not depend on the others.
+func (c *correlated) whitenAll(a blas64.General) {
+	const columns = 32
+	var group sync.WaitGroup
+	for from := 0; from < a.Cols; from += columns {
+		part := a
+		part.Data, part.Cols = a.Data[from:], min(columns, a.Cols-from)
+		group.Go(func() { blas64.Trsm(blas.Left, blas.Trans, 1, c.u, part) })
+	}
+	group.Wait()
 }
 
 // systematics is the noise of C = D² + F Fᵀ, where D holds the errors and the k
@@ -243,12 +259,40 @@ func (t *triangle) factorise() {
 	t.used = t.columns
 }
 
-// stream adds n rows.
+// share is the number of rows that a goroutine reduces at a time. It does not
+// depend on the number of processors, nor does the result.
+const share = 1 << 16
+
+// stream adds n rows. Several goroutines call fill if there are many.
 func (t *triangle) stream(n int, fill func(i int, row []float64)) {
+	if n > share {
+		t.parallel(n, fill)
+		return
+	}
 	for i := range n {
 		fill(i, t.next())
 	}
 	t.factorise()
+}
+
+// parallel reduces the rows in equal shares and then what is left of them in order.
+func (t *triangle) parallel(n int, fill func(i int, row []float64)) {
+	parts := make([][]float64, (n+share-1)/share)
+	var next atomic.Int64
+	var group sync.WaitGroup
+	for range min(runtime.GOMAXPROCS(0), len(parts)) {
+		group.Go(func() {
+			for p := int(next.Add(1)) - 1; p < len(parts); p = int(next.Add(1)) - 1 {
+				part := newTriangle(t.columns)
+				part.stream(min(share, n-p*share), func(i int, row []float64) { fill(p*share+i, row) })
+				parts[p] = part.rows()
+			}
+		})
+	}
+	group.Wait()
+	for _, rows := range parts {
+		t.add(rows)
+	}
 }
 
 // add adds rows given one after another.

@@ -3,6 +3,7 @@ package likelihood
 import (
 	"fmt"
 	"math"
+	"sync"
 
 	"omen/data"
 
@@ -57,6 +58,9 @@ type Supernovae struct {
 	ones     []float64 // L⁻¹1
 	weight   float64   // 1ᵀC⁻¹1 + 1/s²
 	standing Standing
+
+	lock      sync.Mutex
+	triangles map[condensedKey][]float64 // see condensed
 }
 
 var (
@@ -74,7 +78,7 @@ func NewSupernovae(sn *data.Supernovae, noise Noise, offset Offset, standing Sta
 	if offset.Kind == NormalOffset && !(offset.SD > 0) {
 		return nil, fmt.Errorf("the normal prior on the offset needs a positive width, found %g", offset.SD)
 	}
-	s := &Supernovae{z: sn.Z, measured: sn.Value, noise: noise, offset: offset,
+	s := &Supernovae{z: sn.Z, measured: sn.Value, noise: noise, offset: offset, triangles: map[condensedKey][]float64{},
 		modulus: sn.Absolute, standing: standing, target: make([]float64, n), ones: make([]float64, noise.width())}
 	zHel := sn.ZHel
 	if zHel == nil {

@@ -190,7 +190,7 @@ func (p *Nodes) Z(k int) float64 { return p.z[k] }
 // Interpolation fills row, of length n, with the weights of the values at the points in the value at z, for a
 // function that is 0 today. z must not be above the span.
 func (p *Nodes) Interpolation(z float64, row []float64) {
-	var room [64]float64
+	var room [128]float64
 	all := room[:]
 	if p.n >= len(room) {
 		all = make([]float64, p.n+1)
