@@ -2,6 +2,7 @@ package likelihood
 
 import (
 	"math"
+	"slices"
 
 	"omen/model"
 
@@ -56,6 +57,7 @@ type level struct {
 	weight   float64        // s
 	noise    float64        // c
 	enough   float64        // the largest error of distances that is not given up at once
+	toEnd    bool           // supernovae are seen up to the last node
 }
 
 const (
@@ -200,6 +202,7 @@ func newLevel(span float64, n int, further []float64, tables []*Supernovae) *lev
 	}
 	for _, s := range tables {
 		l.constant += s.standing.Chi2
+		l.toEnd = l.toEnd || slices.Max(s.z) == span
 	}
 	return l
 }
@@ -288,6 +291,9 @@ func (s *levelScratch) chi2(p *Point) (chi2 float64, ok bool) {
 	}
 	if s.one == 0 {
 		return 0, true
+	}
+	if s.toEnd && s.sight.Past {
+		return math.NaN(), true
 	}
 	if s.zero >= 0 {
 		s.v[s.zero] = zeroPoint(p.Universe.H0)

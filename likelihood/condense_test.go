@@ -80,7 +80,7 @@ func TestCondensedAgainstDirect(t *testing.T) {
 			if worst > 1e-6 {
 				t.Errorf("%s: chi² differs by %.2g", name, worst)
 			}
-			if n := p.DirectEvaluations(); n > c.n/5 {
+			if n := p.DirectEvaluations(); n > c.n/10 {
 				t.Errorf("%s: %d of %d evaluations were direct", name, n, c.n)
 			}
 		}

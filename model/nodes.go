@@ -225,6 +225,10 @@ type Sight struct {
 	Shape  []float64 // ln(DM/z) at the points, DM in units of c/H0
 	DM, DH []float64 // at the further redshifts, in units of c/H0
 
+	// Past is true if the span is certain to lie past the antipode of a closed
+	// universe: it has no distance. It is known where Shape is asked for.
+	Past bool
+
 	h, out []float64
 }
 
@@ -268,14 +272,17 @@ func (p *Nodes) Fill(u Universe, s *Sight) (omitted float64) {
 	}
 	copy(s.out, p.start)
 	blas64.Gemv(blas.NoTrans, 1, p.rule, blas64.Vector{N: n, Data: h, Inc: 1}, 1, blas64.Vector{N: len(s.out), Data: s.out, Inc: 1})
+	omitted = Remainder(s.out[len(p.z):]) / float64(n)
 	if s.Shape != nil {
 		p.shape(e.ok, s)
+		chi := p.z[n-1] * s.out[n-1]
+		s.Past = e.ok*chi*chi < -math.Pi*math.Pi*(1+4*omitted)
 	}
 	for i, chi := range s.out[n:len(p.z)] {
 		s.DM[i] = transverse(e.ok, chi)
 		s.DH[i] = 1 / math.Sqrt(e.squared(p.x[n+i], p.y[n+i], p.a[n+i]))
 	}
-	return Remainder(s.out[len(p.z):]) / float64(n)
+	return omitted
 }
 
 // shape fills in ln(DM/z).
