@@ -27,6 +27,7 @@ type Chain struct {
 	bound        int // numbers kept at most
 
 	x, logp [][]float64 // by ensemble: kept steps × walkers (× dim)
+	mean    [][]float64 // by ensemble: kept steps × dim, over its walkers
 	kept    int         // steps in the record
 
 	last         int         // the last complete step offered
@@ -64,6 +65,7 @@ func NewChain(dim int, start [][]float64, every, record int) (*Chain, error) {
 		spacing: every,
 		x:       make([][]float64, len(start)),
 		logp:    make([][]float64, len(start)),
+		mean:    make([][]float64, len(start)),
 		lastX:   cloneAll(start),
 	}
 	// Two records at least, or there would be nothing to halve.
@@ -155,6 +157,11 @@ func (c *Chain) keep(x, logp [][]float64) {
 	for m := range x {
 		c.x[m] = append(c.x[m], x[m]...)
 		c.logp[m] = append(c.logp[m], logp[m]...)
+		c.mean[m] = append(c.mean[m], make([]float64, c.dim)...)
+		mean := c.mean[m][c.kept*c.dim:]
+		for k, v := range x[m] {
+			mean[k%c.dim] += v / float64(c.walkers)
+		}
 	}
 	c.kept++
 	if (c.kept+1)*c.numbersPerStep() > c.bound {
@@ -169,6 +176,7 @@ func (c *Chain) halve() {
 	for m := range c.x {
 		c.x[m] = everySecond(c.x[m], c.walkers*c.dim)
 		c.logp[m] = everySecond(c.logp[m], c.walkers)
+		c.mean[m] = everySecond(c.mean[m], c.dim)
 	}
 	c.kept /= 2
 }
@@ -181,6 +189,25 @@ func everySecond(x []float64, row int) []float64 {
 		half = append(half, x[i:i+row]...)
 	}
 	return half
+}
+
+// means returns the mean of parameter i over the walkers of each ensemble, less
+// the mean of all, at every stride-th kept step from the given one on.
+func (c *Chain) means(i, from, stride int) [][]float64 {
+	series := make([][]float64, len(c.mean))
+	grand := 0.0
+	for m := range series {
+		for k := from; k < c.kept; k += stride {
+			series[m] = append(series[m], c.mean[m][k*c.dim+i])
+		}
+		grand += meanOf(series[m]) / float64(len(series))
+	}
+	for _, s := range series {
+		for t := range s {
+			s[t] -= grand
+		}
+	}
+	return series
 }
 
 func (c *Chain) numbersPerStep() int {

@@ -29,20 +29,24 @@ func (m moments) ess() float64 { return m.variance / (m.mcse * m.mcse) }
 // error of a ratio of two means (delta method, common practice), which is the
 // same thing for weights of one.
 func measure(d Draws) moments {
-	var m moments
-	var weight float64
-	m.mean, m.variance, weight = meanVariance(d)
-	series := influence(d, m.mean, weight)
+	mean, variance, weight := meanVariance(d)
+	m := moments{mean: mean, variance: variance}
+	m.judge(influence(d, mean, weight), d.spacing)
+	return m
+}
+
+// judge sets what the series of ensemble means, taken about the mean of all and
+// some steps of the run apart, say about the error; NaN if nothing.
+func (m *moments) judge(series [][]float64, spacing int) {
 	covariance := autocovariance(series)
 	if !(m.variance > 0) || math.IsInf(m.variance, 1) || covariance == nil {
 		m.mcse, m.tau = math.NaN(), math.NaN()
-		return m
+		return
 	}
 	tau := window(covariance)
-	m.tau = tau * float64(d.spacing)
-	squared := covariance[0] * tau / float64(len(series)*d.steps())
+	m.tau = tau * float64(spacing)
+	squared := covariance[0] * tau / float64(len(series)*len(series[0]))
 	m.mcse = math.Sqrt(guard(squared, series))
-	return m
 }
 
 // meanVariance returns the weighted mean and variance of draws, and the mean
