@@ -51,7 +51,7 @@ func Options(dim, threads int) quadrature.Options {
 	o.Workers = threads
 	if dim == 3 {
 		o.Tolerance, o.ClassTolerance, o.Passes = 1e-4, 3e-3, 1
-		o.MaxEvaluations = 2_000_000
+		o.MaxEvaluations = 1_000_000
 	}
 	return o
 }

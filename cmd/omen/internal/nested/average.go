@@ -84,9 +84,12 @@ func (c *Comparison) Possible(holds func(outlook.Label) bool) bool {
 	})
 }
 
-// Exact tells whether every model was integrated, so that no probability is a count.
+// Exact tells whether the model was integrated, so that no probability is a count.
+func (f *Fitted) Exact() bool { return f.Method != bridged }
+
+// Exact tells whether every model was.
 func (c *Comparison) Exact() bool {
-	return !slices.ContainsFunc(c.Models, func(m Fitted) bool { return m.Method == bridged })
+	return !slices.ContainsFunc(c.Models, func(m Fitted) bool { return !m.Exact() })
 }
 
 func or(x, otherwise float64) float64 {

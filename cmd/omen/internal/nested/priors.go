@@ -18,12 +18,19 @@ type Alternative struct {
 	replaced func(likelihood.Family) (name string, jacobian func(*likelihood.Point) float64)
 }
 
-// Alternatives lists the priors that a result is held against.
-func Alternatives() []Alternative {
-	return []Alternative{
+// Alternatives lists the priors that a result in a family is held against: those whose coordinates are
+// free in it.
+func Alternatives(own likelihood.Family) []Alternative {
+	var out []Alternative
+	for _, a := range []Alternative{
 		{Words: "flat in (Om, Ok)", replaced: curvature},
 		{Words: "flat in (Om, q0)", replaced: deceleration},
+	} {
+		if name, _ := a.replaced(own); name != "" && name != "Om" {
+			out = append(out, a)
+		}
 	}
+	return out
 }
 
 // curvature takes the place of OL: Ok = 1 - Om - OL - Or, |∂Ok/∂OL| = 1.

@@ -19,7 +19,7 @@ func (s *Summary) nested(r Run) {
 	}
 	f := r.Job.Space.Family()
 	s.Averaged = averaged(c, f)
-	for _, a := range nested.Alternatives() {
+	for _, a := range nested.Alternatives(f) {
 		s.Priors = append(s.Priors, priorOf(c, a, f))
 	}
 }
@@ -80,6 +80,11 @@ func priorOf(c *nested.Comparison, a nested.Alternative, f likelihood.Family) Pr
 	p.Effective, p.Averaged = Number(least), averaged(under, f)
 	if own := under.Own(); own >= 0 {
 		p.Fates, p.Held, p.Today = tables(under.Models[own].Belief, f)
+		for _, list := range [][]Fate{p.Fates, p.Held, p.Today} {
+			for i := range list {
+				list[i].Exact = under.Models[own].Exact()
+			}
+		}
 	}
 	return p
 }
