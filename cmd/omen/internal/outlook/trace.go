@@ -2,8 +2,11 @@ package outlook
 
 import (
 	"math"
+	"runtime"
 	"slices"
 	"sort"
+	"sync"
+	"sync/atomic"
 
 	"omen/model"
 )
@@ -38,10 +41,17 @@ func Traces(best model.Universe, sample []model.Universe, gyr bool, ahead float6
 	t := &Trace{Gyr: gyr, Time: times(best, sample, gyr, ahead)}
 	t.Best = follow(best, t.Time, gyr)
 	curves := make([][]float64, len(sample))
-	for i, u := range sample {
-		curves[i] = follow(u, t.Time, gyr)
-		complete(u, curves[i], t.Time, gyr)
+	var next atomic.Int64
+	var group sync.WaitGroup
+	for range runtime.GOMAXPROCS(0) {
+		group.Go(func() {
+			for i := int(next.Add(1)) - 1; i < len(sample); i = int(next.Add(1)) - 1 {
+				curves[i] = follow(sample[i], t.Time, gyr)
+				complete(sample[i], curves[i], t.Time, gyr)
+			}
+		})
 	}
+	group.Wait()
 	t.bands(curves)
 	return t
 }
