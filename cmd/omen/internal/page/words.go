@@ -28,7 +28,7 @@ func symbol(name string) template.HTML {
 }
 
 // text is a plain text as the page shows it: escaped, with a minus that is one,
-// and without a break around ±.
+// and without a break around ± and signs of order.
 func text(s string) template.HTML {
 	r := []rune(s)
 	for i, c := range r {
@@ -36,9 +36,12 @@ func text(s string) template.HTML {
 			r[i] = '−'
 		}
 	}
-	s = strings.ReplaceAll(string(r), " ± ", "\u00a0±\u00a0")
+	s = unbroken.Replace(string(r))
 	return template.HTML(template.HTMLEscapeString(s))
 }
+
+// unbroken keeps a number with its error or bound on one line.
+var unbroken = strings.NewReplacer(" ± ", "\u00a0±\u00a0", " < ", "\u00a0<\u00a0", " > ", "\u00a0>\u00a0")
 
 func sentence(s string) string {
 	if s == "" {
