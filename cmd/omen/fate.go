@@ -8,6 +8,7 @@ import (
 	"strconv"
 	"strings"
 
+	"omen/cmd/omen/internal/outlook"
 	"omen/model"
 
 	"github.com/spf13/pflag"
@@ -196,7 +197,7 @@ func destiny(u model.Universe, zs []float64) *destinyReport {
 		Onset:  number(u.AccelerationOnset()),
 		Crunch: number(u.Crunch()), Rip: number(u.Rip()), Distances: []destinyAtZ{}}
 	if u.Wa != 0 {
-		r.FateHeldW = u.Frozen().Fate().String()
+		r.FateHeldW = outlook.LabelOf(u).Held.String()
 	}
 	if a, t := u.Turnaround(); !math.IsNaN(a) {
 		r.Turnaround = &turnaround{a, t}

@@ -2,6 +2,7 @@ package exact
 
 import (
 	"context"
+	"errors"
 	"math"
 	"os"
 	"path/filepath"
@@ -10,8 +11,11 @@ import (
 	"omen/cmd/omen/internal/job"
 	"omen/cmd/omen/internal/outlook"
 	"omen/cmd/omen/internal/runfile"
+	"omen/data"
 	"omen/likelihood"
 	"omen/model"
+
+	"gonum.org/v1/gonum/integrate/quad"
 )
 
 // load reads a committed run with settings on top.
@@ -106,6 +110,131 @@ func TestFateRunAgainstGrid(t *testing.T) {
 	if d := math.Abs(got.P - want); !(d < 1e-4) {
 		t.Errorf("P(closed) %.6f, grid %.6f", got.P, want)
 	}
-	_ = model.C
-	_ = likelihood.Names
+}
+
+// survey is a posterior of Om and OL from 60 distance moduli of this error between z =
+// 0.05 and 1.5, as a flat universe with Om = 0.3 has them.
+func survey(t *testing.T, err float64) *likelihood.Posterior {
+	t.Helper()
+	u := model.Universe{Om: 0.3, OL: 0.7, W0: -1, H0: 70}
+	sn := &data.Supernovae{}
+	for i := range 60 {
+		z := 0.05 + 1.45*float64(i)/59
+		sn.Z, sn.Value, sn.Err = append(sn.Z, z), append(sn.Value, u.DistanceModulus(z, z)), append(sn.Err, err)
+	}
+	term, e := likelihood.NewSupernovae(sn, nil, likelihood.Offset{}, likelihood.Standing{})
+	if e != nil {
+		t.Fatal(e)
+	}
+	om, e1 := likelihood.Flat(0, 2)
+	ol, e2 := likelihood.Flat(-1, 2)
+	if e := errors.Join(e1, e2); e != nil {
+		t.Fatal(e)
+	}
+	space, e := likelihood.NewSpace(likelihood.Family{RequireBigBang: true, Free: []likelihood.Parameter{{Name: "Om", Prior: om}, {Name: "OL", Prior: ol}}})
+	if e != nil {
+		t.Fatal(e)
+	}
+	p, e := likelihood.NewPosterior(space, term)
+	if e != nil {
+		t.Fatal(e)
+	}
+	return p
+}
+
+// gauss integrates f from a to b by Gauss and Legendre's rule on panels.
+func gauss(f func(x float64) float64, a, b float64, panels int) float64 {
+	sum := 0.0
+	for i := range panels {
+		lo := a + (b-a)*float64(i)/float64(panels)
+		sum += quad.Fixed(f, lo, lo+(b-a)/float64(panels), 20, quad.Legendre{}, 0)
+	}
+	return sum
+}
+
+// recollapseBelow is the line of Carroll, Press & Turner 1992 under which a universe of
+// matter and a constant recollapses.
+func recollapseBelow(om float64) float64 {
+	if om <= 1 {
+		return 0
+	}
+	return 4 * om * math.Pow(math.Cos(math.Acos((1-om)/om)/3+4*math.Pi/3), 3)
+}
+
+// Errors of the distances that make a recollapse a chance of 1 in 10⁸: it is known to 1%,
+// and so are rarer and commoner ones.
+func TestRareFate(t *testing.T) {
+	recollapse := func(l outlook.Label) bool { return l.Fate == model.Recollapse }
+	for _, c := range []struct{ err, order float64 }{{0.0488, 1e-8}, {0.085, 1e-3}, {0.045, 6e-10}} {
+		p := survey(t, c.err)
+		e, err := Integrate(context.Background(), p, nil, 0)
+		if err != nil {
+			t.Fatal(err)
+		}
+		density := p.Evaluator().LogDensity
+		at := func(om float64) func(ol float64) float64 {
+			return func(ol float64) float64 { return math.Exp(density([]float64{om, ol}) - e.LogBest) }
+		}
+		all := gauss(func(om float64) float64 { return gauss(at(om), -1, 1.7, 20) }, 0, 2, 20)
+		below := gauss(func(om float64) float64 { return gauss(at(om), -1, recollapseBelow(om), 12) }, 0, 1, 12) +
+			gauss(func(om float64) float64 { return gauss(at(om), -1, recollapseBelow(om), 12) }, 1, 2, 6)
+		want, got := below/all, e.Probability(recollapse)
+		t.Logf("errors of %g mag: P(recollapse) = %.4g ± %.1g, by Gauss and Legendre %.4g", c.err, got.P, got.Err, want)
+		if !(math.Abs(got.P/want-1) < 0.01) || !(got.P > c.order/4 && got.P < 4*c.order) {
+			t.Errorf("errors of %g mag: P(recollapse) = %.4g ± %.1g, want %.4g", c.err, got.P, got.Err, want)
+		}
+	}
+}
+
+// The curvature of the frame is that of the Gaussian, its box holds all of it.
+func TestFrame(t *testing.T) {
+	mean := []float64{1, -2, 3}
+	density := func(x []float64) float64 {
+		a, b, c := x[0]-mean[0], x[1]-mean[1], x[2]-mean[2]
+		return -0.5 * (a*a + math.Pow((b-2*a)/0.1, 2) + math.Pow((c+b)/0.02, 2))
+	}
+	f := newFrame(density, mean, []float64{-20, -60, -60}, []float64{20, 60, 60})
+	if f == nil {
+		t.Fatal("no frame")
+	}
+	for i, want := range []float64{1, math.Hypot(2, 0.1), math.Sqrt(4 + 0.01 + 0.0004)} {
+		if got := f.sd(i); math.Abs(got/want-1) > 1e-6 {
+			t.Errorf("sd %d is %v, want %v", i, got, want)
+		}
+		if !(f.extent[i] >= reach && f.extent[i] < 1.1*reach) {
+			t.Errorf("the box of a Gaussian reaches to %v", f.extent[i])
+		}
+	}
+	if got, want := f.logVolume(), math.Log(0.1*0.02); math.Abs(got-want) > 1e-6 {
+		t.Errorf("ln |L| = %v, want %v", got, want)
+	}
+	if newFrame(density, mean, []float64{-2, -60, -60}, []float64{20, 60, 60}) != nil {
+		t.Error("a frame though the prior cuts the posterior")
+	}
+}
+
+// Points of equal weight have the moments of the posterior, and a reweighting with the
+// ratio one changes nothing.
+func TestSampleAndReweight(t *testing.T) {
+	for _, name := range []string{"supernovae.toml", "fate.toml"} {
+		e := integrate(t, load(t, name))
+		var mean, square float64
+		points := e.Sample(4000)
+		for _, x := range points {
+			mean += x[0] / float64(len(points))
+			square += x[0] * x[0] / float64(len(points))
+		}
+		sd := math.Sqrt(square - mean*mean)
+		if len(points) != 4000 || math.Abs(mean-e.Marginals[0].Mean) > 0.01*sd || math.Abs(sd/e.Marginals[0].SD-1) > 0.01 {
+			t.Errorf("%s: %d points, Om %.5f ± %.5f, want %.5f ± %.5f", name, len(points), mean, sd, e.Marginals[0].Mean, e.Marginals[0].SD)
+		}
+		r, err := e.Reweighted(func([]float64) float64 { return 2 })
+		if err != nil {
+			t.Fatal(err)
+		}
+		a, b := e.Probability(closed), r.Probability(closed)
+		if math.Abs(a.P-b.P) > 1e-4 || math.Abs(r.LogMean-math.Ln2) > 1e-9 || math.Abs(r.Effective-1) > 1e-9 {
+			t.Errorf("%s: P(closed) %.6f became %.6f; ln mean %v, effective %v", name, a.P, b.P, r.LogMean, r.Effective)
+		}
+	}
 }

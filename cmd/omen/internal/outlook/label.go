@@ -5,7 +5,7 @@ import "omen/model"
 // Label is what is said of a universe in words.
 type Label struct {
 	Fate         model.Fate
-	Held         model.Fate // with the equation of state held at today's value
+	Held         model.Fate // with the equation of state held at today's value from now on
 	Curvature    int8       // the sign of Ok: -1 closed, 0 flat, +1 open
 	Accelerating bool       // today
 }
@@ -14,8 +14,8 @@ type Label struct {
 func LabelOf(u model.Universe) Label {
 	l := Label{Fate: u.Fate(), Accelerating: u.Q0() < 0}
 	l.Held = l.Fate
-	if u.Wa != 0 {
-		l.Held = u.Frozen().Fate()
+	if u.Wa != 0 && l.Fate != model.NoBigBang {
+		l.Held = u.Frozen().Future()
 	}
 	switch ok := u.Ok(); {
 	case ok < 0:
