@@ -129,18 +129,28 @@ func TestAlone(t *testing.T) {
 // The bands of many draws of a known distribution have its quantiles.
 func TestBand(t *testing.T) {
 	rng := rand.New(rand.NewPCG(1, 2))
-	b := band{x: []float64{1, 2}}
-	for range 20000 {
-		b.curves = append(b.curves, []float64{rng.NormFloat64(), math.NaN()})
+	b := band{x: []float64{1, 2, 3}}
+	for i := range 20000 {
+		c := []float64{rng.NormFloat64(), rng.NormFloat64(), rng.NormFloat64()}
+		if i%5 == 0 { // a fifth of the universes ends before 2
+			c[1] = math.NaN()
+		}
+		if i%20 == 0 { // a twentieth before 3
+			c[2] = math.NaN()
+		}
+		b.curves = append(b.curves, c)
 	}
-	f := b.figure([]float64{0, 0})
+	f := b.figure([]float64{0, 0, 0})
 	for _, c := range [][2]float64{{f.Lo95[0], -1.96}, {f.Lo68[0], -0.9945}, {f.Hi68[0], 0.9945}, {f.Hi95[0], 1.96}} {
 		if math.Abs(c[0]-c[1]) > 0.05 {
 			t.Errorf("quantile %.3f, expected %.3f", c[0], c[1])
 		}
 	}
 	if !math.IsNaN(f.Lo68[1]) {
-		t.Errorf("a band where nothing exists: %g", f.Lo68[1])
+		t.Errorf("a band where too little exists: %g", f.Lo68[1])
+	}
+	if math.Abs(f.Lo68[2]+0.9945) > 0.05 {
+		t.Errorf("a band where nearly all exists: %g", f.Lo68[2])
 	}
 }
 

@@ -43,13 +43,6 @@ func text(s string) template.HTML {
 // unbroken keeps a number with its error or bound on one line.
 var unbroken = strings.NewReplacer(" ± ", "\u00a0±\u00a0", " < ", "\u00a0<\u00a0", " > ", "\u00a0>\u00a0")
 
-func sentence(s string) string {
-	if s == "" {
-		return s
-	}
-	return strings.ToUpper(s[:1]) + s[1:]
-}
-
 // words is the result in a few sentences.
 func words(r *gather.Run) []template.HTML {
 	s := r.Summary
