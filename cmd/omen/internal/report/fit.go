@@ -48,6 +48,9 @@ func engine(b *strings.Builder, s *result.Summary) {
 		fmt.Fprintf(b, "Chain: %d ensembles of %d walkers, %d steps, the first %d burn-in\n", m.Ensembles, m.Walkers, m.Steps, m.BurnIn)
 		fmt.Fprintf(b, "  effective samples %.0f at least (goal %d), R-hat %.4f at most\n", math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat))
 		fmt.Fprintf(b, "  acceptance %.2f, %d evaluations in %.1f s, seed %d\n", float64(m.Acceptance), m.Evaluations, m.Seconds, m.Seed)
+		if m.DirectShare > 0 {
+			fmt.Fprintf(b, "  %.2g of the sample needed all rows of its tables for chi²\n", float64(m.DirectShare))
+		}
 	}
 	e := s.Engine
 	if e.Name == "both" || e.Name == "quadrature" {

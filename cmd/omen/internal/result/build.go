@@ -76,6 +76,7 @@ func (s *Summary) fromChain(r Run, view sampler.View) *outlook.Drawn {
 	drawn := d.belief(check.ESS())
 	s.Fates, s.FatesHeldW, s.Today = tables(drawn, d.family)
 	s.Sampling = sampling(r, view)
+	s.Sampling.DirectShare = directShare(r.Job.Posterior, d.view, r.Threads)
 	return drawn
 }
 
@@ -137,6 +138,19 @@ func fit(r Run) Fit {
 		f.Probability = Number(distuv.ChiSquared{K: float64(f.DoF)}.Survival(sum))
 	}
 	return f
+}
+
+// directShare is the fraction of a view for which the condensed form of the
+// supernovae was not good enough. It is found from the view and not counted along
+// the way, so that it does not depend on interruptions.
+func directShare(p *likelihood.Posterior, view sampler.View, threads int) Number {
+	before := p.DirectEvaluations()
+	view.MapAll(1, threads, func() func(x, y []float64) {
+		e := p.Evaluator()
+		return func(x, y []float64) { y[0] = e.LogDensity(x) }
+	})
+	draws := view.Steps() * view.Ensembles() * view.Walkers()
+	return Number(float64(p.DirectEvaluations()-before) / float64(max(draws, 1)))
 }
 
 func sampling(r Run, view sampler.View) Sampling {

@@ -201,6 +201,10 @@ type Sampling struct {
 	MinESS      Number  `json:"min_ess"`
 	MaxRHat     Number  `json:"max_rhat"`
 	Goal        int     `json:"goal"`
+
+	// DirectShare is the fraction of the sample whose chi-squared was computed from
+	// all rows, as the condensed form was not good enough. Left out if it is zero.
+	DirectShare Number `json:"direct_share,omitempty"`
 }
 
 // InputFile is a file that the result depends on.
