@@ -1,6 +1,7 @@
 package data
 
 import (
+	"encoding/binary"
 	"math"
 	"strconv"
 	"strings"
@@ -67,6 +68,80 @@ func decimal[T string | []byte](s T) (mantissa uint64, exponent int, negative, s
 		exponent += e
 	}
 	return mantissa, exponent, negative, exponent >= -22 && exponent <= 22
+}
+
+// plain reads the number that b begins with, in one pass over its bytes and eight digits at a time, if it is written
+// in the way that nearly all numbers of a matrix are: at most fifteen digits or so and a small exponent or none. ok is
+// false for all others, right or wrong. b must be longer than the number.
+func plain(b []byte) (v float64, end int, ok bool) {
+	i, negative := 0, b[0] == '-'
+	if negative {
+		i++
+	}
+	mantissa, from := digits(b, i, 0)
+	count, exponent := from-i, 0
+	if from < len(b) && b[from] == '.' {
+		var to int
+		mantissa, to = digits(b, from+1, mantissa)
+		exponent = from + 1 - to
+		count -= exponent
+		from = to
+	}
+	// 19 digits cannot overflow a uint64.
+	if count == 0 || count > 19 || mantissa > 1<<53 || from == len(b) {
+		return 0, 0, false
+	}
+	if kinds[b[from]] == inNumber {
+		to := min(from+5, len(b))
+		for j := from; j < to; j++ {
+			if kinds[b[j]] != inNumber {
+				to = j
+			}
+		}
+		e, ok := power(b[from:to])
+		if !ok {
+			return 0, 0, false
+		}
+		exponent += e
+		from = to
+	}
+	if exponent < -22 || exponent > 22 || from == len(b) {
+		return 0, 0, false
+	}
+	v = float64(mantissa)
+	if exponent < 0 {
+		v /= exact[-exponent]
+	} else {
+		v *= exact[exponent]
+	}
+	if negative {
+		v = -v
+	}
+	return v, from, true
+}
+
+// digits appends the decimal digits of b from i on to a number and returns where they end. Eight at a time are added
+// up in pairs, fours and eights within one word (from memory; common practice).
+func digits(b []byte, i int, number uint64) (uint64, int) {
+	for i+8 <= len(b) {
+		w := binary.LittleEndian.Uint64(b[i:])
+		if (w&0xf0f0f0f0f0f0f0f0)|((w+0x0606060606060606)&0xf0f0f0f0f0f0f0f0)>>4 != 0x3333333333333333 {
+			break
+		}
+		w -= 0x3030303030303030
+		w = w*10 + w>>8
+		w = ((w&0x000000ff000000ff)*(100+1000000<<32) + (w>>16&0x000000ff000000ff)*(1+10000<<32)) >> 32
+		number = number*1e8 + w
+		i += 8
+	}
+	for ; i < len(b); i++ {
+		c := uint64(b[i] - '0')
+		if c > 9 {
+			break
+		}
+		number = number*10 + c
+	}
+	return number, i
 }
 
 // power reads an exponent of one to three digits, such as e-05.

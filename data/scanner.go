@@ -37,6 +37,12 @@ func (s *scanner) next() (token, error) {
 	if err := s.skip(); err != nil {
 		return token{}, err
 	}
+	if len(s.buf) > longestNumber { // it cannot go on in what has not been read
+		if v, end, ok := plain(s.buf); ok && kinds[s.buf[end]] != inNumber {
+			s.buf = s.buf[end:]
+			return token{v, s.line}, nil
+		}
+	}
 	end := s.tokenEnd()
 	for end == len(s.buf) && !s.ended && end <= longestNumber {
 		if err := s.fill(); err != nil {
