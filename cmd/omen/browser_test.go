@@ -150,7 +150,7 @@ func TestReportInBrowser(t *testing.T) {
 		t.Fatalf("measured %q: %v", m[1], err)
 	}
 	for i, p := range pages {
-		if p.Width > 360 || p.Beyond != nil && len(p.Beyond) > 0 {
+		if p.Width > 360 || len(p.Beyond) > 0 {
 			t.Errorf("page %d is %d wide at 360 pixels; beyond the edge: %v", i, p.Width, p.Beyond)
 		}
 		if p.Scripts != 0 || p.Images != 0 || p.Figures == 0 {
