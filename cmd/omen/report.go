@@ -37,7 +37,7 @@ goal, or is still under way, can be reported too; every figure then says so.
 In the folder of the run:
   report.html       the whole result as one page to share: no network, no script
   figures/          hubble, plane, marginals, history, fates, convergence
-  constraints.tex   a table for \input, with the rules of booktabs; fates.tex and
+  constraints.tex   a table for \input, with booktabs' rules; fates.tex and
                     nested.tex likewise
   numbers.tex       one macro for every number
   methods.md        two paragraphs on data, priors, likelihood, chain, to adapt
