@@ -71,10 +71,22 @@ func BenchmarkTables(b *testing.B) {
 	})
 }
 
-func BenchmarkCondense1590(b *testing.B) {
-	sn := surveyTerm(b, 1, 1590, Offset{})
+// BenchmarkCondense goes through a table once: a full covariance that has been
+// factorised, and twenty templates of a million supernovae.
+func BenchmarkCondense(b *testing.B) {
 	f := curvedFamily(b)
-	for b.Loop() {
-		posterior(b, f, sn)
-	}
+	b.Run("covariance/1590", func(b *testing.B) {
+		table, templates := survey(1, 1590, 20)
+		noise := correlate(b, written(table.Err, templates))
+		for b.Loop() {
+			posterior(b, f, must[*Supernovae](b)(NewSupernovae(table, noise, Offset{}, Standing{})))
+		}
+	})
+	b.Run("templates/1000000", func(b *testing.B) {
+		table, templates := survey(1, 1_000_000, 20)
+		noise := must[Noise](b)(Systematics(table.Err, templates, 20))
+		for b.Loop() {
+			posterior(b, f, must[*Supernovae](b)(NewSupernovae(table, noise, Offset{}, Standing{})))
+		}
+	})
 }
