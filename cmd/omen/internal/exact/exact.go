@@ -9,6 +9,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"sync"
 	"time"
 
 	"omen/cmd/omen/internal/outlook"
@@ -37,6 +38,9 @@ type Posterior struct {
 	labels  []outlook.Label       // by class
 	classes []quadrature.Estimate // their probabilities
 	rare    []rareNodes           // what belongs to no class
+
+	once sync.Once
+	thin *quadrature.Nodes // without the lightest
 }
 
 type rareNodes struct {
@@ -146,7 +150,7 @@ func (e *Posterior) take(r *quadrature.Result) {
 	e.Best = e.point(r.Mode)
 	e.Marginals = nil
 	for i := range e.Best {
-		m, err := e.Nodes.Marginal(func(u []float64) float64 {
+		m, err := e.thinned().Marginal(func(u []float64) float64 {
 			x := e.frame.centre[i]
 			for k := range i + 1 {
 				x += e.frame.l.At(i, k) * u[k]
@@ -289,8 +293,8 @@ func (e *Posterior) Reweighted(ratio func(x []float64) float64) (outlook.Reweigh
 	if err != nil {
 		return outlook.Reweighted{}, err
 	}
-	again := *e
-	again.Nodes, again.rare, again.classes = nodes, nil, make([]quadrature.Estimate, len(e.classes))
+	again := &Posterior{Space: e.Space, Best: e.Best, LogBest: e.LogBest, Nodes: nodes, frame: e.frame, labels: e.labels,
+		classes: make([]quadrature.Estimate, len(e.classes))}
 	for i := range again.classes {
 		again.classes[i] = nodes.Probability(i)
 		if of := e.classes[i]; of.Value > 0 { // the nodes do not know the error of the integral itself
@@ -303,7 +307,7 @@ func (e *Posterior) Reweighted(ratio func(x []float64) float64) (outlook.Reweigh
 		f := at(e.Nodes.At(i))
 		first, second = first+w*f, second+w*f*f
 	}
-	return outlook.Reweighted{Belief: &again, LogMean: mean.Value, Err: mean.Err, Effective: first * first / second}, nil
+	return outlook.Reweighted{Belief: again, LogMean: mean.Value, Err: mean.Err, Effective: first * first / second}, nil
 }
 
 var _ outlook.Belief = (*Posterior)(nil)
@@ -336,10 +340,13 @@ func (e *Posterior) OfUniverse(of func(model.Universe) float64) (quadrature.Marg
 }
 
 func (e *Posterior) thinned() *quadrature.Nodes {
-	if e.Nodes.Len() < 5000 {
-		return e.Nodes
-	}
-	return e.Nodes.Thin(thinning)
+	e.once.Do(func() {
+		e.thin = e.Nodes
+		if e.Nodes.Len() > 5000 {
+			e.thin = e.Nodes.Thin(thinning)
+		}
+	})
+	return e.thin
 }
 
 // Sample returns about n points of equal weight, in the order of the nodes: every

@@ -8,11 +8,12 @@ import (
 
 // Event is a moment in the life of a universe.
 type Event struct {
-	Name  string // in JSON
-	Words string // in a text: "big crunch, from today"
-	Given string // the condition under which it is told
-	Held  bool   // with the equation of state held at today's value
-	Plain bool   // the value is a plain number, not a time
+	Name  string           // in JSON
+	Words string           // in a text: "big crunch, from today"
+	Given string           // the condition under which it is told
+	Held  bool             // with the equation of state held at today's value
+	Plain bool             // the value is a plain number, not a time
+	Holds func(Label) bool // the condition
 
 	// at is the value in units of 1/H0 (or plain), NaN where it does not come to
 	// be.
@@ -35,9 +36,9 @@ func (e Event) At(u model.Universe, gyr bool) float64 {
 // are told for both rules of what the equation of state will be.
 func Events(evolving bool) []Event {
 	past := []Event{
-		{Name: "age", Words: "age today", Given: "there was a big bang", at: age},
-		{Name: "acceleration_onset_z", Words: "acceleration began, z", Given: "it accelerates today", Plain: true, at: onset},
-		{Name: "acceleration_onset", Words: "acceleration began, before today", Given: "it accelerates today", at: onsetTime},
+		{Name: "age", Words: "age today", Given: "there was a big bang", Holds: began, at: age},
+		{Name: "acceleration_onset_z", Words: "acceleration began, z", Given: "it accelerates today", Holds: accelerates, Plain: true, at: onset},
+		{Name: "acceleration_onset", Words: "acceleration began, before today", Given: "it accelerates today", Holds: accelerates, at: onsetTime},
 	}
 	out := append(past, future(false)...)
 	if evolving {
@@ -46,15 +47,23 @@ func Events(evolving bool) []Event {
 	return out
 }
 
+func began(l Label) bool { return l.Fate != model.NoBigBang }
+
+func accelerates(l Label) bool { return l.Accelerating }
+
 func future(held bool) []Event {
 	suffix, rule := "", ""
+	of := func(l Label) model.Fate { return l.Fate }
 	if held {
 		suffix, rule = "_w_held", ", w held"
+		of = func(l Label) model.Fate { return l.Held }
 	}
+	recollapses := func(l Label) bool { return of(l) == model.Recollapse }
+	rips := func(l Label) bool { return of(l) == model.BigRip }
 	return []Event{
-		{Name: "turnaround" + suffix, Words: "turnaround, from today" + rule, Given: "it recollapses", Held: held, at: turnaround},
-		{Name: "crunch" + suffix, Words: "big crunch, from today" + rule, Given: "it recollapses", Held: held, at: crunch},
-		{Name: "rip" + suffix, Words: "big rip, from today" + rule, Given: "it rips", Held: held, at: rip},
+		{Name: "turnaround" + suffix, Words: "turnaround, from today" + rule, Given: "it recollapses", Holds: recollapses, Held: held, at: turnaround},
+		{Name: "crunch" + suffix, Words: "big crunch, from today" + rule, Given: "it recollapses", Holds: recollapses, Held: held, at: crunch},
+		{Name: "rip" + suffix, Words: "big rip, from today" + rule, Given: "it rips", Holds: rips, Held: held, at: rip},
 	}
 }
 

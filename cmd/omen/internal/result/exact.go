@@ -2,7 +2,9 @@ package result
 
 import (
 	"math"
+	"sync"
 
+	"omen/cmd/omen/internal/exact"
 	"omen/cmd/omen/internal/outlook"
 	"omen/likelihood"
 	"omen/model"
@@ -37,19 +39,26 @@ func exactQuantities(r Run) (parameters, derived []Quantity) {
 		q.Constrained = constrained(p.Prior, q)
 		parameters = append(parameters, q)
 	}
-	for _, name := range derivedNames(e.Space) {
-		var m quadrature.Marginal
-		var err error
-		if name == "hrd" || name == "rd" {
-			m, err = e.Distribution(func(p *likelihood.Point) float64 { return value(name, p, math.NaN()) })
-		} else {
-			m, err = e.OfUniverse(func(u model.Universe) float64 { return ofUniverse(name, u) })
-		}
-		if err == nil {
-			derived = append(derived, exactly(name, &m))
+	names := derivedNames(e.Space)
+	marginals, errs := make([]quadrature.Marginal, len(names)), make([]error, len(names))
+	var wait sync.WaitGroup
+	for i, name := range names {
+		wait.Go(func() { marginals[i], errs[i] = derivedMarginal(e, name) })
+	}
+	wait.Wait()
+	for i, name := range names {
+		if errs[i] == nil {
+			derived = append(derived, exactly(name, &marginals[i]))
 		}
 	}
 	return parameters, derived
+}
+
+func derivedMarginal(e *exact.Posterior, name string) (quadrature.Marginal, error) {
+	if name == "hrd" || name == "rd" {
+		return e.Distribution(func(p *likelihood.Point) float64 { return value(name, p, math.NaN()) })
+	}
+	return e.OfUniverse(func(u model.Universe) float64 { return ofUniverse(name, u) })
 }
 
 // ofUniverse is value for what the universe alone decides; the age is computed only

@@ -2,6 +2,7 @@ package result
 
 import (
 	"math"
+	"sync"
 
 	"omen/cmd/omen/internal/exact"
 	"omen/cmd/omen/internal/outlook"
@@ -14,6 +15,9 @@ import (
 // said of when: the ends of a 95% interval then rest on one draw each.
 const fewestForTimes = 40
 
+// hardlyEver is the probability of a condition below which nobody asks when.
+const hardlyEver = 1e-6
+
 // timeDraws is how many draws the times are computed at, about.
 const timeDraws = 20_000
 
@@ -23,8 +27,14 @@ func (s *Summary) times(r Run, drawn *outlook.Drawn) {
 	events := outlook.Events(space.Family().DarkEnergy == likelihood.W0Wa)
 	switch {
 	case r.Exact != nil:
-		for _, e := range events {
-			s.add(exactTime(e, r.Exact, space.KnowsH0()))
+		out := make([]Time, len(events))
+		var wait sync.WaitGroup
+		for i, e := range events {
+			wait.Go(func() { out[i] = exactTime(e, r.Exact, space.KnowsH0()) })
+		}
+		wait.Wait()
+		for _, t := range out {
+			s.add(t)
 		}
 	case drawn != nil:
 		point := func() func(x []float64) model.Universe {
@@ -63,6 +73,9 @@ func newTime(e outlook.Event, gyr bool) Time {
 
 func exactTime(e outlook.Event, p *exact.Posterior, gyr bool) Time {
 	t := newTime(e, gyr)
+	if p.Probability(e.Holds).P < hardlyEver {
+		return t
+	}
 	m, err := p.OfUniverse(func(u model.Universe) float64 { return e.At(u, gyr) })
 	if err != nil {
 		return t
