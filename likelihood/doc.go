@@ -5,10 +5,13 @@
 //
 //  1. A [Space] names the free parameters with their priors and turns a vector
 //     of their values into a [Point]: a universe, a sound horizon, a magnitude.
-//  2. A [Term] holds one table and its covariance, factorised once, and returns
-//     the chi-squared of a Point.
-//  3. A [Posterior] is a Space with its Terms. It collects the redshifts that
-//     the terms ask for, so that one pass over distances serves all of them.
+//  2. A [Term] holds one table and its [Noise], factorised once, and returns the
+//     chi-squared of a Point from the distances to all of its rows.
+//  3. A [Posterior] is a Space with its Terms. It condenses the supernovae among
+//     them to a small triangular matrix over a few nodes in redshift, so that their
+//     chi-squared costs the same however many they are (condense.go), and asks the
+//     terms themselves only for a universe in which the nodes are too few. One
+//     pass over distances serves all terms.
 //  4. An [Evaluator] is a Posterior with scratch memory of its own, one for each
 //     goroutine. LogDensity is the function that is called millions of times; it
 //     does not allocate.
