@@ -46,7 +46,8 @@ type width struct{ mean, sd float64 }
 // the nucleosynthesis prior 68.51 ± 0.58. Supernovae: grid integration of the
 // condensed table, for which the Pantheon+ paper (Brout et al. 2022, Table 3) has
 // 0.334 ± 0.018, and 0.306 ± 0.057, 0.625 ± 0.084. Both together: grid
-// integration.
+// integration. P(Ok < 0) is from a grid too, 0.27784 and 0.08911; chains of earlier
+// days had put it at 0.274 and 0.085 ± 0.003.
 func TestCommittedRuns(t *testing.T) {
 	for _, c := range []struct {
 		file   string
@@ -58,14 +59,14 @@ func TestCommittedRuns(t *testing.T) {
 		closed float64 // P(Ok < 0), NaN if not known
 	}{
 		{file: "bao-flat.toml", want: map[string]width{"Om": {0.2977, 0.0085}, "hrd": {101.53, 0.72}}, chi2: 10.539, within: 0.002, rows: 13},
-		{file: "bao.toml", want: map[string]width{"Om": {0.2932, 0.0115}, "OL": {0.683, 0.033}, "Ok": {0.024, 0.040}}, chi2: 10.231, within: 0.002, rows: 13, closed: 0.274},
+		{file: "bao.toml", want: map[string]width{"Om": {0.2932, 0.0115}, "OL": {0.683, 0.033}, "Ok": {0.024, 0.040}}, chi2: 10.231, within: 0.002, rows: 13, closed: 0.2778},
 		{file: "bao-w.toml", want: map[string]width{"w0": {-0.920, 0.077}}, chi2: 9.324, within: 0.002, rows: 13},
 		{file: "bao-w0wa.toml", chi2: 5.812, within: 0.002, rows: 13},
 		{file: "bao-bbn.toml", want: map[string]width{"H0": {68.51, 0.58}}, chi2: 10.54, within: 0.05, rows: 13},
 		{file: "supernovae-flat.toml", want: map[string]width{"Om": {0.3321, 0.0182}}, chi2: 1402.92, within: 0.02, rows: 1590},
 		{file: "supernovae.toml", want: map[string]width{"Om": {0.294, 0.054}, "OL": {0.609, 0.081}}, chi2: 1402.42, within: 0.01, rows: 1590},
 		{file: "fate.toml", want: map[string]width{"Om": {0.2932, 0.0114}, "OL": {0.6584, 0.0291}, "Ok": {0.0485, 0.0363}, "hrd": {100.55, 0.74}},
-			chi2: 1414.7, within: 0.05, rows: 1603, closed: 0.085},
+			chi2: 1414.7, within: 0.05, rows: 1603, closed: 0.0891},
 		{file: "fate.toml", sets: []string{"universe.geometry=flat", "prior.OL=none"}, want: map[string]width{"Om": {0.3043, 0.0079}}, chi2: 1416.5, within: 0.5, rows: 1603},
 	} {
 		t.Run(c.file, func(t *testing.T) {
@@ -109,8 +110,8 @@ func checkClosed(t *testing.T, s *result.Summary, want float64) {
 	}
 	for _, f := range s.Today {
 		if f.Name == "closed (Ok < 0)" {
-			if d := math.Abs(float64(f.Probability) - want); d > 4*float64(f.Error) {
-				t.Errorf("P(Ok < 0) = %.4f ± %.4f, want %.3f", float64(f.Probability), float64(f.Error), want)
+			if d := math.Abs(float64(f.Probability) - want); !(d <= 0.0002) {
+				t.Errorf("P(Ok < 0) = %.5f ± %.5f, want %.4f", float64(f.Probability), float64(f.Error), want)
 			}
 			return
 		}

@@ -97,18 +97,26 @@ func simpson(y []float64) float64 {
 	return sum
 }
 
-// BAO and supernovae, curved: against a sum over a fine grid.
-func TestFateRunAgainstGrid(t *testing.T) {
-	j := load(t, "fate.toml")
-	e := integrate(t, j)
-	logZ, want := grid(j, [3]float64{0.22, 0.37, 0.0015}, [3]float64{-0.24, 0.336, 0.006}, [3]float64{95.5, 106, 0.15})
-	got := e.Probability(closed)
-	t.Logf("ln Z %.7f, grid %.7f; P(closed) %.6f ± %.1g, grid %.6f", e.LogEvidence.Value, logZ, got.P, got.Err, want)
-	if d := math.Abs(e.LogEvidence.Value - logZ); !(d < 1e-4) {
-		t.Errorf("ln evidence differs from the grid by %.2g", d)
-	}
-	if d := math.Abs(got.P - want); !(d < 1e-4) {
-		t.Errorf("P(closed) %.6f, grid %.6f", got.P, want)
+// The curved runs against a sum over a fine grid.
+func TestCurvedRunsAgainstGrid(t *testing.T) {
+	for _, c := range []struct {
+		name        string
+		om, ok, hrd [3]float64
+	}{
+		{"fate.toml", [3]float64{0.22, 0.37, 0.0025}, [3]float64{-0.24, 0.336, 0.006}, [3]float64{95.5, 106, 0.25}},
+		{"bao.toml", [3]float64{0.21, 0.38, 0.0025}, [3]float64{-0.3, 0.36, 0.0055}, [3]float64{94, 109, 0.3}},
+	} {
+		j := load(t, c.name)
+		e := integrate(t, j)
+		logZ, want := grid(j, c.om, c.ok, c.hrd)
+		got := e.Probability(closed)
+		t.Logf("%s: ln Z %.7f, grid %.7f; P(closed) %.6f ± %.1g, grid %.6f", c.name, e.LogEvidence.Value, logZ, got.P, got.Err, want)
+		if d := math.Abs(e.LogEvidence.Value - logZ); !(d < 1e-4) {
+			t.Errorf("%s: ln evidence differs from the grid by %.2g", c.name, d)
+		}
+		if d := math.Abs(got.P - want); !(d < 1e-4) {
+			t.Errorf("%s: P(closed) %.6f, grid %.6f", c.name, got.P, want)
+		}
 	}
 }
 

@@ -9,7 +9,7 @@ import (
 // Event is a moment in the life of a universe.
 type Event struct {
 	Name  string           // in JSON
-	Words string           // in a text: "big crunch, from today"
+	Words string           // in a text: "time to the big crunch"
 	Given string           // the condition under which it is told
 	Held  bool             // with the equation of state held at today's value
 	Plain bool             // the value is a plain number, not a time
@@ -38,7 +38,7 @@ func Events(evolving bool) []Event {
 	past := []Event{
 		{Name: "age", Words: "age today", Given: "there was a big bang", Holds: began, at: age},
 		{Name: "acceleration_onset_z", Words: "acceleration began, z", Given: "it accelerates today", Holds: accelerates, Plain: true, at: onset},
-		{Name: "acceleration_onset", Words: "acceleration began, before today", Given: "it accelerates today", Holds: accelerates, at: onsetTime},
+		{Name: "acceleration_onset", Words: "accelerating for", Given: "it accelerates today", Holds: accelerates, at: onsetTime},
 	}
 	out := append(past, future(false)...)
 	if evolving {
@@ -61,9 +61,9 @@ func future(held bool) []Event {
 	recollapses := func(l Label) bool { return of(l) == model.Recollapse }
 	rips := func(l Label) bool { return of(l) == model.BigRip }
 	return []Event{
-		{Name: "turnaround" + suffix, Words: "turnaround, from today" + rule, Given: "it recollapses", Holds: recollapses, Held: held, at: turnaround},
-		{Name: "crunch" + suffix, Words: "big crunch, from today" + rule, Given: "it recollapses", Holds: recollapses, Held: held, at: crunch},
-		{Name: "rip" + suffix, Words: "big rip, from today" + rule, Given: "it rips", Holds: rips, Held: held, at: rip},
+		{Name: "turnaround" + suffix, Words: "time to turnaround" + rule, Given: "it recollapses", Holds: recollapses, Held: held, at: turnaround},
+		{Name: "crunch" + suffix, Words: "time to the big crunch" + rule, Given: "it recollapses", Holds: recollapses, Held: held, at: crunch},
+		{Name: "rip" + suffix, Words: "time to the big rip" + rule, Given: "it rips", Holds: rips, Held: held, at: rip},
 	}
 }
 

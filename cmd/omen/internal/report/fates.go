@@ -219,20 +219,20 @@ func times(b *strings.Builder, s *result.Summary) {
 	if len(s.Times) == 0 {
 		return
 	}
-	fmt.Fprintf(b, "%-34s %-9s %-18s %s\n", "Times", "median", "68% interval", "95% interval")
+	fmt.Fprintf(b, "%-38s %-8s %-15s %s\n", "Times", "median", "68% interval", "95% interval")
 	for _, t := range s.Times {
 		name := t.Words
 		if t.Unit != "" {
 			name += " [" + t.Unit + "]"
 		}
 		if math.IsNaN(float64(t.Median)) {
-			line(b, fmt.Sprintf("  %s –  too few draws: %.0f in which %s", pad(name, 40), math.Max(0, float64(t.ESS)), t.Given))
+			line(b, fmt.Sprintf("  %s –  too few draws: %.0f in which %s", pad(name, 36), math.Max(0, float64(t.ESS)), t.Given))
 			continue
 		}
 		spread := float64(t.Interval68[1]-t.Interval68[0]) / 2
 		place := digits.Place(spread, float64(t.MCSE))
 		cell := func(v result.Number) string { return digits.Format(float64(v), place) }
-		line(b, fmt.Sprintf("  %s %s %s %s", pad(name, 40), pad(cell(t.Median), 8), pad(cell(t.Interval68[0])+" … "+cell(t.Interval68[1]), 15),
+		line(b, fmt.Sprintf("  %s %s %s %s", pad(name, 36), pad(cell(t.Median), 8), pad(cell(t.Interval68[0])+" … "+cell(t.Interval68[1]), 15),
 			cell(t.Interval95[0])+" … "+cell(t.Interval95[1])))
 	}
 	b.WriteString("  each in those universes alone in which it comes to be\n\n")

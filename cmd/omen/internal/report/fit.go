@@ -11,8 +11,8 @@ import (
 
 func fit(b *strings.Builder, s *result.Summary) {
 	f := s.Fit
-	fmt.Fprintf(b, "Best fit: chi² %.2f for %d rows, %d degrees of freedom (probability %s)\n",
-		float64(f.Chi2), f.Rows, f.DoF, chance(float64(f.Probability)))
+	wrap(b, "", fmt.Sprintf("Best fit: chi² %.2f, %d rows, %d degrees of freedom, probability %s",
+		float64(f.Chi2), f.Rows, f.DoF, chance(float64(f.Probability))))
 	var best []string
 	for _, q := range s.Parameters {
 		best = append(best, fmt.Sprintf("%s %s", q.Name, digits.Format(float64(f.Best[q.Name]), fine(q))))

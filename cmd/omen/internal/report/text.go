@@ -53,7 +53,7 @@ func quantities(b *strings.Builder, title string, qs []result.Quantity) {
 	if math.IsNaN(float64(qs[0].ESS)) {
 		last = ""
 	}
-	line(b, fmt.Sprintf("%-16s %-17s %-18s %-18s %s", title, "mean ± sd", "68% interval", "95% interval", last))
+	line(b, fmt.Sprintf("%-16s %-17s %-17s %-17s %s", title, "mean ± sd", "68% interval", "95% interval", last))
 	for _, q := range qs {
 		name := q.Name
 		if q.Unit != "" {
@@ -63,8 +63,8 @@ func quantities(b *strings.Builder, title string, qs []result.Quantity) {
 		if last != "" {
 			mcse = digits.Error(float64(q.MCSE))
 		}
-		line(b, fmt.Sprintf("  %s %s %s %s %s", pad(name, 14), pad(MeanSD(q), 17), pad(Interval(q.Interval68, q.MCSE68, q), 18),
-			pad(Interval(q.Interval95, q.MCSE95, q), 18), mcse))
+		line(b, fmt.Sprintf("  %s %s %s %s %s", pad(name, 14), pad(MeanSD(q), 17), pad(Interval(q.Interval68, q.MCSE68, q), 17),
+			pad(Interval(q.Interval95, q.MCSE95, q), 17), mcse))
 		if !q.Constrained {
 			fmt.Fprintf(b, "  %14s not constrained by these data: as wide as its prior\n", "")
 		}
