@@ -152,11 +152,11 @@ func conclude(ctx context.Context, run *result.Run, dir string, noReport bool, s
 	if err := report.Text(stdout, s); err != nil {
 		return err
 	}
+	chain := "chain.csv, "
 	if run.Chain == nil {
-		fmt.Fprintf(stdout, "\nIn %s: summary.json, history.csv, run.toml; figures are drawn from a chain, which quadrature does without\n", dir)
-		return nil
+		chain = ""
 	}
-	fmt.Fprintf(stdout, "\nIn %s: chain.csv, summary.json, history.csv, run.toml\n", dir)
+	fmt.Fprintf(stdout, "\nIn %s: %ssummary.json, history.csv, run.toml\n", dir, chain)
 	if err := concludeReport(run, s, dir, noReport, stdout); err != nil {
 		return err
 	}

@@ -80,13 +80,16 @@ var hostileFolder = sync.OnceValues(func() (string, string) {
 		os.MkdirAll(base, 0o755)
 		os.WriteFile(filepath.Join(base, name), []byte(text), 0o644)
 	}
-	var stdout bytes.Buffer
 	dir := filepath.Join(base, "out")
-	err := run(context.Background(), append(chainAlone, "--effective-samples", "800", "-o", dir, filepath.Join(base, "run.toml")), &stdout, &stdout)
+	program, err := build()
 	if err != nil {
 		return dir, err.Error()
 	}
-	return dir, stdout.String()
+	said, err := exec.Command(program, append(chainAlone, "--effective-samples", "800", "-o", dir, filepath.Join(base, "run.toml"))...).CombinedOutput()
+	if err != nil {
+		return dir, err.Error()
+	}
+	return dir, string(said)
 })
 
 var reportFiles = []string{"report.html", "constraints.tex", "fates.tex", "numbers.tex", "methods.md", "constraints.csv",
@@ -105,7 +108,7 @@ func TestReportOfAFolderIsThatOfTheRun(t *testing.T) {
 		}
 		before[name] = text
 	}
-	out := output(t, "report", dir)
+	out, _ := must(t, 0, "", "report", dir)
 	for _, name := range reportFiles {
 		text, err := os.ReadFile(filepath.Join(dir, filepath.FromSlash(name)))
 		if err != nil {
@@ -318,7 +321,7 @@ func TestReportSize(t *testing.T) {
 		}
 	}
 	dir := filepath.Join(base, "out")
-	output(t, append(chainAlone, "--effective-samples", "4000", "-o", dir, filepath.Join(base, "run.toml"))...)
+	must(t, 0, "", append(chainAlone, "--effective-samples", "4000", "-o", dir, filepath.Join(base, "run.toml"))...)
 	info, err := os.Stat(filepath.Join(dir, "report.html"))
 	if err != nil {
 		t.Fatal(err)
@@ -332,8 +335,8 @@ func TestReportSize(t *testing.T) {
 // The figures of a run from end to end: its folder, draws, densities, ink.
 func TestReportFigures(t *testing.T) {
 	dir := filepath.Join(t.TempDir(), "fate")
-	output(t, append(chainAlone, "--no-report", "--effective-samples", "1500", "-o", dir, runsFile("fate.toml"))...)
-	output(t, "report", dir, "--format", "png", "--only", "hubble,plane,marginals,history,fates,convergence")
+	must(t, 0, "", append(chainAlone, "--no-report", "--effective-samples", "1500", "-o", dir, runsFile("fate.toml"))...)
+	must(t, 0, "", "report", dir, "--format", "png", "--only", "hubble,plane,marginals,history,fates,convergence")
 	for _, name := range []string{"hubble", "plane", "marginals", "history", "fates", "convergence"} {
 		compareToGolden(t, name, filepath.Join(dir, "figures", name+".png"))
 	}
@@ -400,6 +403,34 @@ func shrink(t *testing.T, m image.Image) *image.Gray {
 		}
 	}
 	return out
+}
+
+// A run by quadrature alone has all figures but that of the chain, and the same
+// files from its folder.
+func TestReportWithoutChain(t *testing.T) {
+	dir := filepath.Join(t.TempDir(), "out")
+	must(t, 0, "", "fit", "--quiet", "--set", "sampling.engine=quadrature", "--set", "fates.nested=false", "-o", dir, runsFile("bao-flat.toml"))
+	before := map[string][]byte{}
+	for _, name := range reportFiles {
+		if text, err := os.ReadFile(filepath.Join(dir, filepath.FromSlash(name))); err == nil {
+			before[name] = text
+		}
+	}
+	out, _ := must(t, 0, "", "report", dir)
+	for _, want := range []string{"hubble, marginals, history, fates (pdf, svg)", "no figure convergence: the posterior was integrated"} {
+		if !strings.Contains(out, want) {
+			t.Errorf("report printed %q, without %q", out, want)
+		}
+	}
+	if len(before) != len(reportFiles)-4 { // nor is there a plane of a flat universe
+		t.Errorf("%d files", len(before))
+	}
+	for name, text := range before {
+		now, err := os.ReadFile(filepath.Join(dir, filepath.FromSlash(name)))
+		if err != nil || !bytes.Equal(now, text) {
+			t.Errorf("%s differs from what fit wrote, %v", name, err)
+		}
+	}
 }
 
 // The texts for a draft compile with a plain LaTeX and booktabs (Debian:

@@ -220,10 +220,18 @@ func scatter(r Rule, a, b *result.Quantity) float64 {
 		return math.Sqrt(va + vb)
 	}
 	// The Monte Carlo error of a variance σ² from n draws is σ²√(2/n).
-	noise := math.Hypot(va*math.Sqrt(2/float64(a.ESS)), vb*math.Sqrt(2/float64(b.ESS)))
+	noise := math.Hypot(va*relativeError(a.ESS), vb*relativeError(b.ESS))
 	d := math.Abs(va - vb)
 	if !(d > 2*noise) {
 		return math.NaN()
 	}
 	return math.Sqrt(d)
+}
+
+// relativeError is that of a variance from so many draws; none of an integral.
+func relativeError(ess result.Number) float64 {
+	if !(ess > 0) {
+		return 0
+	}
+	return math.Sqrt(2 / float64(ess))
 }

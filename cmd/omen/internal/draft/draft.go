@@ -213,5 +213,14 @@ func Record(q result.Quantity, best map[string]result.Number) []string {
 		cell(q.Interval68[0], q.MCSE68[0]), cell(q.Interval68[1], q.MCSE68[1]),
 		cell(q.Interval95[0], q.MCSE95[0]), cell(q.Interval95[1], q.MCSE95[1]),
 		cell(q.HDI68[0], q.MCSE68[0]), cell(q.HDI68[1], q.MCSE68[1]),
-		at, digits.Error(float64(q.MCSE)), digits.Format(math.Floor(float64(q.ESS)), 0), digits.Format(float64(q.RHat), -4), strconv.FormatBool(q.Constrained)}
+		at, known(q.MCSE, digits.Error(float64(q.MCSE))), known(q.ESS, digits.Format(math.Floor(float64(q.ESS)), 0)),
+		known(q.RHat, digits.Format(float64(q.RHat), -4)), strconv.FormatBool(q.Constrained)}
+}
+
+// known is a text, nothing where the number behind it is not known.
+func known(x result.Number, text string) string {
+	if math.IsNaN(float64(x)) {
+		return ""
+	}
+	return text
 }

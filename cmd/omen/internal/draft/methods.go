@@ -152,12 +152,19 @@ func sampling(r *gather.Run) string {
 		m.Ensembles, m.Walkers, m.Steps, m.BurnIn)
 	s += fmt.Sprintf("The rank-normalised split R-hat over the ensembles (Vehtari et al. 2021) is at most %.4f, the effective sample size of every parameter at least %.0f; "+
 		"Monte Carlo errors of the means are below %s of the standard deviations. ", float64(m.MaxRHat), math.Floor(float64(m.MinESS)), percent(worst))
+	if m.Ensembles == 0 {
+		s = "The posterior is integrated by adaptive quadrature, without a chain. "
+	}
 	f := r.Summary.Fit
 	s += fmt.Sprintf("The best fit, the point of highest posterior density, has chi-squared %.2f for %d degrees of freedom. ", float64(f.Chi2), f.DoF)
 	s += "We quote posterior means with standard deviations, or medians with central 68% intervals where these are lopsided, and central 95% intervals. " +
 		"The probability of a fate is the share of the posterior whose universes meet it (Carroll, Press & Turner 1992; Felten & Isaacman 1986); "
 	s += fates(r.Summary)
-	return s + fmt.Sprintf("Computed with omen %s, seed %d.", markdown(r.Summary.Version), m.Seed)
+	s += "Computed with omen " + markdown(r.Summary.Version)
+	if m.Ensembles > 0 {
+		s += fmt.Sprintf(", seed %d", m.Seed)
+	}
+	return s + "."
 }
 
 // percent rounds up to one digit.
@@ -173,7 +180,10 @@ func percent(x float64) string {
 func fates(s *result.Summary) string {
 	text := "where no sample does, the 95% upper limit is 3 over the effective sample size. "
 	if len(s.Engine.Exact) > 0 {
-		text = "it is integrated by adaptive quadrature, which also checks the chain"
+		text = "it is integrated by adaptive quadrature"
+		if s.Sampling.Ensembles > 0 {
+			text += ", which also checks the chain"
+		}
 		if d := s.Engine.Largest; d != nil {
 			text += fmt.Sprintf(" (largest difference %.2f of a posterior width)", float64(d.Widths))
 		}

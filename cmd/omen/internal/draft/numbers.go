@@ -102,7 +102,11 @@ func (m *macros) fit(s *result.Summary) {
 	if p := float64(s.Fit.Probability); !math.IsNaN(p) {
 		m.define("FitProbability", chance(p))
 	}
+	m.define("Version", `\mbox{`+Escape(s.Version)+"}")
 	c := s.Sampling
+	if c.Ensembles == 0 {
+		return
+	}
 	m.define("EffectiveSamples", strconv.Itoa(int(math.Floor(float64(c.MinESS)))))
 	m.define("Rhat", digits.Format(float64(c.MaxRHat), -4))
 	m.define("Ensembles", strconv.Itoa(c.Ensembles))
@@ -110,7 +114,6 @@ func (m *macros) fit(s *result.Summary) {
 	m.define("Steps", strconv.Itoa(c.Steps))
 	m.define("BurnIn", strconv.Itoa(c.BurnIn))
 	m.define("Seed", strconv.FormatUint(c.Seed, 10))
-	m.define("Version", `\mbox{`+Escape(s.Version)+"}")
 }
 
 // chance is the probability of a chi-squared in math mode.

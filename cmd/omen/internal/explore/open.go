@@ -13,10 +13,14 @@ import (
 )
 
 // Open reads the run in dir as it stands: finished, stopped, or under way in
-// another process. It changes nothing and needs no lock.
+// another process. It changes nothing and needs no lock. A run by quadrature
+// alone comes without a chain, and without its integral.
 func Open(dir string, o Options) (*result.Run, error) {
 	state, err := readState(dir)
 	if err != nil {
+		if r := chainless(dir, o); r != nil {
+			return r, nil
+		}
 		return nil, err
 	}
 	j, text, err := reload(dir, nil, o.Cache)
@@ -40,6 +44,15 @@ func Open(dir string, o Options) (*result.Run, error) {
 		return nil, &Refused{dir, "the run has not made a step yet; there is nothing to report"}
 	}
 	return s.opened(state), nil
+}
+
+// chainless is the run in dir if it is one by quadrature alone, else nil.
+func chainless(dir string, o Options) *result.Run {
+	j, text, err := reload(dir, nil, o.Cache)
+	if err != nil || j.Run.Sampling.Engine != "quadrature" || settle(j, dir, text) != nil {
+		return nil
+	}
+	return &result.Run{Job: j, Threads: o.Threads, Version: o.Version}
 }
 
 // unchanged refuses a run whose inputs are no longer those of its chain.

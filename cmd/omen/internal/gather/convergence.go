@@ -23,6 +23,9 @@ const mostTraces = 6
 
 // convergence is how the chain came to its result.
 func (r *Run) convergence() (*Picture, error) {
+	if r.Chain == nil {
+		return absent("the posterior was integrated, without a chain"), nil
+	}
 	v := r.Chain.View()
 	if v.Steps() < 2 {
 		return absent("the chain has a single step"), nil

@@ -36,7 +36,15 @@ func Open(ctx context.Context, dir string, o explore.Options) (*Run, error) {
 		return nil, err
 	}
 	s, ok := kept(dir, run)
-	if !ok {
+	if run.Chain == nil { // the figures are made from the integral
+		if err := run.Investigate(ctx); err != nil {
+			return nil, err
+		}
+		if run.Exact == nil {
+			return nil, ctx.Err()
+		}
+		s = result.Build(*run)
+	} else if !ok {
 		if run.Ended() == "" { // of an unfinished run the chain alone is told
 			if err := run.Investigate(ctx); err != nil {
 				return nil, err
@@ -59,7 +67,7 @@ func Of(run *result.Run, s *result.Summary, dir string) (*Run, error) {
 // kept is the summary in dir, if this program made it from this chain.
 func kept(dir string, run *result.Run) (*result.Summary, bool) {
 	text, err := os.ReadFile(filepath.Join(dir, "summary.json"))
-	if err != nil {
+	if err != nil || run.Chain == nil {
 		return nil, false
 	}
 	var s result.Summary
@@ -82,8 +90,34 @@ func (r *Run) sample(n int) sampler.View {
 	return v.Thin(max(1, v.Steps()/rows))
 }
 
-// scatter is n positions spread evenly over the sample.
+// effective is how many independent draws the density of points from an integral
+// is smoothed as: more would show the lines that they lie on.
+const effective = 4000
+
+// draws is about n draws of each parameter, and how many independent ones they are
+// worth. Without a chain they are points of equal weight from the integral.
+func (r *Run) draws(n int) (columns [][]float64, ess float64) {
+	columns = make([][]float64, r.Job.Space.Dim())
+	if r.Chain == nil {
+		for _, x := range r.Exact.Sample(n) {
+			for i, v := range x {
+				columns[i] = append(columns[i], v)
+			}
+		}
+		return columns, effective
+	}
+	v := r.sample(n)
+	for i := range columns {
+		columns[i] = v.Coordinate(i).Values()
+	}
+	return columns, r.Outcome.Check.ESS()
+}
+
+// scatter is n positions spread evenly over the posterior.
 func (r *Run) scatter(n int) [][]float64 {
+	if r.Chain == nil {
+		return r.Exact.Sample(n)
+	}
 	v := r.sample(4 * n)
 	total := v.Ensembles() * v.Walkers() * v.Steps()
 	n = min(n, total)

@@ -3,6 +3,7 @@ package gather
 import (
 	"math"
 
+	"omen/cmd/omen/internal/density"
 	"omen/cmd/omen/internal/figure"
 	"omen/cmd/omen/internal/result"
 	"omen/likelihood"
@@ -21,13 +22,13 @@ const sameThing = 0.99
 
 // marginals is all free parameters and the derived quantities that add to them.
 func (r *Run) marginals() (*Picture, error) {
-	v := r.sample(marginalDraws)
-	in := figure.Marginals{ESS: r.Outcome.Check.ESS(), Unfinished: r.Unfinished()}
+	columns, ess := r.draws(marginalDraws)
+	in := figure.Marginals{ESS: ess, Unfinished: r.Unfinished()}
 	var names []string
 	var draws []sampler.Draws
 	free := r.Job.Space.Free()
 	for i, p := range free {
-		names, draws = append(names, p.Name), append(draws, v.Coordinate(i))
+		names, draws = append(names, p.Name), append(draws, sampler.NewDraws(1, columns[i]))
 	}
 	left := max(0, len(free)-mostMarginals)
 	for i := range min(len(free), mostMarginals) {
@@ -35,8 +36,16 @@ func (r *Run) marginals() (*Picture, error) {
 		p := &in.Parameters[i]
 		p.Edges, p.Best = edges(free[i].Prior), r.Best[i]
 		p.PriorX, p.PriorP = priorCurve(free[i].Prior, r.Summary.Parameters[i])
+		if r.Chain == nil {
+			m := r.Exact.Marginals[i]
+			c, err := density.NewCurve(m.X, m.Density)
+			if err != nil {
+				return nil, err
+			}
+			p.Density = c
+		}
 	}
-	derived, values := result.DerivedDraws(r.Job.Space, v, r.Threads)
+	derived, values := r.derived()
 	for i, name := range derived {
 		if len(in.Parameters) < mostMarginals && worthShowing(values[i], draws) {
 			draws, names = append(draws, values[i]), append(names, name)
@@ -50,6 +59,19 @@ func (r *Run) marginals() (*Picture, error) {
 	}
 	return &Picture{Caption: caption, Alt: "Marginal posteriors: " + r.Values(names...) + ".", Wide: len(in.Parameters) > 3,
 		draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawMarginals(in, w) }}, nil
+}
+
+// derived is the derived quantities of the draws; of an integral they are tabled
+// but not drawn.
+func (r *Run) derived() ([]string, []sampler.Draws) {
+	if r.Chain == nil {
+		return nil, nil
+	}
+	names, values := result.DerivedDraws(r.Job.Space, r.sample(marginalDraws), r.Threads)
+	for i, d := range values {
+		values[i] = sampler.NewDraws(1, d.Values())
+	}
+	return names, values
 }
 
 func parameter(name string, d sampler.Draws) figure.Parameter {

@@ -36,7 +36,7 @@ func (r *Run) plane() (*Picture, error) {
 	if len(in.Sets) > 0 {
 		name = "all together"
 	}
-	in.Sets = append(in.Sets, set(name, s, [2]string{"Om", "OL"}, r.sample(planeDraws), r.Outcome.Check, r.Best))
+	in.Sets = append(in.Sets, r.set(name, [2]string{"Om", "OL"}, r.Best))
 	in.Dividers = dividers(s)
 	in.Frame = frame(in.Sets, in.XEdges, in.YEdges)
 	caption := r.planeCaption(&in) + left
@@ -73,7 +73,9 @@ func (r *Run) separately(in *figure.Plane) string {
 		}
 		v := a.check.Sample
 		rows := max(1, planeDraws/(v.Ensembles()*v.Walkers()))
-		in.Sets = append(in.Sets, set(name, a.space, [2]string{"Om", "OL"}, v.Thin(max(1, v.Steps()/rows)), a.check, nil))
+		v = v.Thin(max(1, v.Steps()/rows))
+		in.Sets = append(in.Sets, figure.Set{Name: figure.Plain(name), X: v.Coordinate(index(a.space, "Om")).Values(),
+			Y: v.Coordinate(index(a.space, "OL")).Values(), ESS: a.check.ESS()})
 	}
 	if len(missing) > 0 {
 		return " Not shown by itself, for it leaves the plane too open: " + strings.Join(missing, ", ") + "."
@@ -81,10 +83,11 @@ func (r *Run) separately(in *figure.Plane) string {
 	return ""
 }
 
-// set is the draws of two parameters.
-func set(name string, s *likelihood.Space, pair [2]string, v sampler.View, c sampler.Check, best []float64) figure.Set {
-	x, y := index(s, pair[0]), index(s, pair[1])
-	out := figure.Set{Name: figure.Plain(name), X: v.Coordinate(x).Values(), Y: v.Coordinate(y).Values(), ESS: c.ESS()}
+// set is the draws of two parameters of a run.
+func (r *Run) set(name string, pair [2]string, best []float64) figure.Set {
+	x, y := index(r.Job.Space, pair[0]), index(r.Job.Space, pair[1])
+	columns, ess := r.draws(planeDraws)
+	out := figure.Set{Name: figure.Plain(name), X: columns[x], Y: columns[y], ESS: ess}
 	if best != nil {
 		out.Best = &[2]float64{best[x], best[y]}
 	}
@@ -102,7 +105,7 @@ func PlaneOf(runs []*Run, names []string, pair [2]string, caption, alt string) *
 	same := true
 	for i, r := range runs {
 		s := r.Job.Space
-		in.Sets = append(in.Sets, set(names[i], s, pair, r.sample(planeDraws), r.Outcome.Check, nil))
+		in.Sets = append(in.Sets, r.set(names[i], pair, nil))
 		in.Unfinished = in.Unfinished || r.Unfinished()
 		x, y = append(x, edges(s.Free()[index(s, pair[0])].Prior)), append(y, edges(s.Free()[index(s, pair[1])].Prior))
 		same = same && x[i] == x[0] && y[i] == y[0]
@@ -219,7 +222,7 @@ func (r *Run) planeAlt() string {
 }
 
 func (r *Run) correlation(a, b string) float64 {
-	v := r.sample(planeDraws)
+	columns, _ := r.draws(planeDraws)
 	i, j := index(r.Job.Space, a), index(r.Job.Space, b)
-	return sampler.Correlation(v.Coordinate(i), v.Coordinate(j))
+	return sampler.Correlation(sampler.NewDraws(1, columns[i]), sampler.NewDraws(1, columns[j]))
 }

@@ -130,7 +130,9 @@ func Report(w io.Writer, r *gather.Run, pictures []*gather.Picture) error {
 		}
 		if len(rows) > 0 {
 			v.Blocks = append(v.Blocks, rows)
-			v.Convergence = append(v.Convergence, rows...)
+			if s.Sampling.Ensembles > 0 {
+				v.Convergence = append(v.Convergence, rows...)
+			}
 		}
 	}
 	v.Fates, v.SamePriors = fateTables(s)

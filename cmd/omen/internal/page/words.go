@@ -163,6 +163,9 @@ func fit(s *result.Summary) string {
 
 func chain(s *result.Summary) string {
 	m := s.Sampling
+	if m.Ensembles == 0 {
+		return fmt.Sprintf("The posterior was integrated by quadrature, without a chain: %d evaluations, ln evidence %.2f.", s.Engine.Evaluations, float64(s.Engine.LogEvidence))
+	}
 	return fmt.Sprintf("%d ensembles of %d walkers, %d steps, the first %d discarded as burn-in. Effective samples %.0f at least (goal %d), R-hat %.4f at most. Acceptance %.2f, %d evaluations, seed %d.",
 		m.Ensembles, m.Walkers, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), float64(m.Acceptance), m.Evaluations, m.Seed) + engine(s.Engine)
 }
@@ -182,6 +185,9 @@ func engine(e result.Engine) string {
 
 // converged is the chain in a sentence.
 func converged(s *result.Summary) string {
+	if s.Sampling.Ensembles == 0 {
+		return "The posterior was integrated by quadrature; no number has a Monte Carlo error."
+	}
 	state := "The chain converged"
 	if !s.Complete {
 		state = "The chain has not reached its goal"
