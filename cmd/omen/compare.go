@@ -8,6 +8,7 @@ import (
 	"os"
 	"path/filepath"
 
+	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/compare"
 	"omen/cmd/omen/internal/explore"
 	"omen/cmd/omen/internal/gather"
@@ -52,7 +53,7 @@ func runCompare(ctx context.Context, args []string, stdout io.Writer) error {
 	}
 	var runs []*gather.Run
 	for _, name := range f.Args() {
-		r, err := gather.Open(ctx, filepath.Clean(name), explore.Options{Version: version()})
+		r, err := gather.Open(ctx, filepath.Clean(name), explore.Options{Version: version(), Cache: cache.Default()})
 		if err != nil {
 			return err
 		}

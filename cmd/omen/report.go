@@ -12,6 +12,7 @@ import (
 	"strings"
 	"sync"
 
+	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/chainfile"
 	"omen/cmd/omen/internal/draft"
 	"omen/cmd/omen/internal/explore"
@@ -80,7 +81,7 @@ func runReport(ctx context.Context, args []string, stdout io.Writer) error {
 		return err
 	}
 	dir := filepath.Clean(f.Arg(0))
-	r, err := gather.Open(ctx, dir, explore.Options{Version: version()})
+	r, err := gather.Open(ctx, dir, explore.Options{Version: version(), Cache: cache.Default()})
 	if err != nil {
 		return err
 	}
