@@ -18,6 +18,9 @@ import (
 	"sync"
 	"testing"
 
+	"omen/cmd/omen/internal/compare"
+	"omen/cmd/omen/internal/explore"
+	"omen/cmd/omen/internal/gather"
 	"omen/model"
 )
 
@@ -339,6 +342,28 @@ func TestReportFigures(t *testing.T) {
 	must(t, 0, "", "report", dir, "--format", "png", "--only", "hubble,plane,marginals,history,fates,convergence")
 	for _, name := range []string{"hubble", "plane", "marginals", "history", "fates", "convergence"} {
 		compareToGolden(t, name, filepath.Join(dir, "figures", name+".png"))
+	}
+}
+
+// The figures of a comparison, likewise.
+func TestCompareFigures(t *testing.T) {
+	var runs []*gather.Run
+	for _, name := range []string{"bao.toml", "supernovae.toml"} {
+		dir := filepath.Join(t.TempDir(), strings.TrimSuffix(name, ".toml"))
+		must(t, 0, "", append(chainAlone, "--no-report", "--effective-samples", "1500", "-o", dir, runsFile(name))...)
+		r, err := gather.Open(context.Background(), dir, explore.Options{Version: version()})
+		if err != nil {
+			t.Fatal(err)
+		}
+		runs = append(runs, r)
+	}
+	for _, p := range compare.New(runs).Pictures() {
+		text, err := reportOptions{}.draw(p, "png")
+		path := filepath.Join(t.TempDir(), p.Name+".png")
+		if err = errors.Join(err, os.WriteFile(path, text, 0o644)); err != nil {
+			t.Fatal(err)
+		}
+		compareToGolden(t, "compare-"+p.Name, path)
 	}
 }
 
