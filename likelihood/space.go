@@ -153,7 +153,7 @@ func checkGiven(f Family, given map[string]bool) error {
 		return fmt.Errorf("a critical universe is made of matter and radiation alone, which leaves Om and dark energy no freedom; remove them")
 	case f.Critical:
 	case !given["Om"]:
-		return fmt.Errorf("Om is missing; give it a prior or a fixed value")
+		return fmt.Errorf("%s is missing; give it a prior or a fixed value", "Om")
 	case f.Flat && given["OL"]:
 		return fmt.Errorf("OL follows from Om in a flat universe; remove it, or choose the curved geometry")
 	case !f.Flat && !given["OL"]:
