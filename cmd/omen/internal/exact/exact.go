@@ -265,19 +265,22 @@ func (e *Posterior) Probability(holds func(outlook.Label) bool) outlook.Share {
 	for _, r := range e.rare {
 		add(r.label, r.weight, r.weight)
 	}
-	return share(yes, no)
+	family := e.Space.Family()
+	fails := func(l outlook.Label) bool { return !holds(l) }
+	return share(yes, no, outlook.Possible(family, holds), outlook.Possible(family, fails))
 }
 
 // share takes the error from the rarer side, and 1 - p where that is the exact one.
-func share(yes, no quadrature.Estimate) outlook.Share {
+// What is possible and yet has no mass at any node is not zero but below what was
+// looked for.
+func share(yes, no quadrature.Estimate, canHold, canFail bool) outlook.Share {
 	s := outlook.Share{P: yes.Value, Err: min(yes.Err, no.Err), Upper: math.NaN(), Lower: math.NaN()}
 	if no.Value < yes.Value {
 		s.P = 1 - no.Value
 	}
 	limit := func(e quadrature.Estimate) float64 { return max(rarest, e.Value+2*e.Err) }
 	switch {
-	case yes.Value == 0 && no.Value > 0: // no volume: exactly zero
-	case no.Value == 0:
+	case yes.Value == 0 && !canHold, no.Value == 0 && !canFail: // exactly
 	case yes.Value < rarest || yes.Value < 3*yes.Err:
 		s.P, s.Upper = 0, limit(yes)
 	case no.Value < rarest || no.Value < 3*no.Err:

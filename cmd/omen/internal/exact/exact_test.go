@@ -14,6 +14,7 @@ import (
 	"omen/data"
 	"omen/likelihood"
 	"omen/model"
+	"omen/sampler/quadrature"
 
 	"gonum.org/v1/gonum/integrate/quad"
 )
@@ -117,6 +118,30 @@ func TestCurvedRunsAgainstGrid(t *testing.T) {
 		if d := math.Abs(got.P - want); !(d < 1e-4) {
 			t.Errorf("%s: P(closed) %.6f, grid %.6f", c.name, got.P, want)
 		}
+		if d := j.Posterior.Evaluator().LogDensity(e.Best) - e.LogBest; !(math.Abs(d) < 1e-9) {
+			t.Errorf("%s: the density at the best point is off by %g", c.name, d)
+		}
+	}
+}
+
+// Labels that have no class of their own are found at the nodes.
+func TestLabelsWithoutClass(t *testing.T) {
+	j := load(t, "supernovae.toml")
+	want := integrate(t, j).Probability(closed)
+	e := &Posterior{Space: j.Space}
+	for _, l := range labels(j.Space) {
+		if !closed(l) {
+			e.labels = append(e.labels, l)
+		}
+	}
+	r, err := quadrature.Integrate(context.Background(), e.problem(j.Posterior, nil), Options(2, 0))
+	if err != nil {
+		t.Fatal(err)
+	}
+	e.take(r)
+	e.gatherRare()
+	if got := e.Probability(closed); len(e.rare) == 0 || math.Abs(got.P-want.P) > 1e-3 {
+		t.Errorf("P(closed) %.5f from %d nodes, want %.5f", got.P, len(e.rare), want.P)
 	}
 }
 
