@@ -247,6 +247,10 @@ func (e *Posterior) gatherRare() {
 // rarest is the probability below which integration promises nothing.
 var rarest = quadrature.DefaultOptions().Rarest
 
+// unsplit is the relative error of what is summed over nodes without its borders being
+// found: they are known to about a tile.
+const unsplit = 0.1
+
 // Probability of a statement, with the error of the integral. What is below the
 // rarest that is looked for becomes a limit.
 func (e *Posterior) Probability(holds func(outlook.Label) bool) outlook.Share {
@@ -263,7 +267,7 @@ func (e *Posterior) Probability(holds func(outlook.Label) bool) outlook.Share {
 		add(e.labels[i], c.Value, c.Err)
 	}
 	for _, r := range e.rare {
-		add(r.label, r.weight, r.weight)
+		add(r.label, r.weight, unsplit*r.weight)
 	}
 	family := e.Space.Family()
 	fails := func(l outlook.Label) bool { return !holds(l) }
