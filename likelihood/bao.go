@@ -18,7 +18,6 @@ type BAO struct {
 	z, value []float64
 	quantity []data.Quantity
 	noise    Noise
-	standing Standing
 }
 
 var (
