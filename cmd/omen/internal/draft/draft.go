@@ -16,6 +16,7 @@ import (
 	"encoding/csv"
 	"fmt"
 	"math"
+	"slices"
 	"strconv"
 	"strings"
 
@@ -102,7 +103,11 @@ func Constraints(r *gather.Run) []byte {
 	for _, q := range s.Derived {
 		row(&b, q, math.NaN(), false)
 	}
-	b.WriteString("\\bottomrule\n\\end{tabular}\n")
+	b.WriteString("\\bottomrule\n")
+	if slices.ContainsFunc(s.Parameters, func(q result.Quantity) bool { return q.CutByPrior }) {
+		b.WriteString("\\multicolumn{4}{l}{\\footnotesize $^{*}$ cut by its prior}\\\\\n")
+	}
+	b.WriteString("\\end{tabular}\n")
 	if !s.Complete {
 		b.WriteString("\\par\\smallskip\\textbf{Unfinished: the run stopped before its goal.}\n")
 	}
@@ -126,6 +131,9 @@ func row(b *bytes.Buffer, q result.Quantity, best float64, known bool) {
 	if !q.Constrained {
 		fmt.Fprintf(b, "%s & not constrained & & \\\\\n", name)
 		return
+	}
+	if q.CutByPrior {
+		name += "$^{*}$"
 	}
 	e := newEstimate(q)
 	at := ""

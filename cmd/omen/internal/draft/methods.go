@@ -24,8 +24,11 @@ func Methods(r *gather.Run) []byte {
 	}
 	fmt.Fprintf(&b, "%s\n\n%s\n\n", modelling(r), sampling(r))
 	b.WriteString("References: Goodman & Weare 2010, Commun. Appl. Math. Comput. Sci. 5, 65 (stretch move); " +
-		"Vehtari et al. 2021, Bayesian Anal. 16, 667 (R-hat); " +
-		"Carroll, Press & Turner 1992, ARA&A 30, 499, and Felten & Isaacman 1986, RMP 58, 689 (fates).\n")
+		"Vehtari et al. 2021, Bayesian Anal. 16, 667 (R-hat)")
+	if r.Job.Space.Family().DarkEnergy == likelihood.Constant {
+		b.WriteString("; Carroll, Press & Turner 1992, ARA&A 30, 499, and Felten & Isaacman 1986, RMP 58, 689 (fates)")
+	}
+	b.WriteString(".\n")
 	if len(r.Summary.Warnings) > 0 {
 		b.WriteString("\nNot for the paper, but before it is sent:\n\n")
 		for _, w := range r.Summary.Warnings {
@@ -51,6 +54,9 @@ func modelling(r *gather.Run) string {
 	s += "Priors: " + priors(f) + "."
 	if f.RequireBigBang {
 		s += " Universes without a big bang in their past are excluded."
+	}
+	if f.RequireMatterEra && f.DarkEnergy == likelihood.W0Wa {
+		s += " Universes with w0 + wa ≥ 0, in which dark energy ruled early, are excluded."
 	}
 	return s
 }
@@ -158,13 +164,25 @@ func sampling(r *gather.Run) string {
 	f := r.Summary.Fit
 	s += fmt.Sprintf("The best fit, the point of highest posterior density, has chi-squared %.2f for %d degrees of freedom. ", float64(f.Chi2), f.DoF)
 	s += "We quote posterior means with standard deviations, or medians with central 68% intervals where these are lopsided, and central 95% intervals. " +
-		"The probability of a fate is the share of the posterior whose universes meet it (Carroll, Press & Turner 1992; Felten & Isaacman 1986); "
+		"The probability of a fate is the share of the posterior whose universes meet it" + boundaries(r.Job.Space.Family().DarkEnergy) + "; "
 	s += fates(r.Summary)
 	s += "Computed with omen " + markdown(r.Summary.Version)
 	if m.Ensembles > 0 {
 		s += fmt.Sprintf(", seed %d", m.Seed)
 	}
 	return s + "."
+}
+
+// boundaries says what decides the fates, and where that is an extrapolation.
+func boundaries(d likelihood.DarkEnergy) string {
+	switch d {
+	case likelihood.W:
+		return ", by the zeros of H² ahead and the growth of dark energy"
+	case likelihood.W0Wa:
+		return ", by the zeros of H² ahead and the growth of dark energy (for wa ≠ 0 the far future extrapolates a formula made for the past: " +
+			"wa > 0 ends in a rip whatever w0, wa < 0 lets dark energy die away; we also give the fates with w held at today's value)"
+	}
+	return " (Carroll, Press & Turner 1992; Felten & Isaacman 1986)"
 }
 
 // percent rounds up to one digit.

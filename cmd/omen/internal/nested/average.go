@@ -58,6 +58,8 @@ func (c *Comparison) Average(holds func(outlook.Label) bool) outlook.Share {
 	}
 	s.Err = math.Sqrt(variance)
 	switch { // a limit counts where it is more than the rest
+	case p == 0 && upper == 0 && c.Possible(holds): // the evidence is below the smallest number
+		s.Upper = math.SmallestNonzeroFloat64
 	case upper-p > p:
 		s.P, s.Upper = 0, upper
 	case p-lower > 1-p:

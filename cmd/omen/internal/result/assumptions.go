@@ -50,7 +50,7 @@ func nestedWords(r Run) []string {
 	out := []string{prior + ", and each parameter that one keeps has the prior above"}
 	for _, m := range r.Nested.Models {
 		if m.Own && m.Admitted < 0.9995 {
-			out = append(out, fmt.Sprintf("for the evidence the prior is normalised over the %.1f%% of its ranges in which there was a big bang", 100*m.Admitted))
+			out = append(out, fmt.Sprintf("for the evidence the prior is normalised over the %.1f%% of its ranges that these assumptions admit", 100*m.Admitted))
 		}
 	}
 	return out

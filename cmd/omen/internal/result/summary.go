@@ -72,6 +72,8 @@ type Quantity struct {
 	RHat       Number    `json:"rhat"`
 	// Constrained is false where the marginal posterior is as wide as the prior.
 	Constrained bool `json:"constrained"`
+	// CutByPrior is true where an end of the prior's range cuts the posterior.
+	CutByPrior bool `json:"cut_by_prior,omitempty"`
 
 	mcseSD, mcseMedian float64
 }

@@ -85,11 +85,14 @@ func priorWarnings(r Run, s *Summary, view sampler.View) []string {
 			out = append(out, fmt.Sprintf("%s is decided by its prior: sd %.3g, prior %.3g; the data add little", q.Name, float64(q.SD), free.Prior.SD()))
 			continue
 		}
+		var cut []string
 		if r.Exact != nil {
-			out = append(out, edgeWarnings(free.Prior, q, exactEdges(free.Prior, &r.Exact.Marginals[i]))...)
+			cut = edgeWarnings(free.Prior, q, exactEdges(free.Prior, &r.Exact.Marginals[i]))
 		} else {
-			out = append(out, edgeWarnings(free.Prior, q, drawnEdges(free.Prior, q, view.Coordinate(i)))...)
+			cut = edgeWarnings(free.Prior, q, drawnEdges(free.Prior, q, view.Coordinate(i)))
 		}
+		s.Parameters[i].CutByPrior = len(cut) > 0
+		out = append(out, cut...)
 	}
 	return out
 }
