@@ -56,7 +56,7 @@ func explored(t *testing.T, j *Job, p *likelihood.Posterior, seed uint64) (out [
 	if err != nil {
 		t.Fatal(err)
 	}
-	outcome, err := sampler.Run(t.Context(), densities, chain, sampler.Settings{Seed: seed, Effective: 150, MaxSteps: 1500}, nil)
+	outcome, err := sampler.Run(t.Context(), densities, chain, sampler.Settings{Seed: seed, MaxSteps: 500}, nil)
 	if err != nil {
 		t.Fatal(err)
 	}
