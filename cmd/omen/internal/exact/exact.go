@@ -139,10 +139,17 @@ func (e *Posterior) cut(r *quadrature.Result) bool {
 	return false
 }
 
+// rough is the relative error of an integral of which the reader must know: below it no
+// printed digit suffers.
+const rough = 2e-3
+
 // take takes a result over, from the frame back to the parameters.
 func (e *Posterior) take(r *quadrature.Result) {
 	e.Best, e.LogBest, e.LogEvidence, e.Marginals = r.Mode, r.LogMode, r.LogEvidence, r.Marginals
-	e.Nodes, e.Evaluations, e.Warnings, e.classes = r.Nodes, r.Evaluations, r.Warnings, r.Classes
+	e.Nodes, e.Evaluations, e.classes = r.Nodes, r.Evaluations, r.Classes
+	if err := r.LogEvidence.Err; err > rough {
+		e.Warnings = append(e.Warnings, fmt.Sprintf("the integral is only known to a relative %.1g after %d evaluations: take no more of its digits, narrow the priors, or rely on the chain", err, r.Evaluations))
+	}
 	if e.frame == nil {
 		return
 	}
