@@ -28,7 +28,7 @@ type Trace struct {
 }
 
 // tracePoints is how many times a trace has, not counting the moments that are added.
-const tracePoints = 400
+const tracePoints = 200
 
 // Traces follows the best fit and a sample of equal weights, of which those without
 // a big bang are left out. ahead is how far it looks, in units of 1/H0; 0 goes to the end of

@@ -61,7 +61,7 @@ func quiet(ctx context.Context, err error) error {
 }
 
 // traceUniverses is how many universes the bands of a history are made of.
-const traceUniverses = 600
+const traceUniverses = 400
 
 // Trace is the scale factor through time: the best fit and the bands of the
 // posterior. Nil if the best fit had no big bang.
