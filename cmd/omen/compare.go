@@ -35,7 +35,7 @@ With -o, a new folder holds comparison.html, the figures plane and whiskers
 
 func compareFlags(dir *string) *pflag.FlagSet {
 	f := newFlags("compare", compareHelp)
-	f.StringVarP(dir, "output", "o", "", "folder for the comparison; it must not exist")
+	f.StringVarP(dir, "output", "o", "", "`folder` for the comparison; it must not exist")
 	return f
 }
 

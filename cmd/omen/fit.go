@@ -50,9 +50,9 @@ type fitOptions struct {
 
 func fitFlags(o *fitOptions) *pflag.FlagSet {
 	f := newFlags("fit", fitHelp)
-	f.StringVarP(&o.dir, "output", "o", "", "folder for the result; it must not exist")
-	f.Uint64Var(&o.seed, "seed", 0, "seed of the random numbers, in place of the run file's")
-	f.StringArrayVar(&o.list, "set", nil, "change a key of the run file, as key=value; may be repeated")
+	f.StringVarP(&o.dir, "output", "o", "", "`folder` for the result; it must not exist")
+	f.Uint64Var(&o.seed, "seed", 0, "`seed` of the random numbers, in place of the run file's")
+	f.StringArrayVar(&o.list, "set", nil, "change a key of the run file, as `key=value`; may be repeated")
 	o.add(f)
 	return f
 }
@@ -174,7 +174,7 @@ const inspectHelp = `omen inspect says what a run file reads, and what looks odd
 
 func inspectFlags(sets *[]string) *pflag.FlagSet {
 	f := newFlags("inspect", inspectHelp)
-	f.StringArrayVar(sets, "set", nil, "change a key of the run file, as key=value; may be repeated")
+	f.StringArrayVar(sets, "set", nil, "change a key of the run file, as `key=value`; may be repeated")
 	return f
 }
 

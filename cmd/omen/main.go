@@ -161,11 +161,18 @@ func parse(f *pflag.FlagSet, args []string, stdout io.Writer, want int) (done bo
 		return false, usagef("%s: %v; see omen %s --help", f.Name(), err, f.Name())
 	}
 	if asked, _ := f.GetBool("help"); asked {
-		fmt.Fprintf(stdout, "%s\n%s", f.Lookup("help").Annotations["text"][0], f.FlagUsagesWrapped(80))
+		fmt.Fprintf(stdout, "%s\n%s", f.Lookup("help").Annotations["text"][0], usages(f))
 		return true, nil
 	}
 	if want >= 0 && f.NArg() != want {
 		return false, usagef("%s: expected %d argument(s), found %d; see omen %s --help", f.Name(), want, f.NArg(), f.Name())
 	}
 	return false, nil
+}
+
+// usages lists the flags. A switch is shown by its name alone, without the values
+// that it could be given too.
+func usages(f *pflag.FlagSet) string {
+	const values = "[=true|false]"
+	return strings.ReplaceAll(f.FlagUsagesWrapped(80), values, strings.Repeat(" ", len(values)))
 }

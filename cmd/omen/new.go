@@ -36,9 +36,9 @@ type newOptions struct{ supernovae, covariance, bao string }
 
 func newFlagSet(o *newOptions) *pflag.FlagSet {
 	f := newFlags("new", newHelp)
-	f.StringVar(&o.supernovae, "supernovae", "", "a table of supernovae")
-	f.StringVar(&o.covariance, "covariance", "", "the covariance of the supernovae, or of the BAO ratios without supernovae")
-	f.StringVar(&o.bao, "bao", "", "a table of BAO distance ratios")
+	f.StringVar(&o.supernovae, "supernovae", "", "a `table` of supernovae")
+	f.StringVar(&o.covariance, "covariance", "", "the `covariance` of the supernovae, or of the BAO ratios without supernovae")
+	f.StringVar(&o.bao, "bao", "", "a `table` of BAO distance ratios")
 	return f
 }
 

@@ -65,9 +65,9 @@ func defaultReport() reportOptions { return reportOptions{formats: []string{"pdf
 
 func reportFlags(o *reportOptions) *pflag.FlagSet {
 	f := newFlags("report", reportHelp)
-	f.StringSliceVar(&o.only, "only", nil, "parts to write: "+strings.Join(append(gather.Names(), partPage, partDraft), ", "))
-	f.StringSliceVar(&o.formats, "format", o.formats, "of the figures: "+strings.Join(figure.Formats(), ", "))
-	f.StringVar(&o.width, "width", "", "of the figures: column or page; as each needs unless given")
+	f.StringSliceVar(&o.only, "only", nil, "`parts` to write: "+strings.Join(append(gather.Names(), partPage, partDraft), ", "))
+	f.StringSliceVar(&o.formats, "format", o.formats, "`formats` of the figures: "+strings.Join(figure.Formats(), ", "))
+	f.StringVar(&o.width, "width", "", "`width` of the figures: column or page; as each needs unless given")
 	return f
 }
 
