@@ -46,11 +46,11 @@ type Ages struct {
 }
 
 type ageRow struct {
-	Name  string      `csv:"name"`
-	Z     notNegative `csv:"z"`
-	Age   positive    `csv:"age"`
-	Err   positive    `csv:"error"`
-	Bound Bound       `csv:"bound"`
+	Name  string   `csv:"name"`
+	Z     fromHere `csv:"z"`
+	Age   positive `csv:"age"`
+	Err   positive `csv:"error"`
+	Bound Bound    `csv:"bound"`
 }
 
 // ReadAges reads a table with columns z, age, error and optionally name, bound.

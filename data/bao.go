@@ -48,7 +48,7 @@ type BAO struct {
 }
 
 type baoRow struct {
-	Z        positive `csv:"z"`
+	Z        distant  `csv:"z"`
 	Quantity Quantity `csv:"quantity"`
 	Value    positive `csv:"value"`
 	Err      positive `csv:"error"`

@@ -12,23 +12,33 @@ import (
 	"github.com/gocarina/gocsv"
 )
 
-// rule is what a number must be: finite and above a bound.
+// rule is what a number must be: finite, above a bound and, for a redshift, below another.
 type rule struct {
-	above float64
-	want  string
+	above    float64
+	want     string
+	redshift bool
 }
 
 var (
-	anyNumber   = rule{math.Inf(-1), "a finite number"}
-	aboveZero   = rule{0, "a finite number above 0"}
-	fromZero    = rule{-math.SmallestNonzeroFloat64, "a finite number, 0 or above"}
-	aboveMinus1 = rule{-1, "a finite number above -1"}
+	anyNumber   = rule{above: math.Inf(-1), want: "a finite number"}
+	aboveZero   = rule{above: 0, want: "a finite number above 0"}
+	fromZero    = rule{above: -math.SmallestNonzeroFloat64, want: "a finite number, 0 or above"}
+	redshift0   = rule{fromZero.above, fromZero.want, true}
+	redshift    = rule{aboveZero.above, aboveZero.want, true}
+	redshiftHel = rule{-1, "a finite number above -1", true}
 )
+
+// highest is a redshift that no object is seen at; the last scattering of the microwave background, at about 1090
+// (Planck Collaboration 2020, A&A 641, A6), lies below.
+const highest = 2000
 
 // parse reads a cell that must obey the rule. The error is the message of an Error without its place.
 func (r rule) parse(cell string) (float64, error) {
 	v, ok := parse(cell)
 	if ok && v > r.above && !math.IsInf(v, 0) {
+		if r.redshift && v >= highest {
+			return 0, errors.New(message(clip(cell), "a redshift below 2000", "is this a velocity, or another column?"))
+		}
 		return v, nil
 	}
 	found, do := quoted(cell), "correct the cell, or leave the row out with a cut"
@@ -43,13 +53,23 @@ func (r rule) parse(cell string) (float64, error) {
 	return 0, errors.New(message(found, r.want, do))
 }
 
-// notNegative is a cell of a row struct that must be 0 or above.
-type notNegative float64
+// fromHere is a cell of a row struct that holds a redshift, 0 or above.
+type fromHere float64
 
 // UnmarshalCSV is called by gocsv.
-func (p *notNegative) UnmarshalCSV(cell string) error {
-	v, err := fromZero.parse(cell)
-	*p = notNegative(v)
+func (p *fromHere) UnmarshalCSV(cell string) error {
+	v, err := redshift0.parse(cell)
+	*p = fromHere(v)
+	return err
+}
+
+// distant is a cell of a row struct that holds a redshift above 0.
+type distant float64
+
+// UnmarshalCSV is called by gocsv.
+func (p *distant) UnmarshalCSV(cell string) error {
+	v, err := redshift.parse(cell)
+	*p = distant(v)
 	return err
 }
 

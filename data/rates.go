@@ -11,7 +11,7 @@ type Rates struct {
 }
 
 type rateRow struct {
-	Z   positive `csv:"z"`
+	Z   distant  `csv:"z"`
 	H   positive `csv:"H"`
 	Err positive `csv:"error"`
 }

@@ -43,8 +43,8 @@ func ReadSupernovae(r io.Reader, file string, o Options) (*Supernovae, error) {
 		rule rule
 		into *[]float64
 	}{
-		{"z", aboveZero, &sn.Z},
-		{"z_hel", aboveMinus1, &sn.ZHel},
+		{"z", redshift, &sn.Z},
+		{"z_hel", redshiftHel, &sn.ZHel},
 		{value, anyNumber, &sn.Value},
 		{value + "_err", aboveZero, &sn.Err},
 	} {
