@@ -6,6 +6,7 @@ import (
 	"math"
 	"slices"
 	"strings"
+	"time"
 
 	"omen/data"
 	"omen/likelihood"
@@ -84,7 +85,7 @@ func (r *Run) checkWords() error {
 func (r *Run) checkData(i int) error {
 	d, key := &r.Data[i], fmt.Sprintf("data.%d", i+1)
 	if d.Kind == "" {
-		return r.Errorf(key, "the table has no kind; write kind = %q", strings.Join(Kinds(), `" or "`))
+		return r.Errorf(key, "the table has no kind; write one of kind = \"%s\"", strings.Join(Kinds(), `", "`))
 	}
 	if err := r.oneOf(key+".kind", d.Kind, Kinds()...); err != nil {
 		return err
@@ -106,37 +107,70 @@ func (r *Run) checkData(i int) error {
 	if d.Kind != "supernovae" && (d.Offset != nil || d.StandsFor != nil) {
 		return r.Errorf(key, "offset and stands-for belong to supernovae, this table is of kind %q; remove them", d.Kind)
 	}
-	if d.StandsFor != nil && !(d.StandsFor.Rows > 0) {
-		return r.Errorf(key+".stands-for", "stands-for needs rows > 0, found %d", d.StandsFor.Rows)
+	if err := r.checkStandsFor(key+".stands-for", d.StandsFor); err != nil {
+		return err
 	}
 	_, err := r.Offset(i)
 	return err
 }
 
+func (r *Run) checkStandsFor(key string, s *StandsFor) error {
+	switch {
+	case s == nil:
+		return nil
+	case s.Rows < 1:
+		return r.Errorf(key, "%s.rows: found %d, expected the number of measurements, 1 or more", key, s.Rows)
+	case !(s.Chi2 >= 0) || math.IsInf(s.Chi2, 0):
+		return r.Errorf(key, "%s.chi2: found %v, expected a finite number, 0 or more", key, s.Chi2)
+	}
+	return nil
+}
+
 // mostEffective is what the bounded record of a chain can show with some three
-// draws for every effective one; see [sampler.DefaultRecord].
-const mostEffective = 100_000
+// draws for every effective one; see [sampler.DefaultRecord]. The other bounds lie
+// far beyond any use, and well within the memory of a laptop.
+const (
+	mostEffective = 100_000
+	mostEnsembles = 64
+	mostWalkers   = 10_000
+	mostThinning  = 1_000_000
+)
 
 func (r *Run) checkSampling() error {
 	s := r.Sampling
 	if err := r.oneOf("sampling.engine", s.Engine, "both", "chain", "quadrature"); err != nil {
 		return err
 	}
-	switch {
-	case s.Ensembles < 2:
-		return r.Errorf("sampling.ensembles", "found %d ensembles; convergence is judged by comparing at least 2 (4 is the default)", s.Ensembles)
-	case s.Walkers < 0 || s.Walkers%2 == 1:
-		return r.Errorf("sampling.walkers", "found %d walkers; expected an even number, or 0 to choose it", s.Walkers)
-	case s.EffectiveSamples < 100:
-		return r.Errorf("sampling.effective-samples", "found %d; expected at least 100", s.EffectiveSamples)
-	case s.EffectiveSamples > mostEffective:
-		return r.Errorf("sampling.effective-samples", "found %d; expected at most %d, which knows a mean to 0.3%% of its standard deviation", s.EffectiveSamples, mostEffective)
-	case s.RecordEvery < 1:
-		return r.Errorf("sampling.record-every", "found %d; expected at least 1", s.RecordEvery)
-	case s.MaxSteps < 1:
-		return r.Errorf("sampling.max-steps", "found %d; expected at least 1", s.MaxSteps)
+	wrong := func(key string, found int, want string) error {
+		return r.Errorf("sampling."+key, "sampling.%s: found %d; expected %s", key, found, want)
 	}
-	return nil
+	switch {
+	case s.Ensembles < 2 || s.Ensembles > mostEnsembles:
+		return wrong("ensembles", s.Ensembles, fmt.Sprintf("2 to %d, for convergence is judged by comparing them (4 is the default)", mostEnsembles))
+	case s.Walkers < 0 || s.Walkers%2 == 1 || s.Walkers > mostWalkers:
+		return wrong("walkers", s.Walkers, fmt.Sprintf("an even number up to %d, or 0 to choose it", mostWalkers))
+	case s.EffectiveSamples < 100:
+		return wrong("effective-samples", s.EffectiveSamples, "at least 100")
+	case s.EffectiveSamples > mostEffective:
+		return wrong("effective-samples", s.EffectiveSamples, fmt.Sprintf("at most %d, which knows a mean to 0.3%% of its standard deviation", mostEffective))
+	case s.RecordEvery < 1 || s.RecordEvery > mostThinning:
+		return wrong("record-every", s.RecordEvery, fmt.Sprintf("1 to %d", mostThinning))
+	case s.MaxSteps < 1:
+		return wrong("max-steps", s.MaxSteps, "at least 1")
+	}
+	if err := r.checkUnit("sampling.max-time", s.MaxTime); err != nil {
+		return err
+	}
+	return r.checkUnit("sampling.sync-interval", s.SyncInterval)
+}
+
+// checkUnit catches a duration that was written as a bare number, which the decoder
+// takes for nanoseconds.
+func (r *Run) checkUnit(key string, d Duration) error {
+	if d == 0 || d >= Duration(time.Millisecond) {
+		return nil
+	}
+	return r.Errorf(key, "%s: found %v, expected a duration in quotation marks with its unit, such as \"90s\" or \"8h\"", key, time.Duration(d))
 }
 
 // Family builds the family of universes with its priors.
@@ -177,7 +211,7 @@ func (r *Run) radiation(f *likelihood.Family) error {
 		return nil
 	}
 	v, ok := number(r.Universe.Radiation)
-	if !ok || v < 0 || v > 0.1 {
+	if !ok || !(v >= 0 && v <= 0.1) {
 		return r.Errorf(key, "%s: found %v, expected \"from-temperature\" or a density parameter between 0 and 0.1", key, r.Universe.Radiation)
 	}
 	f.Radiation = v
@@ -192,7 +226,10 @@ func (r *Run) parameter(f *likelihood.Family, name string) error {
 	}
 	if v, ok := number(r.Prior[name]); ok {
 		f.Fixed[name] = v
-		return r.checkScale(name, v)
+		if err := r.checkScale(name, v); err != nil {
+			return err
+		}
+		return r.checkFixed(name, v)
 	}
 	spec, ok := r.Prior[name].(map[string]any)
 	if !ok {
@@ -203,11 +240,54 @@ func (r *Run) parameter(f *likelihood.Family, name string) error {
 		return err
 	}
 	f.Free = append(f.Free, likelihood.Parameter{Name: name, Prior: prior})
-	_, hi := prior.Box()
+	lo, hi := prior.Box()
 	if err := r.checkScale(name, hi); err != nil {
 		return err
 	}
-	return r.checkPossible(name, prior)
+	if err := r.checkPossible(name, shapeOf(r.Prior[name]), lo, hi); err != nil {
+		return err
+	}
+	return r.checkSane(name, lo, hi)
+}
+
+// shapeOf is the kind of prior that a parameter has.
+func shapeOf(prior any) string {
+	spec, _ := prior.(map[string]any)
+	for _, k := range sortedKeys(spec) {
+		if k != "within" {
+			return k
+		}
+	}
+	return ""
+}
+
+// sane bounds the parameters generously: beyond lies a slip of the pen or another
+// unit, and arithmetic that overflows.
+var sane = map[string][2]float64{
+	"Om": {0, 100}, "OL": {-100, 100}, "H0": {0, 1e4}, "w0": {-50, 50}, "wa": {-50, 50},
+}
+
+func (r *Run) checkSane(name string, lo, hi float64) error {
+	ends, ok := sane[name]
+	if !ok || lo >= ends[0] && hi <= ends[1] {
+		return nil
+	}
+	found := fmt.Sprintf("%g", lo)
+	if lo != hi {
+		found = fmt.Sprintf("a range of [%g, %g]", lo, hi)
+	}
+	return r.Errorf("prior."+name, "prior.%s: found %s, expected values between %g and %g; a normal prior takes its ends from within = [a, b]", name, found, ends[0], ends[1])
+}
+
+// checkFixed refuses a number that no universe can have.
+func (r *Run) checkFixed(name string, v float64) error {
+	switch {
+	case v < 0 && name == "Om":
+		return r.Errorf("prior.Om", "prior.Om: found %g; matter cannot have a negative density, give 0 or more", v)
+	case v <= 0 && slices.Contains(positive, name):
+		return r.Errorf("prior."+name, "prior.%s: found %g, expected a number above 0", name, v)
+	}
+	return r.checkSane(name, v, v)
 }
 
 // checkScale catches H0 given as h, and numbers that are none.
@@ -224,10 +304,12 @@ func (r *Run) checkScale(name string, v float64) error {
 // positive lists the parameters that no universe has at or below zero.
 var positive = []string{"H0", "hrd", "rd", "ob"}
 
-func (r *Run) checkPossible(name string, p likelihood.Prior) error {
-	lo, hi := p.Box()
+func (r *Run) checkPossible(name, shape string, lo, hi float64) error {
 	if hi <= 0 && (name == "Om" || slices.Contains(positive, name)) {
 		return r.Errorf("prior."+name, "prior.%s: the range [%g, %g] excludes every universe; %s must be able to be positive", name, lo, hi, name)
+	}
+	if lo < 0 && name == "Om" && shape == "normal" {
+		return r.Errorf("prior.Om", "prior.Om: the normal prior reaches down to %g, but matter cannot have a negative density; cut it, for example with within = [0, 1.5]", lo)
 	}
 	if lo < 0 && name == "Om" {
 		return r.Errorf("prior.Om", "prior.Om: found a lower end of %g; matter cannot have a negative density, begin at 0", lo)
@@ -246,7 +328,7 @@ func (r *Run) prior(key string, spec map[string]any) (likelihood.Prior, error) {
 		switch {
 		case k == "within":
 		case !slices.Contains(shapes, k):
-			return likelihood.Prior{}, r.Errorf(key, "%s: unknown prior %q; the nearest is %q (known: flat, normal, log-flat, with within beside normal)", key, k, data.Nearest(k, shapes))
+			return likelihood.Prior{}, r.Errorf(key, "%s: unknown prior %q; the nearest is %q (known: flat, normal, log-flat, with within beside normal)", key, k, nearestShape(k, shapes))
 		case shape != "":
 			return likelihood.Prior{}, r.Errorf(key, "%s: found both %s and %s, expected one", key, shape, k)
 		default:
@@ -265,6 +347,14 @@ func (r *Run) prior(key string, spec map[string]any) (likelihood.Prior, error) {
 		return p, r.Errorf(key, "%s: %s", key, strings.TrimPrefix(err.Error(), r.File+": "))
 	}
 	return p, nil
+}
+
+// nearestShape knows the other names of the normal distribution.
+func nearestShape(name string, shapes []string) string {
+	if strings.HasPrefix(strings.ToLower(name), "gauss") {
+		return "normal"
+	}
+	return data.Nearest(name, shapes)
 }
 
 func (r *Run) shape(key, shape string, a, b float64, within any) (likelihood.Prior, error) {

@@ -6,6 +6,7 @@ import (
 	"fmt"
 	"maps"
 	"reflect"
+	"regexp"
 	"slices"
 	"strconv"
 	"strings"
@@ -20,6 +21,7 @@ import (
 // them) on top. The file is checked first, so that its own mistakes carry its
 // own lines.
 func Parse(file string, text []byte, sets []string) (*Run, error) {
+	text = bytes.TrimPrefix(text, []byte("\xef\xbb\xbf")) // some editors begin UTF-8 with a mark
 	run, err := decode(file, text)
 	if err != nil {
 		return nil, err
@@ -59,13 +61,47 @@ func explain(file string, err error) error {
 	var wrong *toml.DecodeError
 	if errors.As(err, &wrong) {
 		line, _ := wrong.Position()
-		msg := strings.TrimPrefix(wrong.Error(), "toml: ")
+		msg := plain(err)
 		if key := strings.Join(wrong.Key(), "."); key != "" {
 			msg = key + ": " + msg
 		}
 		return &Error{file, line, msg}
 	}
-	return &Error{File: file, Msg: strings.TrimPrefix(err.Error(), "toml: ")}
+	return &Error{File: file, Msg: plain(err)}
+}
+
+// mismatch is how the decoder tells that a value does not fit the Go type meant for it.
+var mismatch = regexp.MustCompile(`^cannot (?:decode|store|assign) (?:a |an )?(?:TOML )?([a-z -]+?) (?:in|into|to) (?:an? )?(?:struct field (\S+) of type )?(\S+)$`)
+
+// plain is a decoder's message without the names of Go's types.
+func plain(err error) string {
+	msg := strings.TrimPrefix(err.Error(), "toml: ")
+	m := mismatch.FindStringSubmatch(msg)
+	if m == nil {
+		return msg
+	}
+	want := "another kind of value"
+	for _, known := range []struct{ prefix, words string }{
+		{"int", "a whole number"}, {"uint", "a whole number, 0 or more"}, {"float", "a number"}, {"string", "text in quotation marks"},
+		{"bool", "true or false"}, {"runfile.Duration", "a duration in quotation marks, such as \"8h\""},
+		{"[]runfile.Data", "tables, each begun by [[data]]"}, {"map[string]string", "pairs such as { z = \"zHD\" }"},
+		{"map", "a table of keys"}, {"runfile.", "a table of keys"}, {"*runfile.", "a table of keys"},
+	} {
+		if strings.HasPrefix(m[3], known.prefix) {
+			want = known.words
+			break
+		}
+	}
+	return "found " + article(m[1]) + ", expected " + want
+}
+
+// article names a kind of TOML value.
+func article(kind string) string {
+	switch kind {
+	case "integer", "array", "inline table":
+		return "an " + kind
+	}
+	return "a " + kind
 }
 
 // keysAt lists the keys that a struct type knows at a path.

@@ -81,7 +81,10 @@ type Duration time.Duration
 // UnmarshalText reads a duration.
 func (d *Duration) UnmarshalText(b []byte) error {
 	v, err := time.ParseDuration(string(b))
-	if err != nil || v < 0 {
+	if err == nil && v < 0 {
+		return fmt.Errorf("found %q, expected a positive duration such as 90s or 8h30m", b)
+	}
+	if err != nil {
 		return fmt.Errorf("found %q, expected a duration such as 90s or 8h30m", b)
 	}
 	*d = Duration(v)

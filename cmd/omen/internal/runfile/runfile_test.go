@@ -49,17 +49,47 @@ func TestMistakes(t *testing.T) {
 		{"templates and a covariance", good + "covariance = \"c.cov\"\ntemplates = \"s.csv\"\n", "my.toml:9: found both templates and a covariance, expected one"},
 		{"offset of another kind", strings.Replace(good, "supernovae", "bao", 1) + "offset = \"free\"\n", "my.toml:5: offset and stands-for belong to supernovae"},
 		{"bad offset", good + "offset = { normal = [-19.3, -1] }\n", "my.toml:8: data.1.offset: found"},
-		{"odd walkers", good + "[sampling]\nwalkers = 33\n", "my.toml:9: found 33 walkers; expected an even number"},
-		{"one ensemble", good + "[sampling]\nensembles = 1\n", "my.toml:9: found 1 ensembles"},
+		{"odd walkers", good + "[sampling]\nwalkers = 33\n", "my.toml:9: sampling.walkers: found 33; expected an even number"},
+		{"one ensemble", good + "[sampling]\nensembles = 1\n", "my.toml:9: sampling.ensembles: found 1; expected 2 to 64"},
 		{"log-flat from zero", strings.Replace(good, "flat = [0, 1]", "log-flat = [0, 1]", 1), "my.toml:2: prior.Om: a log-flat prior needs a positive lower end, found 0"},
 		{"within flat", strings.Replace(good, "[0, 1] }", "[0, 1], within = [0, 1] }", 1), "my.toml:2: prior.Om: within goes with normal"},
 		{"far truncation", strings.Replace(good, "flat = [0, 1] }", "normal = [0.3, 0.01], within = [0.8, 0.9] }", 1), "my.toml:2: prior.Om: the range [0.8, 0.9] lies 50.0 standard deviations"},
+		{"too many walkers", good + "[sampling]\nwalkers = 1000000000\n", `my.toml:9: sampling.walkers: found 1000000000; expected an even number up to 10000`},
+		{"too many ensembles", good + "[sampling]\nensembles = 65\n", `my.toml:9: sampling.ensembles: found 65; expected 2 to 64`},
+		{"too thin", good + "[sampling]\nrecord-every = 2000000\n", `my.toml:9: sampling.record-every: found 2000000; expected 1 to 1000000`},
+		{"no samples", good + "[sampling]\neffective-samples = 0\n", `my.toml:9: sampling.effective-samples: found 0; expected at least 100`},
+		{"radiation of NaN", "[universe]\nradiation = nan\n" + good, `my.toml:2: universe.radiation: found NaN, expected`},
+		{"negative fixed matter", strings.Replace(strings.Replace(good, "{ flat = [0, 1] }", "-1", 1), "OL = 0.7", "OL = { flat = [0, 1] }", 1), `my.toml:2: prior.Om: found -1; matter cannot have a negative density`},
+		{"too much matter", strings.Replace(good, "{ flat = [0, 1] }", "{ flat = [0, 200] }", 1), `my.toml:2: prior.Om: found a range of [0, 200], expected values between 0 and 100`},
+		{"too much lambda", strings.Replace(good, "OL = 0.7", "OL = 1e300", 1), `my.toml:3: prior.OL: found 1e+300, expected values between -100 and 100`},
+		{"a huge H0", strings.Replace(good, "OL = 0.7", "OL = 0.7\nH0 = 70000", 1), `my.toml:4: prior.H0: found 70000, expected values between 0 and 10000`},
+		{"a negative H0", strings.Replace(good, "OL = 0.7", "OL = 0.7\nH0 = -70", 1), `my.toml:4: prior.H0: found -70, expected a number above 0`},
+		{"a huge w0", "[universe]\ndark-energy = \"w\"\n" + strings.Replace(good, "OL = 0.7", "OL = 0.7\nw0 = -51", 1), `my.toml:6: prior.w0: found -51, expected values between -50 and 50`},
+		{"gauss", strings.Replace(good, "{ flat = [0, 1] }", "{ gauss = [0.3, 0.1] }", 1), `my.toml:2: prior.Om: unknown prior "gauss"; the nearest is "normal"`},
+		{"normal below no matter", strings.Replace(good, "{ flat = [0, 1] }", "{ normal = [0.3, 0.1] }", 1), `my.toml:2: prior.Om: the normal prior reaches down to -0.5, but matter cannot have a negative density; cut it, for example with within = [0, 1.5]`},
+		{"no kind", strings.Replace(good, "kind =", "#", 1), `my.toml:5: the table has no kind; write one of kind = "supernovae", "bao", "ages", "rates"`},
+		{"no measurements", good + "stands-for = { rows = 0, chi2 = 1 }\n", `my.toml:8: data.1.stands-for.rows: found 0`},
+		{"an impossible chi2", good + "stands-for = { rows = 9, chi2 = nan }\n", `my.toml:8: data.1.stands-for.chi2: found NaN`},
+		{"a negative chi2", good + "stands-for = { rows = 9, chi2 = -1.0 }\n", `my.toml:8: data.1.stands-for.chi2: found -1`},
+		{"a fraction of samples", good + "[sampling]\neffective-samples = 1e3\n", `my.toml:9: sampling.effective-samples: found a float, expected a whole number`},
+		{"a number for a word", good + "[sampling]\nengine = 1\n", `my.toml:9: sampling.engine: found an integer, expected text in quotation marks`},
+		{"a word for a section", "universe = \"flat\"\n" + good, `my.toml:1: universe: found a string, expected a table of keys`},
+		{"a negative seed", good + "[sampling]\nseed = -1\n", `my.toml:9: sampling.seed`},
+		{"a number for a duration", good + "[sampling]\nmax-time = 90\n", `my.toml:9: sampling.max-time: found 90ns, expected a duration in quotation marks with its unit`},
+		{"a negative duration", good + "[sampling]\nmax-time = \"-1h\"\n", `expected a positive duration`},
 	} {
 		_, err := Parse("my.toml", []byte(c.text), nil)
 		var own *Error
 		if !errors.As(err, &own) || !strings.HasPrefix(err.Error(), c.want) && !strings.Contains(err.Error(), c.want) {
 			t.Errorf("%s:\n got %v\nwant %s", c.name, err, c.want)
 		}
+	}
+}
+
+// Some editors begin a file with a mark that says it is UTF-8.
+func TestByteOrderMark(t *testing.T) {
+	if _, err := Parse("my.toml", []byte("\ufeff"+good), []string{"sampling.seed=7"}); err != nil {
+		t.Error(err)
 	}
 }
 
