@@ -48,6 +48,9 @@ func runCompare(ctx context.Context, args []string, stdout io.Writer) error {
 	if f.NArg() < 2 {
 		return usagef("compare: expected two or more folders of runs, found %d; see omen compare --help", f.NArg())
 	}
+	if f.Changed("output") && dir == "" {
+		return usagef("compare: -o names no folder; give it one, or leave it out")
+	}
 	if dir != "" && !vacant(dir) {
 		return &explore.Refused{Dir: dir, Why: "the folder exists and is not empty; choose another with -o"}
 	}

@@ -63,6 +63,12 @@ func runFit(ctx context.Context, args []string, stdout, stderr io.Writer) error 
 	if done, err := parse(f, args, stdout, 1); done || err != nil {
 		return err
 	}
+	if err := o.check(); err != nil {
+		return err
+	}
+	if f.Changed("output") && o.dir == "" {
+		return usagef("fit: -o names no folder; give it one, or leave it out")
+	}
 	sets := append(o.list, o.sets(f)...)
 	if f.Changed("seed") {
 		sets = append(sets, "sampling.seed="+strconv.FormatUint(o.seed, 10))

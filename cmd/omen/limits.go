@@ -1,6 +1,7 @@
 package main
 
 import (
+	"runtime"
 	"strconv"
 	"time"
 
@@ -27,6 +28,16 @@ func (l *limits) add(f *pflag.FlagSet) {
 	f.BoolVar(&l.noReport, "no-report", false, "leave out figures and pages; the text and summary.json remain")
 	f.BoolVar(&l.noCache, "no-cache", false, "factorise covariances anew, and keep nothing in the user's cache folder")
 	f.IntVar(&l.explore.Threads, "threads", 0, "ensembles that run at the same time; 0: one per processor")
+}
+
+// check refuses a number of threads that means nothing, and takes no more than there
+// are processors: others would wait.
+func (l *limits) check() error {
+	if l.explore.Threads < 0 {
+		return usagef("--threads %d: expected 1 or more, or 0 for one per processor", l.explore.Threads)
+	}
+	l.explore.Threads = min(l.explore.Threads, runtime.GOMAXPROCS(0))
+	return nil
 }
 
 // cache keeps what is slow to compute, unless it is not wanted.

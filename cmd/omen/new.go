@@ -71,11 +71,30 @@ func runNew(args []string, stdout io.Writer) error {
 	if _, err := os.Lstat(dir); !errors.Is(err, os.ErrNotExist) {
 		return usagef("new: %s exists; choose another folder", dir)
 	}
+	if err := readable(o.covariance); err != nil {
+		return err
+	}
 	run, survey, err := o.plan(dir)
 	if err != nil {
 		return err
 	}
 	return run.write(dir, survey, stdout)
+}
+
+// readable refuses a file that is named but cannot be read.
+func readable(path string) error {
+	if path == "" {
+		return nil
+	}
+	f, err := os.Open(path)
+	if err != nil {
+		return usagef("new: cannot read %s: %v", path, err.(*os.PathError).Err)
+	}
+	defer f.Close()
+	if info, err := f.Stat(); err != nil || info.IsDir() {
+		return usagef("new: cannot read %s: it is not a file", path)
+	}
+	return nil
 }
 
 // plan reads the headers of the tables. survey is the example's table, nil where

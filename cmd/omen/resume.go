@@ -28,6 +28,9 @@ func runResume(ctx context.Context, args []string, stdout, stderr io.Writer) err
 	if done, err := parse(f, args, stdout, 1); done || err != nil {
 		return err
 	}
+	if err := l.check(); err != nil {
+		return err
+	}
 	l.explore.Version, l.explore.Cache = version(), l.cache()
 	dir := filepath.Clean(f.Arg(0))
 	run, err := explore.Resume(ctx, dir, l.sets(f), l.explore, stderr)

@@ -31,6 +31,7 @@ type Options struct {
 	Quiet   bool
 	Version string
 	Cache   *cache.Cache // of what is slow to read; nil for none
+	Notice  func(string) // is told by Open if a chain was cut short; nil for none
 }
 
 // Refused is a folder that a run cannot begin or go on in, for a reason that
@@ -90,7 +91,7 @@ func Best(j *job.Job) ([]float64, error) {
 	lo, hi := j.Space.Box()
 	best, _, err := sampler.Maximise(j.Posterior.Evaluator().LogDensity, lo, hi, j.Run.Sampling.Seed)
 	if err != nil {
-		return nil, j.Run.Errorf("prior", "no universe within the priors can be observed as these data were (%v); widen the priors", err)
+		return nil, j.Run.Errorf("prior", "no universe within the priors can be observed as these data were; widen the priors, or check the errors and covariance of the tables")
 	}
 	return best, nil
 }

@@ -34,16 +34,29 @@ func Open(dir string, o Options) (*result.Run, error) {
 	if err != nil {
 		return nil, err
 	}
-	_, err = chainfile.Recover(dir, state, func(step chainfile.Step) error {
+	rec, err := chainfile.Recover(dir, state, func(step chainfile.Step) error {
 		return s.chain.Append(step.Number, step.X, step.LogP, step.Accepted)
 	})
 	if err != nil {
 		return nil, err
 	}
+	o.tellCut(dir, rec)
 	if s.chain.Steps() == 0 {
 		return nil, &Refused{dir, "the run has not made a step yet; there is nothing to report"}
 	}
 	return s.opened(state), nil
+}
+
+// tellCut passes on that a chain was not read to its end. The end of a chain that is
+// being written is half a step at times, which is nothing to tell.
+func (o Options) tellCut(dir string, rec chainfile.Recovered) {
+	if o.Notice == nil || rec.Notice() == "" {
+		return
+	}
+	if _, running, err := chainfile.Running(dir); err == nil && running && rec.Lost == 0 {
+		return
+	}
+	o.Notice(rec.Notice())
 }
 
 // chainless is the run in dir if it is one by quadrature alone, else nil.

@@ -29,8 +29,11 @@ type Run struct {
 }
 
 // Open reads the run in dir as it stands. Its summary is that of summary.json if
-// it belongs to the chain as it is, and made anew if not.
+// it belongs to the chain as it is, and made anew if not. A chain that had to be cut
+// short, for it is damaged, is the first of its warnings.
 func Open(ctx context.Context, dir string, o explore.Options) (*Run, error) {
+	var cut []string
+	o.Notice = func(text string) { cut = append(cut, text) }
 	run, err := explore.Open(dir, o)
 	if err != nil {
 		return nil, err
@@ -52,6 +55,7 @@ func Open(ctx context.Context, dir string, o explore.Options) (*Run, error) {
 		}
 		s = result.Build(*run)
 	}
+	s.Warnings = append(cut, s.Warnings...)
 	return Of(run, s, dir)
 }
 
