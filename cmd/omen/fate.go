@@ -35,7 +35,7 @@ const fromTemperature = "from-temperature"
 type fateOptions struct {
 	u         model.Universe
 	radiation string
-	z         []float64
+	z         redshifts
 	asJSON    bool
 	samples   string
 	columns   []string
@@ -43,13 +43,14 @@ type fateOptions struct {
 
 func fateFlags(o *fateOptions) *pflag.FlagSet {
 	f := newFlags("fate", fateHelp)
-	f.Float64Var(&o.u.Om, "Om", math.NaN(), "density parameter of matter today")
-	f.Float64Var(&o.u.OL, "OL", math.NaN(), "density parameter of dark energy today (without it: flat)")
+	f.Float64Var(&o.u.Om, "Om", 0, "density parameter of matter today")
+	f.Float64Var(&o.u.OL, "OL", 0, "density parameter of dark energy today (without it: flat)")
 	f.Float64Var(&o.u.H0, "H0", 70, "Hubble constant, km/s/Mpc")
 	f.Float64Var(&o.u.W0, "w0", -1, "dark-energy equation of state today")
 	f.Float64Var(&o.u.Wa, "wa", 0, "its change: w(a) = w0 + wa (1-a)")
 	f.StringVar(&o.radiation, "Or", "0", "density parameter of radiation today, or from-temperature")
-	f.Float64SliceVar(&o.z, "z", []float64{0.5, 1, 2, 3}, "redshifts for the table of distances")
+	o.z.z = []float64{0.5, 1, 2, 3}
+	f.Var(&o.z, "z", "redshifts for the table of distances")
 	f.StringVar(&o.samples, "samples", "", "read universes from a posterior sample instead")
 	f.StringSliceVar(&o.columns, "columns", nil, "which columns of it carry what, as Om=omega_m,OL=omega_l,weight=w")
 	f.BoolVar(&o.asJSON, "json", false, "write JSON")
@@ -73,10 +74,10 @@ func runFate(args []string, stdout io.Writer) error {
 		}
 		return o.runSamples(f.Changed("H0"), stdout)
 	}
-	if err := o.complete(); err != nil {
+	if err := o.complete(f.Changed); err != nil {
 		return err
 	}
-	report := destiny(o.u, o.z)
+	report := destiny(o.u, o.z.z)
 	if o.asJSON {
 		enc := json.NewEncoder(stdout)
 		enc.SetIndent("", "  ")
@@ -85,45 +86,95 @@ func runFate(args []string, stdout io.Writer) error {
 	return report.write(stdout)
 }
 
+// redshifts is a flag of numbers between commas. What is given replaces the default; given
+// again it adds to it.
+type redshifts struct {
+	z     []float64
+	given bool
+}
+
+func (r *redshifts) Type() string { return "numbers" }
+
+func (r *redshifts) String() string {
+	words := make([]string, len(r.z))
+	for i, z := range r.z {
+		words[i] = strconv.FormatFloat(z, 'g', -1, 64)
+	}
+	return strings.Join(words, ",")
+}
+
+func (r *redshifts) Set(text string) error {
+	if !r.given {
+		r.z, r.given = nil, true
+	}
+	for _, word := range strings.Split(text, ",") {
+		z, err := strconv.ParseFloat(strings.TrimSpace(word), 64)
+		if err != nil {
+			return fmt.Errorf("found %q, expected redshifts such as 0.5,1,2", word)
+		}
+		r.z = append(r.z, z)
+	}
+	return nil
+}
+
+// Beyond these a number is a slip of the pen rather than a universe.
+const (
+	largestDensity  = 100
+	largestW        = 50
+	largestRedshift = 1e6
+	leastH0         = 10 // below it is h = H0/100
+	largestH0       = 1e4
+)
+
 // complete fills in what the flags left to be decided and checks them.
-func (o *fateOptions) complete() error {
-	if math.IsNaN(o.u.Om) {
+func (o *fateOptions) complete(given func(flag string) bool) error {
+	if !given("Om") {
 		return usagef("--Om is missing; write for example omen fate --Om 0.3 --OL 0.7")
 	}
 	if o.u.Om < 0 {
 		return usagef("--Om %g: matter cannot have a negative density", o.u.Om)
 	}
+	if err := within("Om", o.u.Om, 0, largestDensity); err != nil {
+		return err
+	}
+	if err := within("OL", o.u.OL, -largestDensity, largestDensity); err != nil {
+		return err
+	}
 	if err := o.common(); err != nil {
 		return err
 	}
-	if math.IsNaN(o.u.OL) {
+	if !given("OL") {
 		o.u.OL = 1 - o.u.Om - o.u.Or
 	}
-	for _, z := range o.z {
-		if !(z > 0) || math.IsInf(z, 0) {
-			return usagef("--z %g: expected redshifts above 0", z)
-		}
-	}
-	for _, v := range []float64{o.u.Om, o.u.OL} {
-		if math.IsInf(v, 0) || math.IsNaN(v) {
-			return usagef("expected finite numbers, found %g", v)
+	for _, z := range o.z.z {
+		if !(z > 0 && z <= largestRedshift) {
+			return usagef("--z %g: expected redshifts above 0 and up to %g", z, float64(largestRedshift))
 		}
 	}
 	return nil
 }
 
+// within refuses a flag outside its range; NaN is outside all.
+func within(flag string, x, from, to float64) error {
+	if x >= from && x <= to {
+		return nil
+	}
+	return usagef("--%s %g: expected a number from %g to %g", flag, x, from, to)
+}
+
 // common checks the flags that go with a sample too.
 func (o *fateOptions) common() error {
-	if !(o.u.H0 > 0) || math.IsInf(o.u.H0, 0) {
-		return usagef("--H0 %g: expected a positive number of km/s/Mpc", o.u.H0)
-	}
-	if o.u.H0 < 10 {
+	if o.u.H0 > 0 && o.u.H0 < leastH0 {
 		return usagef("--H0 %g: expected km/s/Mpc; this looks like h = H0/100, write --H0 %g", o.u.H0, 100*o.u.H0)
 	}
-	for _, v := range []float64{o.u.W0, o.u.Wa} {
-		if math.IsInf(v, 0) || math.IsNaN(v) {
-			return usagef("expected finite numbers, found %g", v)
-		}
+	if err := within("H0", o.u.H0, leastH0, largestH0); err != nil {
+		return err
+	}
+	if err := within("w0", o.u.W0, -largestW, largestW); err != nil {
+		return err
+	}
+	if err := within("wa", o.u.Wa, -largestW, largestW); err != nil {
+		return err
 	}
 	return o.setRadiation()
 }
@@ -134,8 +185,8 @@ func (o *fateOptions) setRadiation() error {
 		return nil
 	}
 	v, err := strconv.ParseFloat(o.radiation, 64)
-	if err != nil || !(v >= 0) || math.IsInf(v, 0) {
-		return usagef("--Or %s: expected a density parameter, 0 or more, or from-temperature", o.radiation)
+	if err != nil || !(v >= 0 && v <= largestDensity) {
+		return usagef("--Or %s: expected a density parameter from 0 to 100, or from-temperature", o.radiation)
 	}
 	o.u.Or = v
 	return nil

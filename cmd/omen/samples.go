@@ -1,14 +1,18 @@
 package main
 
 import (
+	"bytes"
+	"cmp"
 	"crypto/sha256"
 	"encoding/hex"
+	"errors"
 	"fmt"
 	"io"
+	"math"
 	"os"
+	"regexp"
+	"slices"
 	"strings"
-
-	"bytes"
 
 	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
@@ -43,14 +47,17 @@ func (o *fateOptions) runSamples(knowsH0 bool, stdout io.Writer) error {
 	if err != nil {
 		return usagef("--samples: cannot read %s: %v", o.samples, err)
 	}
-	values, _, err := data.ReadColumns(plain, o.samples, data.Options{Columns: columns}, sampleColumns...)
+	values, rows, err := data.ReadColumns(plain, o.samples, data.Options{Columns: columns}, sampleColumns...)
 	if err != nil {
+		return asFlags(err)
+	}
+	if err := checkSample(values, rows, columns); err != nil {
 		return err
 	}
 	sum := sha256.Sum256(text)
 	s := result.Sample{Title: "Posterior sample " + o.samples, Version: version(), Weights: values["weight"],
 		KnowsH0: knowsH0 || values["H0"] != nil, Inputs: []result.InputFile{{Path: o.samples, SHA256: hex.EncodeToString(sum[:])}}}
-	if err := o.universes(&s, values); err != nil {
+	if err := o.universes(&s, values, rows); err != nil {
 		return err
 	}
 	summary := result.OfSample(s)
@@ -58,6 +65,17 @@ func (o *fateOptions) runSamples(knowsH0 bool, stdout io.Writer) error {
 		return report.JSON(stdout, summary)
 	}
 	return report.Text(stdout, summary)
+}
+
+// mapping is how a run file maps a column.
+var mapping = regexp.MustCompile(`columns = \{ (\w+) = "([^"]*)" \}`)
+
+// asFlags says in flags what a message says in the words of a run file.
+func asFlags(err error) error {
+	if e, ok := errors.AsType[*data.Error](err); ok {
+		e.Message = mapping.ReplaceAllString(e.Message, "--columns $1=$2")
+	}
+	return err
 }
 
 // columnMap reads --columns Om=omegam,OL=omegal.
@@ -68,41 +86,111 @@ func (o *fateOptions) columnMap() (map[string]string, error) {
 		if !ok || name == "" || column == "" {
 			return nil, usagef("--columns: found %q, expected name=column pairs such as Om=omega_m,OL=omega_l", pair)
 		}
+		if before, twice := m[name]; twice {
+			return nil, usagef("--columns: found %s twice, as %s and as %s; keep one", name, before, column)
+		}
 		m[name] = column
 	}
-	return m, nil
+	return m, noneTwice(m)
 }
 
+// noneTwice refuses a column that would be read as two. One without a mapping goes by its own name.
+func noneTwice(columns map[string]string) error {
+	reader := map[string]string{}
+	for _, c := range sampleColumns {
+		column, mapped := columns[c.Name]
+		if !mapped {
+			column = c.Name
+		}
+		if other, taken := reader[column]; taken {
+			return usagef("--columns: the column %s would be both %s and %s; map each to a column of its own", column, other, c.Name)
+		}
+		reader[column] = c.Name
+	}
+	return nil
+}
+
+// fewestRows is what a sample needs for its correlation to be estimated at all (our choice).
+const fewestRows = 10
+
+// checkSample refuses what cannot be a posterior sample in our units.
+func checkSample(values map[string][]float64, rows data.Selection, columns map[string]string) error {
+	if n := len(rows.Kept); n < fewestRows {
+		return &data.Error{File: rows.File, Message: fmt.Sprintf("found %d rows, expected a posterior sample of at least %d", n, fewestRows)}
+	}
+	for _, c := range []struct {
+		name     string
+		from, to float64
+		hint     string
+	}{
+		{"Om", 0, largestDensity, "is it in percent? divide it by 100, or map another column: --columns Om=NAME"},
+		{"OL", -largestDensity, largestDensity, "is it in percent? divide it by 100, or map another column: --columns OL=NAME"},
+		{"H0", leastH0, largestH0, "is it h = H0/100? multiply it by 100, or map another column: --columns H0=NAME"},
+	} {
+		for i, x := range values[c.name] {
+			if !(x >= c.from && x <= c.to) {
+				return &data.Error{File: rows.File, Line: rows.Lines[i], Column: cmp.Or(columns[c.name], c.name),
+					Message: fmt.Sprintf("found %g, expected %g to %g; %s", x, c.from, c.to, c.hint)}
+			}
+		}
+	}
+	return nil
+}
+
+// contradiction is by how much Om + OL + Or + Ok may miss 1: rounding in a published table.
+const contradiction = 1e-3
+
 // universes makes one of every row. Columns that the sample does not have are the flags'.
-func (o *fateOptions) universes(s *result.Sample, values map[string][]float64) error {
-	om := values["Om"]
+func (o *fateOptions) universes(s *result.Sample, values map[string][]float64, rows data.Selection) error {
+	if w := values["weight"]; w != nil && slices.Max(w) == 0 {
+		return usagef("--samples: all weights in %s are 0; is the column the right one? --columns weight=NAME", o.samples)
+	}
 	at := func(name string, i int, otherwise float64) float64 {
 		if v := values[name]; v != nil {
 			return v[i]
 		}
 		return otherwise
 	}
-	total := 0.0
-	for i := range om {
-		total += at("weight", i, 1)
-		u := model.Universe{Om: om[i], H0: at("H0", i, o.u.H0), W0: at("w0", i, o.u.W0), Wa: at("wa", i, o.u.Wa)}
+	for i, om := range values["Om"] {
+		u := model.Universe{Om: om, H0: at("H0", i, o.u.H0), W0: at("w0", i, o.u.W0), Wa: at("wa", i, o.u.Wa)}
 		if u.Or = at("Or", i, o.u.Or); o.radiation == fromTemperature && values["Or"] == nil {
 			u.Or = model.RadiationFromTemperature(u.H0)
 		}
 		u.OL = at("OL", i, 1-u.Om-u.Or-at("Ok", i, 0))
+		if ok := at("Ok", i, u.Ok()); !(math.Abs(ok-u.Ok()) <= contradiction) {
+			return &data.Error{File: rows.File, Line: rows.Lines[i], Message: fmt.Sprintf(
+				"found Ok = %g, expected 1 - Om - OL - Or = %.6g; leave out OL or Ok, or correct --columns", ok, u.Ok())}
+		}
 		s.Universes = append(s.Universes, u)
 	}
-	if !(total > 0) {
-		return usagef("--samples: all weights in %s are 0; is the column the right one?", o.samples)
-	}
+	return o.describe(s, values)
+}
+
+// describe tells what varies in a sample from what is the same in every row.
+func (o *fateOptions) describe(s *result.Sample, values map[string][]float64) error {
+	ok := values["Ok"]
+	s.Curved = values["OL"] != nil || ok != nil && !(constant(ok) && ok[0] == 0)
 	for _, name := range likelihood.Names() {
-		if name == "OL" && values["Ok"] != nil || values[name] != nil && name != "M" {
+		v := values[name]
+		switch {
+		case v != nil && constant(v):
+			s.Notes = append(s.Notes, fmt.Sprintf("%s = %g in every row", name, v[0]))
+		case v != nil, name == "OL" && s.Curved:
 			s.Names = append(s.Names, name)
 		}
+	}
+	if len(s.Names) == 0 {
+		return usagef("--samples: every row of %s is the same universe; give it as omen fate --Om", o.samples)
+	}
+	if slices.Min(values["Om"]) > 5 {
+		s.Warnings = append(s.Warnings, "Om is above 5 in every row: is it in percent? then divide it by 100, or map another column: --columns Om=NAME")
 	}
 	s.Notes = append(s.Notes, fmt.Sprintf("radiation: %s", radiationOf(values, o.radiation)))
 	return nil
 }
+
+// constant is whether a column has one value.
+func constant(x []float64) bool { return slices.Min(x) == slices.Max(x) }
 
 func radiationOf(values map[string][]float64, flag string) string {
 	switch {

@@ -3,6 +3,7 @@ package result
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"omen/cmd/omen/internal/outlook"
 	"omen/likelihood"
@@ -15,11 +16,13 @@ type Sample struct {
 	Title     string
 	Version   string
 	Names     []string // the parameters that it has, in the order of likelihood.Names
+	Curved    bool     // OL is not what makes space flat
 	Universes []model.Universe
 	Weights   []float64 // nil for equal ones
 	KnowsH0   bool      // H0 is that of the universes, not a stand-in
 	Inputs    []InputFile
 	Notes     []string // what was taken for granted
+	Warnings  []string // doubts about the file
 }
 
 // OfSample makes the summary of a sample: constraints, fates and times. Rows that follow
@@ -27,6 +30,8 @@ type Sample struct {
 func OfSample(p Sample) *Summary {
 	s := &Summary{Schema: Schema, Title: p.Title, Version: p.Version, Complete: true, Inputs: p.Inputs}
 	s.Engine.Name = "sample"
+	p.Weights = scaled(p.Weights)
+	s.Warnings = append(s.Warnings, p.Warnings...)
 	f := p.family()
 	least := math.Inf(1)
 	for _, name := range p.Names {
@@ -72,17 +77,28 @@ func defined(d sampler.Draws) sampler.Draws {
 	return d.Weighted(d.Map(func(x float64) float64 { return indicator(!math.IsNaN(x)) }))
 }
 
-// family is what the columns allow.
+// scaled divides weights by the largest: their sum, and that of their squares, stay finite.
+func scaled(weights []float64) []float64 {
+	if weights == nil {
+		return nil
+	}
+	largest := slices.Max(weights)
+	out := make([]float64, len(weights))
+	for i, w := range weights {
+		out[i] = w / largest
+	}
+	return out
+}
+
+// family is the smallest that has all the universes.
 func (p *Sample) family() likelihood.Family {
-	f := likelihood.Family{Flat: true}
-	for _, name := range p.Names {
-		switch name {
-		case "OL":
-			f.Flat = false
-		case "w0":
-			f.DarkEnergy = max(f.DarkEnergy, likelihood.W)
-		case "wa":
+	f := likelihood.Family{Flat: !p.Curved}
+	for _, u := range p.Universes {
+		switch {
+		case u.Wa != 0:
 			f.DarkEnergy = likelihood.W0Wa
+		case u.W0 != -1:
+			f.DarkEnergy = max(f.DarkEnergy, likelihood.W)
 		}
 	}
 	return f
