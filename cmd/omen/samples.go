@@ -179,6 +179,12 @@ func (o *fateOptions) describe(s *result.Sample, values map[string][]float64) er
 			s.Names = append(s.Names, name)
 		}
 	}
+	if u := s.Universes[0]; values["w0"] == nil && u.W0 != -1 {
+		s.Notes = append(s.Notes, fmt.Sprintf("w0 = %g in every row (--w0)", u.W0))
+	}
+	if u := s.Universes[0]; values["wa"] == nil && u.Wa != 0 {
+		s.Notes = append(s.Notes, fmt.Sprintf("wa = %g in every row (--wa)", u.Wa))
+	}
 	if len(s.Names) == 0 {
 		return usagef("--samples: every row of %s is the same universe; give it as omen fate --Om", o.samples)
 	}

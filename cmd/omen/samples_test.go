@@ -76,6 +76,9 @@ func TestSampleFixedColumn(t *testing.T) {
 	if !strings.Contains(text, "wa = 0.1 in every row") || !strings.Contains(text, "w(a) = w0 + wa (1-a)") {
 		t.Error(text)
 	}
+	if text := output(t, "fate", "--samples", file, "--w0", "-0.9"); !strings.Contains(text, "w0 = -0.9 in every row (--w0)") {
+		t.Error(text)
+	}
 	percent := sampleFile(t, "Om", func(i int) string { return fmt.Sprint(30 + i*i%7) })
 	if text := output(t, "fate", "--samples", percent); !strings.Contains(text, "percent") {
 		t.Error(text)
