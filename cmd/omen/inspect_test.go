@@ -110,3 +110,13 @@ func TestNewRecognisesColumns(t *testing.T) {
 	err = run(context.Background(), []string{"fit", filepath.Join(dir, "odd", "odd.toml")}, &bytes.Buffer{}, &bytes.Buffer{})
 	checkMistake(t, "unrecognised columns", err, []string{"odd.csv:1", "no such column"})
 }
+
+// Names that would steer the terminal are shown, not obeyed.
+func TestInspectPrintable(t *testing.T) {
+	dir := folder(t, map[string]string{"run.toml": goodRun + "name = \"x\\u001b[2J\"\n",
+		"sn.csv": strings.Replace(goodTable, "b,0.3", "\"b\n\x1b[2J\",0.3", 1)})
+	got := output(t, "inspect", filepath.Join(dir, "run.toml"))
+	if strings.Contains(got, "\x1b") || !strings.Contains(got, "x�[2J (supernovae)") || !strings.Contains(got, "b��[2J ") {
+		t.Errorf("got %q", got)
+	}
+}

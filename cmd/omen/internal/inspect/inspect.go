@@ -11,6 +11,7 @@ import (
 	"unicode/utf8"
 
 	"omen/cmd/omen/internal/job"
+	"omen/cmd/omen/internal/report"
 	"omen/likelihood"
 
 	"gonum.org/v1/gonum/floats"
@@ -51,7 +52,7 @@ func Write(w io.Writer, j *job.Job, best []float64) error {
 // line writes a labelled line, aligned and broken before column 80.
 func line(b *strings.Builder, label, format string, args ...any) {
 	out := "  " + pad(label, 14)
-	for _, word := range strings.Fields(fmt.Sprintf(format, args...)) {
+	for _, word := range strings.Fields(report.Printable(fmt.Sprintf(format, args...))) {
 		if utf8.RuneCountInString(out)+1+utf8.RuneCountInString(word) > 80 {
 			b.WriteString(out + "\n")
 			out = strings.Repeat(" ", 16)
@@ -62,7 +63,7 @@ func line(b *strings.Builder, label, format string, args ...any) {
 }
 
 func head(b *strings.Builder, t *job.Table) {
-	fmt.Fprintf(b, "%s (%s)\n", t.Name, t.Spec.Kind)
+	fmt.Fprintf(b, "%s (%s)\n", report.Printable(t.Name), t.Spec.Kind)
 	line(b, "file", "%s", t.Spec.Table)
 	s := t.Selection()
 	line(b, "rows", "%d kept of %d", len(s.Kept), s.Read)
@@ -239,6 +240,7 @@ func label(t *job.Table, i int) string {
 	case t.Ages != nil && t.Ages.Name != nil:
 		name = t.Ages.Name[i]
 	}
+	name = report.Printable(name)
 	if r := []rune(name); len(r) > 24 {
 		name = string(r[:23]) + "…"
 	}

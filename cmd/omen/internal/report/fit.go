@@ -20,7 +20,7 @@ func fit(b *strings.Builder, s *result.Summary) {
 	wrap(b, "  ", "at "+strings.Join(best, ", "))
 	if len(f.Tables) > 1 {
 		for _, t := range f.Tables {
-			fmt.Fprintf(b, "  %s chi² %8.2f for %d rows\n", pad(t.Name, 30), float64(t.Chi2), t.Rows)
+			fmt.Fprintf(b, "  %s chi² %8.2f for %d rows\n", pad(Printable(t.Name), 30), float64(t.Chi2), t.Rows)
 		}
 	}
 	b.WriteString("\n")

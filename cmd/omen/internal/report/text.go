@@ -17,7 +17,7 @@ import (
 func Text(w io.Writer, s *result.Summary) error {
 	var b strings.Builder
 	if s.Title != "" {
-		fmt.Fprintf(&b, "%s\n\n", s.Title)
+		fmt.Fprintf(&b, "%s\n\n", Printable(s.Title))
 	}
 	if !s.Complete {
 		b.WriteString("UNFINISHED: this run stopped before its goal; see the warnings.\n\n")
@@ -117,7 +117,7 @@ func list(b *strings.Builder, title string, items []string) {
 	}
 	b.WriteString(title + "\n")
 	for _, item := range items {
-		wrap(b, "  ", item)
+		wrap(b, "  ", Printable(item))
 	}
 	b.WriteString("\n")
 }
