@@ -50,13 +50,13 @@ func TestSessionsAddUp(t *testing.T) {
 		t.Fatal(err)
 	}
 	dir := filepath.Join(t.TempDir(), "run")
-	part, err := Start(t.Context(), load(t, "bao-flat.toml", "sampling.max-time=1ms"), dir, quiet(), io.Discard)
+	part, err := Start(t.Context(), load(t, "bao-flat.toml", "sampling.max-time=20ms", "sampling.effective-samples=100000"), dir, quiet(), io.Discard)
 	if err != nil || !part.OutOfTime || part.Ended() != "time limit" {
 		t.Fatalf("%+v, %v", part, err)
 	}
 	ctx, cancel := context.WithCancel(t.Context())
 	cancel()
-	part, err = Resume(ctx, dir, []string{"sampling.max-time=0s"}, quiet(), io.Discard)
+	part, err = Resume(ctx, dir, []string{"sampling.max-time=0s", "sampling.effective-samples=4000"}, quiet(), io.Discard)
 	if err != nil || part.OutOfTime || part.Ended() != "interrupted" {
 		t.Fatalf("%+v, %v", part, err)
 	}
