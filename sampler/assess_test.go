@@ -7,7 +7,7 @@ import (
 
 // Each criterion alone can hold a run up.
 func TestWhatAChainMustShow(t *testing.T) {
-	good := Convergence{ESS: 5000, RHat: 1.002, Tau: 30}
+	good := Convergence{ESS: 5000, RHat: 1.002, Tau: 15}
 	long := View{dim: 1, walkers: 8, spacing: 2, n: 400, x: make([][]float64, 4)} // 3200 steps in all
 	s := Settings{Effective: 4000}
 	for _, c := range []struct {
@@ -18,14 +18,14 @@ func TestWhatAChainMustShow(t *testing.T) {
 	}{
 		{"all met", good, s, true},
 		{"no goal", good, Settings{}, false},
-		{"too few", Convergence{ESS: 3999, RHat: 1.002, Tau: 30}, s, false},
-		{"unknown ESS", Convergence{ESS: math.NaN(), RHat: 1.002, Tau: 30}, s, false},
-		{"R-hat", Convergence{ESS: 5000, RHat: 1.011, Tau: 30}, s, false},
-		{"unknown R-hat", Convergence{ESS: 5000, RHat: math.NaN(), Tau: 30}, s, false},
-		{"too short for its τ", Convergence{ESS: 5000, RHat: 1.002, Tau: 33}, s, false},
+		{"too few", Convergence{ESS: 3999, RHat: 1.002, Tau: 15}, s, false},
+		{"unknown ESS", Convergence{ESS: math.NaN(), RHat: 1.002, Tau: 15}, s, false},
+		{"R-hat", Convergence{ESS: 5000, RHat: 1.011, Tau: 15}, s, false},
+		{"unknown R-hat", Convergence{ESS: 5000, RHat: math.NaN(), Tau: 15}, s, false},
+		{"too short for its τ", Convergence{ESS: 5000, RHat: 1.002, Tau: 17}, s, false},
 		{"the caller's own", good, Settings{Effective: 4000, Enough: func(View) bool { return false }}, false},
 	} {
-		check := Check{Parameters: []Convergence{good, c.p}, Sample: long}
+		check := Check{Parameters: []Convergence{good, c.p}, Longest: c.p.Tau, Sample: long}
 		if got := check.passes(c.s); got != c.want {
 			t.Errorf("%s: %t, want %t", c.name, got, c.want)
 		}

@@ -6,7 +6,7 @@ import "testing"
 // sees that half of a chain is not enough.
 func TestGlanceAgreesWithAssessment(t *testing.T) {
 	g := gaussian()
-	for _, goal := range []float64{4000, 9000} {
+	for _, goal := range []float64{9000, 15000} {
 		s := Settings{Seed: 5, Effective: goal, MaxSteps: 1e5}
 		c, densities := g.newChain(t, 4, 5, 1, DefaultRecord)
 		out := mustRun(t, t.Context(), densities, c, s, nil)

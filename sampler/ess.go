@@ -127,6 +127,10 @@ func MCSE(d Draws) float64 { return measure(d).mcse }
 // of the mean square deviation, over twice the standard deviation (delta
 // method, common practice).
 func mcseSD(d Draws, m moments) float64 {
-	squares := d.Map(func(x float64) float64 { return (x - m.mean) * (x - m.mean) })
-	return MCSE(squares) / (2 * math.Sqrt(m.variance))
+	return MCSE(m.squares(d)) / (2 * math.Sqrt(m.variance))
+}
+
+// squares returns the squared distances of draws from their mean.
+func (m moments) squares(d Draws) Draws {
+	return d.Map(func(x float64) float64 { return (x - m.mean) * (x - m.mean) })
 }
