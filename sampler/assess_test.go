@@ -7,25 +7,26 @@ import (
 
 // Each criterion alone can hold a run up.
 func TestWhatAChainMustShow(t *testing.T) {
-	good := Convergence{ESS: 5000, RHat: 1.002, Tau: 15}
-	long := View{dim: 1, walkers: 8, spacing: 2, n: 400, x: make([][]float64, 4)} // 3200 steps in all
+	good := Convergence{ESS: 5000, RHat: 1.002, Tau: 30}
 	s := Settings{Effective: 4000}
 	for _, c := range []struct {
 		name string
 		p    Convergence
+		long float64
 		s    Settings
 		want bool
 	}{
-		{"all met", good, s, true},
-		{"no goal", good, Settings{}, false},
-		{"too few", Convergence{ESS: 3999, RHat: 1.002, Tau: 15}, s, false},
-		{"unknown ESS", Convergence{ESS: math.NaN(), RHat: 1.002, Tau: 15}, s, false},
-		{"R-hat", Convergence{ESS: 5000, RHat: 1.011, Tau: 15}, s, false},
-		{"unknown R-hat", Convergence{ESS: 5000, RHat: math.NaN(), Tau: 15}, s, false},
-		{"too short for its τ", Convergence{ESS: 5000, RHat: 1.002, Tau: 17}, s, false},
-		{"the caller's own", good, Settings{Effective: 4000, Enough: func(View) bool { return false }}, false},
+		{"all met", good, 400, s, true},
+		{"no goal", good, 400, Settings{}, false},
+		{"too few", Convergence{ESS: 3999, RHat: 1.002, Tau: 30}, 400, s, false},
+		{"unknown ESS", Convergence{ESS: math.NaN(), RHat: 1.002, Tau: 30}, 400, s, false},
+		{"R-hat", Convergence{ESS: 5000, RHat: 1.011, Tau: 30}, 400, s, false},
+		{"unknown R-hat", Convergence{ESS: 5000, RHat: math.NaN(), Tau: 30}, 400, s, false},
+		{"too short for its τ", good, 399, s, false},
+		{"unknown τ", good, math.NaN(), s, false},
+		{"the caller's own", good, 400, Settings{Effective: 4000, Enough: func(View) bool { return false }}, false},
 	} {
-		check := Check{Parameters: []Convergence{good, c.p}, Longest: c.p.Tau, Sample: long}
+		check := Check{Parameters: []Convergence{good, c.p}, Times: c.long}
 		if got := check.passes(c.s); got != c.want {
 			t.Errorf("%s: %t, want %t", c.name, got, c.want)
 		}

@@ -38,7 +38,7 @@ func AutocorrelationTime(series ...[]float64) float64 {
 			s[t] -= mean
 		}
 	}
-	return window(autocovariance(centred))
+	return window(autocovariance(centred), len(series))
 }
 
 // autocovariance returns the autocovariance, about zero, at lags 0 ≤ l < n,
@@ -70,16 +70,20 @@ func autocovariance(series [][]float64) []float64 {
 	return covariance
 }
 
-// window sums an autocovariance up to Sokal's window.
-func window(covariance []float64) float64 {
+// window sums an autocovariance, averaged over some series, up to Sokal's window
+// M. That it was taken about the mean of the n values themselves makes it too small
+// by σ²τ/n at every lag and the sum by the fraction (2M+1)/n (Wolff 2004, Comput.
+// Phys. Commun. 156, 143, §3; from memory), which is put back.
+func window(covariance []float64, series int) float64 {
 	if len(covariance) == 0 || !(covariance[0] > 0) || math.IsInf(covariance[0], 1) {
 		return math.NaN()
 	}
+	n := float64(len(covariance) * series)
 	tau := 1.0
 	for m := 1; m < len(covariance); m++ {
 		tau += 2 * covariance[m] / covariance[0]
 		if float64(m) >= sokal*max(tau, 1) { // an alternating chain has τ < 1
-			return max(tau, shortest(len(covariance)))
+			return max(tau*(1+float64(2*m+1)/n), shortest(len(covariance)))
 		}
 	}
 	return math.Inf(1)

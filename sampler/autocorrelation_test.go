@@ -57,8 +57,8 @@ func TestAutocorrelationTimeThatCannotBeKnown(t *testing.T) {
 	}
 	// A series much shorter than its τ of 1999 cannot know it, but must not
 	// look long enough.
-	if tau := AutocorrelationTime(ar1(rng, 0.999, 1, 200)...); trustTimes*tau < 200 {
-		t.Errorf("200 values of ρ = 0.999: τ = %v looks trustworthy", tau)
+	if tau := AutocorrelationTime(ar1(rng, 0.999, 1, 2000)...); Trust*tau < 2000 {
+		t.Errorf("2000 values of ρ = 0.999: τ = %v looks trustworthy", tau)
 	}
 	if tau := AutocorrelationTime(); !math.IsNaN(tau) {
 		t.Errorf("no series: τ = %v, want NaN", tau)

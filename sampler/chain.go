@@ -38,8 +38,8 @@ type Chain struct {
 // NewChain makes an empty chain of ensembles that start at the given positions:
 // for each ensemble, a row of dim numbers per walker. It keeps every every-th
 // step, and at most record numbers. It is an error if the ensembles differ in
-// size, are too small, or do not span the space (the stretch move would never
-// leave their plane).
+// size, are too small, or do not span the space (no move would ever leave
+// their plane).
 func NewChain(dim int, start [][]float64, every, record int) (*Chain, error) {
 	if len(start) == 0 {
 		return nil, fmt.Errorf("sampler: a chain needs at least one ensemble")
@@ -329,6 +329,10 @@ func (v View) Accepted(i int) int {
 // Spacing returns the number of steps of the run from one step of the view to
 // the next.
 func (v View) Spacing() int { return v.spacing }
+
+// length is the number of steps of the run that a view covers, in all ensembles
+// together.
+func (v View) length() float64 { return float64(len(v.x) * v.n * v.spacing) }
 
 // Ensembles returns the number of independent ensembles.
 func (v View) Ensembles() int { return len(v.x) }

@@ -6,10 +6,10 @@
 //
 //  1. [Maximise] finds the best fit in a box, [Scatter] places the walkers of
 //     every ensemble around it, wider than the posterior.
-//  2. [Run] moves several independent ensembles of walkers by the
-//     affine-invariant stretch move (one [Ensemble] each, in parallel) and
-//     appends every recorded step to a [Chain]. An [Observer] sees the new rows
-//     and the convergence at every [Check].
+//  2. [Run] moves several independent ensembles of walkers by two
+//     affine-invariant moves (one [Ensemble] each, in parallel) and appends every
+//     recorded step to a [Chain]. An [Observer] sees the new rows and the
+//     convergence at every [Check].
 //  3. A [View] is a part of the chain; the [Check] of a run holds the one to
 //     summarise: after the burn-in, which is read off the chain itself, and
 //     thinned. Nothing is copied.

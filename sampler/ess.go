@@ -43,7 +43,7 @@ func (m *moments) judge(series [][]float64, spacing int) {
 		m.mcse, m.tau = math.NaN(), math.NaN()
 		return
 	}
-	tau := window(covariance)
+	tau := window(covariance, len(series))
 	m.tau = tau * float64(spacing)
 	squared := covariance[0] * tau / float64(len(series)*len(series[0]))
 	m.mcse = math.Sqrt(guard(squared, series))

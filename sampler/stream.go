@@ -31,6 +31,16 @@ func (s *stream) index(n int) int {
 	return int(hi)
 }
 
+// pair returns two different integers in [0, n), n ≥ 2, every ordered pair with
+// the same probability.
+func (s *stream) pair(n int) (int, int) {
+	i, j := s.index(n), s.index(n-1)
+	if j >= i {
+		j++
+	}
+	return i, j
+}
+
 // mix is the step and finaliser of splitmix64 (Steele, Lea & Flood 2014,
 // OOPSLA, doi:10.1145/2714064.2660195; constants from memory): a bijection of
 // the 64-bit integers in which every input bit flips every output bit with

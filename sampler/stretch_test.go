@@ -110,10 +110,11 @@ func TestStepIsAffineInvariant(t *testing.T) {
 	}
 }
 
-// A walker moves along the line to one of the other half: with the halves a
-// thousand apart, hardly a proposal stays near its own.
+// A walker moves along the line to one of the other half, or by 1.68 times the
+// difference of two of them, each in half of the cases: with the halves a thousand
+// apart, and one ten times wider, every proposal tells which.
 func TestHalvesMoveAgainstEachOther(t *testing.T) {
-	start := []float64{0, 0.3, 0.7, 1, 1000, 1000.3, 1000.7, 1001}
+	start := []float64{0, 0.3, 0.7, 1, 1000, 1003, 1007, 1010}
 	var proposals []float64
 	d := func(x []float64) float64 {
 		proposals = append(proposals, x[0])
@@ -126,27 +127,37 @@ func TestHalvesMoveAgainstEachOther(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	near := 0
 	for range 250 {
 		e.Step()
 	}
+	byDifference := 0
 	for i, y := range proposals[len(start):] {
-		home := 0.0
+		own, others := start[i%8], start[4:]
 		if i%8 >= 4 {
-			home = 1000
+			others = start[:4]
+		}
+		if isDifference((y-own)/(2.38/math.Sqrt2), others) {
+			byDifference++
+			continue
 		}
 		// From half way to the other half to as far again beyond.
-		if along := (y - home) / (1000 - 2*home); along < -1.01 || along > 0.51 {
-			t.Fatalf("walker %d, at %v, proposes %v", i%8, home, y)
-		}
-		if math.Abs(y-home) < 3 {
-			near++
+		if along := (y - own) / (others[0] - own); along < -1.01 || along > 0.51 {
+			t.Fatalf("walker %d, at %v, proposes %v", i%8, own, y)
 		}
 	}
-	// z within 0.3% of 1 has a probability of 0.4%.
-	if near > 30 {
-		t.Errorf("%d of 2000 proposals stay with their own half", near)
+	// 2000 cases: ½ ± 0.011.
+	near(t, "share of moves by a difference", float64(byDifference)/2000, 0.5, 0.04)
+}
+
+func isDifference(x float64, of []float64) bool {
+	for i := range of {
+		for j := range of {
+			if i != j && math.Abs(x-(of[i]-of[j])) < 1e-9 {
+				return true
+			}
+		}
 	}
+	return false
 }
 
 // NaN, −Inf and +Inf are no places to go.

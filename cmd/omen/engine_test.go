@@ -48,10 +48,11 @@ func statement(t *testing.T, list []result.Fate, name string) result.Fate {
 }
 
 // Chain and quadrature agree to 0.02 of the width in means, widths, medians and the
-// ends of all intervals, which takes a chain of 40,000 effective samples, and within
-// the chain's own errors.
+// ends of all intervals, which takes a chain of 80,000 effective samples: the ends of
+// the intervals are then known to 0.006, and the worst of some forty is 0.010 to 0.013
+// off (measured with four seeds).
 func TestChainAgainstQuadrature(t *testing.T) {
-	_, _, s := fitted(t, runsFile("fate.toml"), "--effective-samples", "40000", "--set", "fates.nested=false")
+	_, _, s := fitted(t, runsFile("fate.toml"), "--effective-samples", "80000", "--set", "fates.nested=false")
 	d := s.Engine.Largest
 	if s.Engine.Name != "both" || d == nil || !(d.Widths > 0 && d.Widths < 0.02) || !(d.Sigmas < 5) || !(d.MonteCarlo > 0) {
 		t.Errorf("engine %s: %+v", s.Engine.Name, d)
@@ -93,7 +94,8 @@ func TestRareFate(t *testing.T) {
 	if !f.Exact || math.Abs(float64(f.Probability)/1.146e-8-1) > 0.01 || !math.IsNaN(float64(f.Upper95)) {
 		t.Errorf("P(recollapse) = %+v", f)
 	}
-	if c := f.Chain; c == nil || c.Probability != 0 || !(c.Upper95 > 0.0002 && c.Upper95 < 0.00076) {
+	if c := f.Chain; c == nil || c.Probability != 0 ||
+		!(math.Abs(float64(c.Upper95)*float64(s.Sampling.MinESS)/3-1) < 1e-6) || !(c.Upper95 < 3./4000) {
 		t.Errorf("the chain says %+v", f.Chain)
 	}
 	for _, want := range []string{"1.1e-8", "1 - 1.1e-8", "< 0.000"} {

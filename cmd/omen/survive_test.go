@@ -248,7 +248,7 @@ func TestRefusals(t *testing.T) {
 		{"../desi-dr2-bao.cov", "\n0", "\n0", ""},
 		{"run.toml", "[0.01, 0.99]", "[0.01, 0.98]", "run file run.toml: was SHA-256 "},
 		{"run.toml", "seed = 1", "seed = 2", "seed: was 1, is now 2"},
-		{"run.json", `"chain_format": 1`, `"chain_format": 0`, "chain-format version: was 0, is now 1"},
+		{"run.json", `"chain_format": 2`, `"chain_format": 1`, "chain-format version: was 1, is now 2"},
 		{"run.json", `"seed"`, `"sead`, "found broken JSON"},
 		{"run.toml", "table = ", "tabel = ", "run.toml:"},
 	} {

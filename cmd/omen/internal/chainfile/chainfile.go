@@ -40,7 +40,7 @@ const (
 // Format is the version of chain.csv and chain.sums. It is part of [Run] and
 // must grow with any change to either file, to the fields of Run or to the
 // way random numbers are drawn: a chain is never continued across it.
-const Format = 1
+const Format = 2
 
 // Step is the state of every walker after one step.
 type Step struct {

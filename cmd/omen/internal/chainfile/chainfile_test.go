@@ -4,6 +4,7 @@ import (
 	"bytes"
 	"encoding/json"
 	"errors"
+	"fmt"
 	"io/fs"
 	"math"
 	"math/rand/v2"
@@ -382,7 +383,7 @@ func TestCompare(t *testing.T) {
 		t.Errorf("the same run: %v", c)
 	}
 	is := testRun()
-	is.Format, is.Seed, is.Ensembles, is.Walkers, is.Every = 2, 8, 3, 4, 6
+	is.Format, is.Seed, is.Ensembles, is.Walkers, is.Every = Format+1, 8, 3, 4, 6
 	is.Parameters = []string{"Om"}
 	is.RunFile.SHA256 = strings.Repeat("cd", 32)
 	is.Inputs = []Input{{"sn.csv", strings.Repeat("45", 32)}, {"bao.csv", strings.Repeat("67", 32)}}
@@ -391,7 +392,7 @@ func TestCompare(t *testing.T) {
 		got = append(got, c.String())
 	}
 	want := []string{
-		"chain-format version: was 1, is now 2",
+		fmt.Sprintf("chain-format version: was %d, is now %d", Format, Format+1),
 		"seed: was 7, is now 8",
 		"ensembles: was 2, is now 3",
 		"walkers: was 3, is now 4",

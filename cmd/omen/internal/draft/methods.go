@@ -24,6 +24,7 @@ func Methods(r *gather.Run) []byte {
 	}
 	fmt.Fprintf(&b, "%s\n\n%s\n\n", modelling(r), sampling(r))
 	b.WriteString("References: Goodman & Weare 2010, Commun. Appl. Math. Comput. Sci. 5, 65 (stretch move); " +
+		"ter Braak 2006, Stat. Comput. 16, 239 (differential evolution); " +
 		"Vehtari et al. 2021, Bayesian Anal. 16, 667 (R-hat)")
 	if r.Job.Space.Family().DarkEnergy == likelihood.Constant {
 		b.WriteString("; Carroll, Press & Turner 1992, ARA&A 30, 499, and Felten & Isaacman 1986, RMP 58, 689 (fates)")
@@ -153,7 +154,7 @@ func sampling(r *gather.Run) string {
 	for _, q := range r.Summary.Parameters {
 		worst = math.Max(worst, float64(q.MCSE)/float64(q.SD))
 	}
-	s := fmt.Sprintf("The posterior is sampled with the affine-invariant stretch move (Goodman & Weare 2010) in %d independent ensembles of %d walkers, "+
+	s := fmt.Sprintf("The posterior is sampled by affine-invariant moves, half of them stretches (Goodman & Weare 2010) and half differences (differential evolution, ter Braak 2006), in %d independent ensembles of %d walkers, "+
 		"started over-dispersed about the best fit, for %d steps, of which the first %d, chosen from the chain itself, are discarded. ",
 		m.Ensembles, m.Walkers, m.Steps, m.BurnIn)
 	s += fmt.Sprintf("The rank-normalised split R-hat over the ensembles (Vehtari et al. 2021) is at most %.4f, the effective sample size of every parameter at least %.0f; "+

@@ -197,6 +197,10 @@ func (s *session) Checked(c sampler.Check) {
 	if i >= 0 {
 		u.Slowest = s.job.Space.Free()[i].Name
 	}
-	s.forecast.Observe(s.elapsed(), u.Effective)
+	s.forecast.Observe(s.elapsed(), u.Goal*c.Progress(u.Goal))
+	u.Note = ""
+	if u.Effective >= u.Goal && c.Times < sampler.Trust {
+		u.Note = "on until the errors are known"
+	}
 	s.refresh(c.Step)
 }

@@ -37,6 +37,9 @@ func chainWarnings(r Run) []string {
 	if goal := float64(r.Job.Run.Sampling.EffectiveSamples); check.ESS() < goal {
 		add("effective samples %.0f, below the goal of %.0f: intervals are uncertain; run longer", math.Floor(check.ESS()), goal)
 	}
+	if check.Times < sampler.Trust {
+		add("the chain is %.0f autocorrelation times long, below %d: Monte Carlo errors may be too small; run longer", math.Floor(check.Times), sampler.Trust)
+	}
 	return out
 }
 
