@@ -20,6 +20,21 @@ type Run struct {
 	Name string
 }
 
+// Amiss is what keeps a run from being whole: that it stopped before its goal, that
+// its chain was not read to its end.
+func (r Run) Amiss() []string {
+	var list []string
+	if r.Unfinished() {
+		m := r.Summary.Sampling
+		list = append(list, fmt.Sprintf("unfinished: effective samples %.0f (goal %d), R-hat %.4f; omen resume %s goes on",
+			math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), r.Dir))
+	}
+	if r.Cut != "" {
+		list = append(list, r.Cut)
+	}
+	return list
+}
+
 // Quantity is what the runs say about one quantity, nil where a run does not have
 // it or does not constrain it.
 type Quantity struct {

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strings"
 	"testing"
 
 	"omen/cmd/omen/internal/gather"
@@ -72,6 +73,32 @@ func TestShortNames(t *testing.T) {
 		if got := shortNames(runs); !slices.Equal(got, c[1]) {
 			t.Errorf("shortNames(%q) = %q, expected %q", c[0], got, c[1])
 		}
+	}
+}
+
+// A run that is not whole is named with what it lacks, and what a folder or a run
+// file calls it cannot reach the terminal as a command.
+func TestTextOfPartialRuns(t *testing.T) {
+	whole, cut, open := fake(t, "a", true, 0.3, 0.03, 4000, "x"), fake(t, "b", true, 0.35, 0.04, 4000, "y"), fake(t, "c", true, 0.31, 0.03, 900, "z")
+	whole.Summary.Title, cut.Summary.Title = "All of it\x1b[2J", ""
+	cut.Cut = "chain.csv: used up to step 7; dropped the 12 bytes after it: line 3: found \x07, which is long enough for a second line"
+	open.Summary.Complete = false
+	open.Summary.Sampling = result.Sampling{MinESS: 912.7, Goal: 4000, MaxRHat: 1.02}
+	var b strings.Builder
+	if err := New([]*gather.Run{whole, cut, open}).Text(&b); err != nil {
+		t.Fatal(err)
+	}
+	const want = `a  All of it�[2J
+b
+   chain.csv: used up to step 7; dropped the 12 bytes after it: line 3: found �,
+   which is long enough for a second line
+c
+   unfinished: effective samples 912 (goal 4000), R-hat 1.0200; omen resume c
+   goes on
+
+`
+	if head, _, _ := strings.Cut(b.String(), "  mean ± sd"); strings.TrimRight(head, " ") != strings.ReplaceAll(want, `\ufffd`, "\ufffd") {
+		t.Errorf("got\n%s\nexpected\n%s", head, want)
 	}
 }
 

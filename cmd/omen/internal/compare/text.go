@@ -22,11 +22,11 @@ func (c *Comparison) Text(w io.Writer) error {
 		width = max(width, min(utf8.RuneCountInString(r.Name), 30))
 	}
 	for _, r := range c.Runs {
-		note := r.Summary.Title
-		if r.Unfinished() {
-			note = "UNFINISHED  " + note
+		line := pad(shorten(r.Name, width), width) + "  " + shorten(r.Summary.Title, 78-width)
+		b.WriteString(strings.TrimRight(line, " ") + "\n")
+		for _, text := range r.Amiss() {
+			wrap(&b, strings.Repeat(" ", width+2), text)
 		}
-		fmt.Fprintf(&b, "%s  %s\n", pad(shorten(r.Name, width), width), shorten(note, 78-width))
 	}
 	fmt.Fprintf(&b, "\n%-*s  %-19s %-19s %s\n", width+2, "", "mean ± sd", "68% interval", "95% interval")
 	for _, q := range c.Quantities {
@@ -48,6 +48,19 @@ func (c *Comparison) Text(w io.Writer) error {
 	}
 	_, err := io.WriteString(w, b.String())
 	return err
+}
+
+// wrap writes words after an indent, in lines of at most 80 columns where they fit.
+func wrap(b *strings.Builder, indent, text string) {
+	line := indent
+	for _, word := range strings.Fields(report.Printable(text)) {
+		if len(line) > len(indent) && utf8.RuneCountInString(line+word) > 80 {
+			b.WriteString(strings.TrimRight(line, " ") + "\n")
+			line = indent
+		}
+		line += word + " "
+	}
+	b.WriteString(strings.TrimRight(line, " ") + "\n")
 }
 
 func (c *Comparison) pairText(b *strings.Builder, p Pair) {
@@ -96,7 +109,9 @@ func Sigmas(s Shift) string {
 
 func pad(s string, n int) string { return s + strings.Repeat(" ", max(0, n-utf8.RuneCountInString(s))) }
 
+// shorten makes a text fit for n columns of a terminal.
 func shorten(s string, n int) string {
+	s = report.Printable(s)
 	if r := []rune(s); len(r) > n {
 		return string(r[:max(n-1, 0)]) + "…"
 	}

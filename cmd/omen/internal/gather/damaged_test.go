@@ -42,3 +42,29 @@ func TestDamagedChain(t *testing.T) {
 		t.Error("nothing is said of the cut")
 	}
 }
+
+// A run that had been finished and lost most of its chain since is unfinished again.
+func TestDamagedAfterTheGoal(t *testing.T) {
+	j, dir := committed(t, "bao-flat.toml"), filepath.Join(t.TempDir(), "run")
+	j.Run.Sampling.EffectiveSamples = 1000
+	if _, err := explore.Start(t.Context(), j, dir, explore.Options{Quiet: true}, io.Discard); err != nil {
+		t.Fatal(err)
+	}
+	whole, err := Open(t.Context(), dir, explore.Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if whole.Unfinished() || whole.Cut != "" {
+		t.Errorf("whole: unfinished %t, cut %q", whole.Unfinished(), whole.Cut)
+	}
+	if err := os.Truncate(filepath.Join(dir, chainfile.ChainName), 400_000); err != nil {
+		t.Fatal(err)
+	}
+	short, err := Open(t.Context(), dir, explore.Options{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	if !short.Unfinished() || !strings.HasPrefix(short.Cut, "chain.csv: used up to step ") {
+		t.Errorf("cut: unfinished %t, cut %q", short.Unfinished(), short.Cut)
+	}
+}

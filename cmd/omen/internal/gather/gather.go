@@ -26,17 +26,22 @@ type Run struct {
 	Summary *result.Summary
 	Dir     string
 	RunFile []byte // the resolved run file
+	Cut     string // why the chain was not read to its end, empty if it was
 }
 
 // Open reads the run in dir as it stands. Its summary is that of summary.json if
 // it belongs to the chain as it is, and made anew if not. A chain that had to be cut
-// short, for it is damaged, is the first of its warnings.
+// short, for it is damaged, is the first of its warnings; without what its goal
+// needs, the run is unfinished, even if it had once been finished.
 func Open(ctx context.Context, dir string, o explore.Options) (*Run, error) {
-	var cut []string
-	o.Notice = func(text string) { cut = append(cut, text) }
+	cut := ""
+	o.Notice = func(text string) { cut = text }
 	run, err := explore.Open(dir, o)
 	if err != nil {
 		return nil, err
+	}
+	if cut != "" && !run.Outcome.Check.Converged {
+		run.Outcome.Stop = sampler.Interrupted
 	}
 	s, ok := kept(dir, run)
 	if run.Chain == nil { // the figures are made from the integral
@@ -55,8 +60,11 @@ func Open(ctx context.Context, dir string, o explore.Options) (*Run, error) {
 		}
 		s = result.Build(*run)
 	}
-	s.Warnings = append(cut, s.Warnings...)
-	return Of(run, s, dir)
+	r, err := Of(run, s, dir)
+	if err == nil && cut != "" {
+		r.Cut, s.Warnings = cut, append([]string{cut}, s.Warnings...)
+	}
+	return r, err
 }
 
 // Of takes a run that has just ended.

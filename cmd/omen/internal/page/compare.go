@@ -18,13 +18,14 @@ var compareTemplate = template.Must(template.New("compare").Parse(compareText))
 
 // sideBySide is what the template of a comparison shows.
 type sideBySide struct {
-	Title, Version, Unfinished string
-	Style                      template.CSS
-	Runs                       []oneOf
-	Quantities                 []inRuns
-	Figures                    []drawing
-	Missing                    []string
-	Pairs                      []pair
+	Title, Version string
+	Amiss          []string
+	Style          template.CSS
+	Runs           []oneOf
+	Quantities     []inRuns
+	Figures        []drawing
+	Missing        []string
+	Pairs          []pair
 }
 
 type oneOf struct {
@@ -55,18 +56,15 @@ type shift struct {
 // Comparison writes comparison.html.
 func Comparison(w io.Writer, c *compare.Comparison, pictures []*gather.Picture, version string) error {
 	v := sideBySide{Version: version, Style: template.CSS(style)}
-	var titles, open []string
+	var titles []string
 	for _, r := range c.Runs {
 		v.Runs = append(v.Runs, oneOf{r.Name, r.Summary.Title, r.Summary.Warnings})
 		titles = append(titles, r.Name)
-		if r.Unfinished() {
-			open = append(open, r.Name)
+		for _, text := range r.Amiss() {
+			v.Amiss = append(v.Amiss, r.Name+": "+text)
 		}
 	}
 	v.Title = strings.Join(titles, ", ")
-	if len(open) > 0 {
-		v.Unfinished = join(open) + " stopped before the goal"
-	}
 	for _, q := range c.Quantities {
 		rows := inRuns{Symbol: symbol(q.Name), Unit: q.Unit}
 		for i, u := range q.Values {
