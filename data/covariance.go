@@ -82,7 +82,7 @@ func needErrors(m *Matrix, role Role, s Selection, err []float64) error {
 		return &Error{File: s.File, Message: message("no column of errors", "one, as there is no total covariance",
 			"map it, or give the covariance")}
 	case m == nil && len(err) > largestDiagonal:
-		return &Error{File: s.File, Message: message(fmt.Sprintf("%d rows", len(err)),
+		return &Error{File: s.File, Message: message(count(len(err), "row"),
 			fmt.Sprintf("at most %d for a covariance written down", largestDiagonal), "use the errors themselves")}
 	}
 	return nil

@@ -59,7 +59,7 @@ func TestInspectLooksAt(t *testing.T) {
 		if c.want == "" && strings.Contains(got, "look at") || !strings.Contains(got, c.want) {
 			t.Errorf("%s: want %q to look at in\n%s", c.name, c.want, got)
 		}
-		if !strings.Contains(got, "1 names in 2 rows: b (2)") {
+		if !strings.Contains(got, "1 name in 2 rows: b (2)") {
 			t.Errorf("%s: the repeated name is not listed in\n%s", c.name, got)
 		}
 	}

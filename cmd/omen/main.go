@@ -28,6 +28,7 @@ import (
 	"strings"
 	"syscall"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/explore"
 	"omen/cmd/omen/internal/runfile"
 	"omen/data"
@@ -120,7 +121,7 @@ type unfinished struct {
 }
 
 func (u *unfinished) Error() string {
-	return fmt.Sprintf("unfinished (%s) after %d steps; omen resume %s goes on", u.why, u.steps, u.dir)
+	return fmt.Sprintf("unfinished (%s) after %s; omen resume %s goes on", u.why, digits.Count(u.steps, "step"), u.dir)
 }
 
 // status is the exit status of an error; see the package comment.
@@ -165,7 +166,7 @@ func parse(f *pflag.FlagSet, args []string, stdout io.Writer, want int) (done bo
 		return true, nil
 	}
 	if want >= 0 && f.NArg() != want {
-		return false, usagef("%s: expected %d argument(s), found %d; see omen %s --help", f.Name(), want, f.NArg(), f.Name())
+		return false, usagef("%s: expected %s, found %d; see omen %s --help", f.Name(), digits.Count(want, "argument"), f.NArg(), f.Name())
 	}
 	return false, nil
 }

@@ -14,6 +14,7 @@ import (
 	"slices"
 	"strings"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
 	"omen/data"
@@ -116,7 +117,7 @@ const fewestRows = 10
 // checkSample refuses what cannot be a posterior sample in our units.
 func checkSample(values map[string][]float64, rows data.Selection, columns map[string]string) error {
 	if n := len(rows.Kept); n < fewestRows {
-		return &data.Error{File: rows.File, Message: fmt.Sprintf("found %d rows, expected a posterior sample of at least %d", n, fewestRows)}
+		return &data.Error{File: rows.File, Message: fmt.Sprintf("found %s, expected a posterior sample of at least %d", digits.Count(n, "row"), fewestRows)}
 	}
 	for _, c := range []struct {
 		name     string

@@ -9,6 +9,7 @@ import (
 	"path/filepath"
 	"slices"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/gather"
 	"omen/cmd/omen/internal/result"
 	"omen/likelihood"
@@ -164,16 +165,9 @@ func (p Pair) Why() string {
 	case Independent:
 		return "no input in common, taken as independent"
 	case Nested:
-		return inputs(p.Shared) + " in common, one run nested in the other"
+		return digits.Count(p.Shared, "input") + " in common, one run nested in the other"
 	}
-	return inputs(p.Shared) + " in common but not nested: the shifts are at least these"
-}
-
-func inputs(n int) string {
-	if n == 1 {
-		return "1 input"
-	}
-	return fmt.Sprintf("%d inputs", n)
+	return digits.Count(p.Shared, "input") + " in common but not nested: the shifts are at least these"
 }
 
 // Shift is the difference of the means, second minus first.

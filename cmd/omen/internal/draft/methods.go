@@ -49,7 +49,7 @@ func modelling(r *gather.Run) string {
 		}
 	}
 	f := r.Job.Space.Family()
-	s := fmt.Sprintf("We fit %s to %d measurements: %s. ", universe(f), r.Summary.Fit.Rows, strings.Join(data, "; "))
+	s := fmt.Sprintf("We fit %s to %s: %s. ", universe(f), digits.Count(r.Summary.Fit.Rows, "measurement"), strings.Join(data, "; "))
 	s += "The likelihood of each table is Gaussian in the measured quantities; covariances are used in full, by their Cholesky factors. "
 	s += strings.Join(likes, "")
 	s += "Priors: " + priors(f) + "."
@@ -62,13 +62,21 @@ func modelling(r *gather.Run) string {
 	return s
 }
 
+// objects is how many of what a table of some kind has.
+func objects(n int, kind string) string {
+	if kind == "supernovae" && n != 1 {
+		return fmt.Sprintf("%d type Ia supernovae", n)
+	}
+	what := map[string]string{"supernovae": "type Ia supernova", "bao": "BAO distance ratio", "ages": "age of old objects", "rates": "expansion rate"}
+	return digits.Count(n, what[kind])
+}
+
 // table describes one table: what, how many, at which redshifts, with what errors.
 func table(t *job.Table) string {
-	what := map[string]string{"supernovae": "type Ia supernovae", "bao": "BAO distance ratios", "ages": "ages of old objects", "rates": "expansion rates"}[t.Spec.Kind]
 	z := t.Z()
-	n := fmt.Sprintf("%d %s", len(z), what)
+	n := objects(len(z), t.Spec.Kind)
 	if s := t.Spec.StandsFor; s != nil && s.Rows > 0 {
-		n = fmt.Sprintf("%d magnitudes that stand for %d %s", len(z), s.Rows, what)
+		n = digits.Count(len(z), "magnitude") + " in place of " + objects(s.Rows, t.Spec.Kind)
 	}
 	errs := "independent errors"
 	switch {
@@ -76,6 +84,9 @@ func table(t *job.Table) string {
 		errs = "a covariance added to their own errors"
 	case t.Spec.Covariance != "":
 		errs = "their full covariance"
+	case t.Spec.Templates != "":
+		errs = fmt.Sprintf("their own errors and %s (%s), each of an amplitude with a unit normal prior, marginalised analytically",
+			digits.Count(len(t.Systematics), "template of systematic errors"), code(t.Spec.Templates))
 	}
 	s := fmt.Sprintf("%s (%s at redshifts %.4g to %.4g, with %s", markdown(t.Name), n, slices.Min(z), slices.Max(z), errs)
 	if t.Spec.Keep != "" {
@@ -155,15 +166,15 @@ func sampling(r *gather.Run) string {
 		worst = math.Max(worst, float64(q.MCSE)/float64(q.SD))
 	}
 	s := fmt.Sprintf("The posterior is sampled by affine-invariant moves, half of them stretches (Goodman & Weare 2010) and half differences (differential evolution, ter Braak 2006), in %d independent ensembles of %d walkers, "+
-		"started over-dispersed about the best fit, for %d steps, of which the first %d, chosen from the chain itself, are discarded. ",
-		m.Ensembles, m.Walkers, m.Steps, m.BurnIn)
+		"started over-dispersed about the best fit, for %s, of which the first %d, chosen from the chain itself, are discarded. ",
+		m.Ensembles, m.Walkers, digits.Count(m.Steps, "step"), m.BurnIn)
 	s += fmt.Sprintf("The rank-normalised split R-hat over the ensembles (Vehtari et al. 2021) is at most %.4f, the effective sample size of every parameter at least %.0f; "+
 		"Monte Carlo errors of the means are below %s of the standard deviations. ", float64(m.MaxRHat), math.Floor(float64(m.MinESS)), percent(worst))
 	if m.Ensembles == 0 {
 		s = "The posterior is integrated by adaptive quadrature, without a chain. "
 	}
 	f := r.Summary.Fit
-	s += fmt.Sprintf("The best fit, the point of highest posterior density, has chi-squared %.2f for %d degrees of freedom. ", float64(f.Chi2), f.DoF)
+	s += fmt.Sprintf("The best fit, the point of highest posterior density, has chi-squared %.2f for %s. ", float64(f.Chi2), digits.Count(f.DoF, "degree of freedom"))
 	s += "We quote posterior means with standard deviations, or medians with central 68% intervals where these are lopsided, and central 95% intervals. " +
 		"The probability of a fate is the share of the posterior whose universes meet it" + boundaries(r.Job.Space.Family().DarkEnergy) + "; "
 	s += fates(r.Summary)

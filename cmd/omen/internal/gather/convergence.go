@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/figure"
 	"omen/sampler"
 )
@@ -43,8 +44,8 @@ func (r *Run) convergence() (*Picture, error) {
 	m := r.Summary.Sampling
 	caption := "Above, the mean of the walkers of each independent ensemble at every recorded step; shaded steps are discarded as burn-in. " +
 		"Below, the autocorrelation of these means, and over the steps the largest R-hat and the smallest number of effective samples of all parameters, with their goals."
-	alt := fmt.Sprintf("Traces of %d ensembles over %d steps, the first %d burn-in. Effective samples %.0f at least, goal %d; R-hat %.4f at most.",
-		m.Ensembles, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat))
+	alt := fmt.Sprintf("Traces of %d ensembles over %s, the first %d burn-in. Effective samples %.0f at least, goal %d; R-hat %.4f at most.",
+		m.Ensembles, digits.Count(m.Steps, "step"), m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat))
 	return &Picture{Caption: caption, Alt: alt, Wide: true, draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawConvergence(in, w) }}, nil
 }
 

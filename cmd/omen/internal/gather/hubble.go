@@ -7,6 +7,7 @@ import (
 	"slices"
 	"strings"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/figure"
 	"omen/cmd/omen/internal/job"
 	"omen/data"
@@ -243,7 +244,7 @@ func sigmas(t *job.Table, res []likelihood.Residual) []float64 {
 // its rows.
 func tableName(t *job.Table) string {
 	if s := t.Spec.StandsFor; s != nil && s.Rows > 0 {
-		return fmt.Sprintf("%s: %s for %d", t.Name, count(len(t.Z()), "value"), s.Rows)
+		return fmt.Sprintf("%s: %s for %d", t.Name, digits.Count(len(t.Z()), "value"), s.Rows)
 	}
 	return t.Name
 }
@@ -266,10 +267,10 @@ func (h *hubble) alt(in *figure.Hubble) string {
 	f := h.run.Summary.Fit
 	var parts []string
 	for _, t := range f.Tables {
-		parts = append(parts, fmt.Sprintf("%s, %s, chi-squared %.1f", t.Name, count(t.Rows, "row"), float64(t.Chi2)))
+		parts = append(parts, fmt.Sprintf("%s, %s, chi-squared %.1f", t.Name, digits.Count(t.Rows, "row"), float64(t.Chi2)))
 	}
-	return fmt.Sprintf("Measured distances against redshift from %.3g to %.3g with the best fit. %s. In all chi-squared %.1f for %d degrees of freedom.",
-		h.z[0], h.z[len(h.z)-1], strings.Join(parts, "; "), float64(f.Chi2), f.DoF)
+	return fmt.Sprintf("Measured distances against redshift from %.3g to %.3g with the best fit. %s. In all chi-squared %.1f for %s.",
+		h.z[0], h.z[len(h.z)-1], strings.Join(parts, "; "), float64(f.Chi2), digits.Count(f.DoF, "degree of freedom"))
 }
 
 // Outlier is a measurement that is far from the best fit.

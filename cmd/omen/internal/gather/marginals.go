@@ -4,6 +4,7 @@ import (
 	"math"
 
 	"omen/cmd/omen/internal/density"
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/figure"
 	"omen/cmd/omen/internal/result"
 	"omen/likelihood"
@@ -55,7 +56,7 @@ func (r *Run) marginals() (*Picture, error) {
 	caption := "Marginal posterior densities: on the diagonal of each quantity, below it of each pair, with regions of highest density that hold 68% and 95%. " +
 		"Grey with a dotted line: the prior. Triangles and crosses: the best fit."
 	if left > 0 {
-		caption += " " + count(left, "parameter") + " more would not fit."
+		caption += " " + digits.Count(left, "parameter") + " more would not fit."
 	}
 	return &Picture{Caption: caption, Alt: "Marginal posteriors: " + r.Values(names...) + ".", Wide: len(in.Parameters) > 3,
 		draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawMarginals(in, w) }}, nil

@@ -1,7 +1,6 @@
 package gather
 
 import (
-	"fmt"
 	"slices"
 	"strings"
 
@@ -51,12 +50,4 @@ func (r *Run) Values(names ...string) string {
 		}
 	}
 	return strings.Join(out, ", ")
-}
-
-// count is "1 value", "4 values".
-func count(n int, what string) string {
-	if n == 1 {
-		return "1 " + what
-	}
-	return fmt.Sprintf("%d %ss", n, what)
 }

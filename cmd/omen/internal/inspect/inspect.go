@@ -10,6 +10,7 @@ import (
 	"strings"
 	"unicode/utf8"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/job"
 	"omen/cmd/omen/internal/report"
 	"omen/likelihood"
@@ -40,7 +41,8 @@ func Write(w io.Writer, j *job.Job, best []float64) error {
 		}
 		b.WriteString("\n")
 	}
-	fmt.Fprintf(&b, "Best fit: chi² %.2f for %d rows, %d degrees of freedom, at\n ", e.Chi2(best), j.Posterior.Rows(), j.Posterior.DegreesOfFreedom())
+	fmt.Fprintf(&b, "Best fit: chi² %.2f for %s, %s, at\n ", e.Chi2(best),
+		digits.Count(j.Posterior.Rows(), "row"), digits.Count(j.Posterior.DegreesOfFreedom(), "degree of freedom"))
 	for i, p := range j.Space.Free() {
 		fmt.Fprintf(&b, " %s %.5g", p.Name, best[i])
 	}
@@ -74,7 +76,7 @@ func head(b *strings.Builder, t *job.Table) {
 		line(b, "look at", "%v", w)
 	}
 	if f := t.Spec.StandsFor; f != nil {
-		line(b, "stands for", "%d measurements, chi² %.6g more", f.Rows, f.Chi2)
+		line(b, "stands for", "%s, chi² %.6g more", digits.Count(f.Rows, "measurement"), f.Chi2)
 	}
 }
 
@@ -97,7 +99,7 @@ func redshifts(b *strings.Builder, t *job.Table) {
 		}
 		worst = math.Max(worst, math.Abs(z[i]-hel[i]))
 	}
-	line(b, "z − z_hel", "at most %.5f, equal in %d rows", worst, same)
+	line(b, "z − z_hel", "at most %.5f, equal in %s", worst, digits.Count(same, "row"))
 	switch {
 	case same == len(z):
 		line(b, "look at", "z and z_hel agree in every row: was one copied into the other?")
@@ -113,16 +115,19 @@ func repeated(b *strings.Builder, t *job.Table) {
 	}
 	rows := 0
 	var names []string
-	for i, r := range again {
+	for _, r := range again {
 		rows += len(r.Lines)
-		if i < shown {
-			names = append(names, fmt.Sprintf("%s (%d)", r.Name, len(r.Lines)))
-		}
+		names = append(names, fmt.Sprintf("%s (%d)", r.Name, len(r.Lines)))
 	}
-	if len(again) > shown {
-		names = append(names, "…")
+	line(b, "repeated", "%s in %s: %s", digits.Count(len(again), "name"), digits.Count(rows, "row"), few(names))
+}
+
+// few lists the first of some names.
+func few(names []string) string {
+	if len(names) > shown {
+		names = append(slices.Clone(names[:shown]), "…")
 	}
-	line(b, "repeated", "%d names in %d rows: %s", len(again), rows, strings.Join(names, ", "))
+	return strings.Join(names, ", ")
 }
 
 func errorRange(b *strings.Builder, t *job.Table) {
@@ -143,7 +148,12 @@ func spread(x []float64) (lo, median, hi float64) {
 // covariance gives size, symmetry, conditioning, and how the table's own errors
 // compare with the diagonal.
 func covariance(b *strings.Builder, t *job.Table) {
-	if t.Covariance == nil {
+	switch {
+	case len(t.Systematics) > 0:
+		line(b, "templates", "%d in %s: %s", len(t.Systematics), t.Spec.Templates, few(t.Systematics))
+		line(b, "covariance", "the errors squared, and the templates times their transpose")
+		return
+	case t.Covariance == nil:
 		line(b, "covariance", "none: rows are taken as independent")
 		return
 	}

@@ -36,7 +36,9 @@ type Table struct {
 	Rates      *data.Rates
 	Matrix     *data.Matrix  // as in the file, nil where there is none
 	Covariance *mat.SymDense // total and cut, nil where rows are independent
-	Term       likelihood.Term
+
+	Systematics []string // the names of its templates, none where it has no file of them
+	Term        likelihood.Term
 }
 
 // Job is a run with everything that it needs.

@@ -44,6 +44,7 @@ func (j *Job) systematics(key string, t *Table) (noise likelihood.Noise, err err
 	if len(t.Errors()) == 0 {
 		return nil, j.Run.Errorf(key, "%s has no column of errors; templates are added to errors, map the column", t.Spec.Table)
 	}
+	t.Systematics = templates.Names
 	noise, err = likelihood.Systematics(t.Errors(), templates.Values, len(templates.Names))
 	if err != nil {
 		return nil, j.Run.Errorf(key, "%s: %v", t.Spec.Templates, err)

@@ -6,6 +6,7 @@ import (
 	"math"
 	"strings"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/gather"
 	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
@@ -157,8 +158,8 @@ func today(r *gather.Run) template.HTML {
 
 func fit(s *result.Summary) string {
 	f := s.Fit
-	return fmt.Sprintf("The best fit has chi-squared %.2f for %d rows and %d degrees of freedom; a larger one has probability %s.",
-		float64(f.Chi2), f.Rows, f.DoF, chance(float64(f.Probability)))
+	return fmt.Sprintf("The best fit has chi-squared %.2f for %s and %s; a larger one has probability %s.",
+		float64(f.Chi2), digits.Count(f.Rows, "row"), digits.Count(f.DoF, "degree of freedom"), chance(float64(f.Probability)))
 }
 
 func chain(s *result.Summary) string {
@@ -166,8 +167,8 @@ func chain(s *result.Summary) string {
 	if m.Ensembles == 0 {
 		return fmt.Sprintf("The posterior was integrated by quadrature, without a chain: %d evaluations, ln evidence %.2f.", s.Engine.Evaluations, float64(s.Engine.LogEvidence))
 	}
-	return fmt.Sprintf("%d ensembles of %d walkers, %d steps, the first %d discarded as burn-in. Effective samples %.0f at least (goal %d), R-hat %.4f at most. Acceptance %.2f, %d evaluations, seed %d.",
-		m.Ensembles, m.Walkers, m.Steps, m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), float64(m.Acceptance), m.Evaluations, m.Seed) + engine(s.Engine)
+	return fmt.Sprintf("%d ensembles of %d walkers, %s, the first %d discarded as burn-in. Effective samples %.0f at least (goal %d), R-hat %.4f at most. Acceptance %.2f, %d evaluations, seed %d.",
+		m.Ensembles, m.Walkers, digits.Count(m.Steps, "step"), m.BurnIn, math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat), float64(m.Acceptance), m.Evaluations, m.Seed) + engine(s.Engine)
 }
 
 // engine is what an integral says of the chain.

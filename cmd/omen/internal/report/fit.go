@@ -11,8 +11,8 @@ import (
 
 func fit(b *strings.Builder, s *result.Summary) {
 	f := s.Fit
-	wrap(b, "", fmt.Sprintf("Best fit: chi² %.2f, %d rows, %d degrees of freedom, probability %s",
-		float64(f.Chi2), f.Rows, f.DoF, chance(float64(f.Probability))))
+	wrap(b, "", fmt.Sprintf("Best fit: chi² %.2f, %s, %s, probability %s",
+		float64(f.Chi2), digits.Count(f.Rows, "row"), digits.Count(f.DoF, "degree of freedom"), chance(float64(f.Probability))))
 	var best []string
 	for _, q := range s.Parameters {
 		best = append(best, fmt.Sprintf("%s %s", q.Name, digits.Format(float64(f.Best[q.Name]), fine(q))))
@@ -20,7 +20,7 @@ func fit(b *strings.Builder, s *result.Summary) {
 	wrap(b, "  ", "at "+strings.Join(best, ", "))
 	if len(f.Tables) > 1 {
 		for _, t := range f.Tables {
-			fmt.Fprintf(b, "  %s chi² %8.2f for %d rows\n", pad(Printable(t.Name), 30), float64(t.Chi2), t.Rows)
+			fmt.Fprintf(b, "  %s chi² %8.2f for %s\n", pad(Printable(t.Name), 30), float64(t.Chi2), digits.Count(t.Rows, "row"))
 		}
 	}
 	b.WriteString("\n")
@@ -45,7 +45,7 @@ func chance(p float64) string {
 // engine says how the posterior was explored, and whether two ways agree.
 func engine(b *strings.Builder, s *result.Summary) {
 	if m := s.Sampling; m.Steps > 0 {
-		fmt.Fprintf(b, "Chain: %d ensembles of %d walkers, %d steps, the first %d burn-in\n", m.Ensembles, m.Walkers, m.Steps, m.BurnIn)
+		fmt.Fprintf(b, "Chain: %d ensembles of %d walkers, %s, the first %d burn-in\n", m.Ensembles, m.Walkers, digits.Count(m.Steps, "step"), m.BurnIn)
 		fmt.Fprintf(b, "  effective samples %.0f at least (goal %d), R-hat %.4f at most\n", math.Floor(float64(m.MinESS)), m.Goal, float64(m.MaxRHat))
 		fmt.Fprintf(b, "  acceptance %.2f, %d evaluations in %.1f s, seed %d\n", float64(m.Acceptance), m.Evaluations, m.Seconds, m.Seed)
 		if m.DirectShare > 0 {
