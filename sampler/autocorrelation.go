@@ -5,6 +5,7 @@ import (
 	"math/bits"
 
 	"gonum.org/v1/gonum/dsp/fourier"
+	"gonum.org/v1/gonum/floats"
 )
 
 // sokal is the c of the window: the sum over lags stops at the first lag
@@ -38,18 +39,16 @@ func AutocorrelationTime(series ...[]float64) float64 {
 			s[t] -= mean
 		}
 	}
-	return window(autocovariance(centred), len(series))
+	_, tau := correlation(centred)
+	return tau
 }
 
 // autocovariance returns the autocovariance, about zero, at lags 0 ≤ l < n,
-// averaged over series of length n, each sum divided by n. nil if n < 8.
+// averaged over series of length n, each sum divided by n.
 //
 // It goes through the power spectrum (Wiener–Khinchin), with the series padded
 // by as many zeros so that its end does not meet its start.
 func autocovariance(series [][]float64) []float64 {
-	if len(series) == 0 || len(series[0]) < 8 {
-		return nil
-	}
 	n := len(series[0])
 	size := 1 << bits.Len(uint(2*n-1))
 	transform := fourier.NewFFT(size)
@@ -70,23 +69,56 @@ func autocovariance(series [][]float64) []float64 {
 	return covariance
 }
 
-// window sums an autocovariance, averaged over some series, up to Sokal's window
-// M. That it was taken about the mean of the n values themselves makes it too small
-// by σ²τ/n at every lag and the sum by the fraction (2M+1)/n (Wolff 2004, Comput.
-// Phys. Commun. 156, 143, §3; from memory), which is put back.
-func window(covariance []float64, series int) float64 {
-	if len(covariance) == 0 || !(covariance[0] > 0) || math.IsInf(covariance[0], 1) {
-		return math.NaN()
+// fewLags is how many lags are summed one by one before all of them are computed
+// through the spectrum. Most windows close much earlier, and then this is several
+// times faster.
+const fewLags = 256
+
+// lags is the autocovariance of some series as [autocovariance] has it.
+type lags struct {
+	series [][]float64
+	all    []float64 // nil until a long one is asked for
+}
+
+func (c *lags) at(l int) float64 {
+	if l >= fewLags && c.all == nil {
+		c.all = autocovariance(c.series)
 	}
-	n := float64(len(covariance) * series)
-	tau := 1.0
-	for m := 1; m < len(covariance); m++ {
-		tau += 2 * covariance[m] / covariance[0]
+	if c.all != nil {
+		return c.all[l]
+	}
+	sum := 0.0
+	for _, s := range c.series {
+		sum += floats.Dot(s[l:], s[:len(s)-l])
+	}
+	return sum / float64(len(c.series)*len(c.series[0]))
+}
+
+// correlation returns the variance, about zero, and the autocorrelation time of
+// some series of one length, by the sum of their mean autocovariance up to Sokal's
+// window M. That it was taken about the mean of the n values themselves makes it too
+// small by σ²τ/n at every lag and the sum by the fraction (2M+1)/n (Wolff 2004,
+// Comput. Phys. Commun. 156, 143, §3; from memory), which is put back. NaN and
+// infinities are those of [AutocorrelationTime].
+func correlation(series [][]float64) (variance, tau float64) {
+	if len(series) == 0 || len(series[0]) < 8 {
+		return math.NaN(), math.NaN()
+	}
+	c := lags{series: series}
+	variance = c.at(0)
+	if !(variance > 0) || math.IsInf(variance, 1) {
+		return variance, math.NaN()
+	}
+	steps := len(series[0])
+	tau = 1
+	for m := 1; m < steps; m++ {
+		tau += 2 * c.at(m) / variance
 		if float64(m) >= sokal*max(tau, 1) { // an alternating chain has τ < 1
-			return max(tau*(1+float64(2*m+1)/n), shortest(len(covariance)))
+			n := float64(steps * len(series))
+			return variance, max(tau*(1+float64(2*m+1)/n), shortest(steps))
 		}
 	}
-	return math.Inf(1)
+	return variance, math.Inf(1)
 }
 
 // shortest is the least autocorrelation time believed of n steps, 1/log₁₀ n:

@@ -65,12 +65,14 @@ func TestAutocorrelationTimeThatCannotBeKnown(t *testing.T) {
 	}
 }
 
-// The transform must give what the definition gives.
+// The transform must give what the definition gives, and so must lag after lag
+// where the transform takes over.
 func TestAutocovarianceIsItsDefinition(t *testing.T) {
 	rng := rand.New(rand.NewPCG(3, 4))
-	for _, n := range []int{8, 37, 64, 100} {
+	for _, n := range []int{8, 37, 64, 100, fewLags + 2} {
 		series := ar1(rng, 0.6, 3, n)
 		got := autocovariance(series)
+		c := lags{series: series}
 		for l := range n {
 			want := 0.0
 			for _, s := range series {
@@ -78,9 +80,12 @@ func TestAutocovarianceIsItsDefinition(t *testing.T) {
 					want += s[i] * s[i+l] / float64(3*n)
 				}
 			}
-			if math.Abs(got[l]-want) > 1e-13 {
-				t.Errorf("n = %d, lag %d: %v, want %v", n, l, got[l], want)
+			if one := c.at(l); math.Abs(got[l]-want) > 1e-13 || math.Abs(one-want) > 1e-13 {
+				t.Errorf("n = %d, lag %d: %v and %v, want %v", n, l, got[l], one, want)
 			}
+		}
+		if (c.all != nil) != (n > fewLags) {
+			t.Errorf("n = %d: transformed %t", n, c.all != nil)
 		}
 	}
 }

@@ -102,12 +102,13 @@ func glance(c *Chain, s Settings) Check {
 	from := max(0, check.BurnIn/c.spacing)
 	stride := max(1, (c.kept-from)/max(meanRows, c.rowsFor(3*s.Effective)))
 	slowest := 0.0
+	fine := c.View().skip(min(from, c.kept)).Thin(max(1, (c.kept-from)/meanRows))
 	for i := range check.Parameters {
 		var m moments
 		m.mean, m.variance, _ = meanVariance(check.Sample.Coordinate(i))
 		m.judge(c.means(i, from, stride), stride*c.spacing)
 		check.Parameters[i].ESS, check.Parameters[i].Tau = m.ess(), m.tau
-		slowest = longest(slowest, m.tau)
+		slowest = longest(slowest, m.tau, walkersTime(fine.coordinate(i, min(glanceWalkers, fine.walkers))))
 	}
 	check.Times = check.Sample.length() / slowest
 	return check
@@ -156,13 +157,18 @@ func assess(c *Chain, s Settings, rows int) Check {
 	return check
 }
 
-// fewWalkers is how many walkers of each ensemble walkersTime follows.
-const fewWalkers = 8
+// How many walkers of each ensemble are followed one by one, and how many by a
+// glance.
+const (
+	fewWalkers    = 8
+	glanceWalkers = 2
+)
 
-// walkersTime is the autocorrelation time of draws as single walkers show it, in
-// steps of the run. It leaves out how they depend on each other, so errors cannot
-// rest on it, but with as many series it is known so well that a run cannot end
-// where the time of the ensembles' means happens to come out low.
+// walkersTime is the autocorrelation time of draws as the first few walkers of each
+// ensemble show it, in steps of the run. It leaves out how walkers depend on each
+// other, so errors cannot rest on it, but from so many series it is known so well
+// that a run cannot end where the time of the ensembles' means happens to come out
+// low.
 func walkersTime(d Draws) float64 {
 	var series [][]float64
 	for _, x := range d.x {

@@ -35,12 +35,17 @@ func (v View) Coordinate(i int) Draws {
 	if i < 0 || i >= v.dim {
 		panic(fmt.Sprintf("sampler: Coordinate(%d) of %d", i, v.dim))
 	}
-	d := v.draws()
+	return v.coordinate(i, v.walkers)
+}
+
+// coordinate is parameter i of the first walkers of each ensemble.
+func (v View) coordinate(i, walkers int) Draws {
+	d := v.draws(walkers)
 	for m, out := range d.x {
 		for s := range v.n {
 			row := v.x[m][s*v.stride*v.walkers*v.dim:]
-			for k := range v.walkers {
-				out[s*v.walkers+k] = row[k*v.dim+i]
+			for k := range walkers {
+				out[s*walkers+k] = row[k*v.dim+i]
 			}
 		}
 	}
@@ -49,7 +54,7 @@ func (v View) Coordinate(i int) Draws {
 
 // LogDensity returns the log-density along a view.
 func (v View) LogDensity() Draws {
-	d := v.draws()
+	d := v.draws(v.walkers)
 	for m, out := range d.x {
 		for s := range v.n {
 			at := s * v.stride * v.walkers
@@ -78,7 +83,7 @@ const mapRows = 64
 func (v View) MapAll(quantities, threads int, New func() func(x, y []float64)) []Draws {
 	all := make([]Draws, quantities)
 	for q := range all {
-		all[q] = v.draws()
+		all[q] = v.draws(v.walkers)
 	}
 	pieces := (v.n + mapRows - 1) / mapRows
 	parallel(pieces*len(v.x), threads, func() func(int) {
@@ -104,11 +109,11 @@ func (v View) mapPiece(all []Draws, m, from, to int, f func(x, y []float64), y [
 	}
 }
 
-// draws makes empty draws in the shape of a view.
-func (v View) draws() Draws {
-	d := Draws{walkers: v.walkers, spacing: v.spacing, x: make([][]float64, len(v.x))}
+// draws makes empty draws in the shape of a view of so many walkers.
+func (v View) draws(walkers int) Draws {
+	d := Draws{walkers: walkers, spacing: v.spacing, x: make([][]float64, len(v.x))}
 	for m := range d.x {
-		d.x[m] = make([]float64, v.n*v.walkers)
+		d.x[m] = make([]float64, v.n*walkers)
 	}
 	return d
 }

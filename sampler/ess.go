@@ -38,14 +38,13 @@ func measure(d Draws) moments {
 // judge sets what the series of ensemble means, taken about the mean of all and
 // some steps of the run apart, say about the error; NaN if nothing.
 func (m *moments) judge(series [][]float64, spacing int) {
-	covariance := autocovariance(series)
-	if !(m.variance > 0) || math.IsInf(m.variance, 1) || covariance == nil {
+	variance, tau := correlation(series)
+	if !(m.variance > 0) || math.IsInf(m.variance, 1) || math.IsNaN(tau) {
 		m.mcse, m.tau = math.NaN(), math.NaN()
 		return
 	}
-	tau := window(covariance, len(series))
 	m.tau = tau * float64(spacing)
-	squared := covariance[0] * tau / float64(len(series)*len(series[0]))
+	squared := variance * tau / float64(len(series)*len(series[0]))
 	m.mcse = math.Sqrt(guard(squared, series))
 }
 

@@ -2,6 +2,7 @@ package sampler
 
 import (
 	"math"
+	"slices"
 
 	"gonum.org/v1/gonum/stat/distuv"
 )
@@ -27,12 +28,22 @@ func RHat(d Draws) float64 {
 	if halves == nil || d.w != nil {
 		return math.NaN()
 	}
-	bulk := rhat(normalScores(halves))
-	folded := rhat(normalScores(fold(halves)))
+	bulk, folded := bulkAndFolded(halves)
 	if math.IsNaN(bulk) || math.IsNaN(folded) {
 		return math.NaN()
 	}
 	return max(bulk, folded)
+}
+
+// bulkAndFolded are the two kinds of R-hat of chains of one length.
+func bulkAndFolded(chains [][]float64) (bulk, folded float64) {
+	all := slices.Concat(chains...)
+	index := order(all)
+	table := scores(len(all))
+	bulk = rhat(normalScores(all, index, table, len(chains)))
+	all, index = fold(all, index)
+	folded = rhat(normalScores(all, index, table, len(chains)))
+	return bulk, folded
 }
 
 // split returns the first and second half of every ensemble, thinned; nil for
@@ -65,49 +76,63 @@ func split(d Draws) [][]float64 {
 	return halves
 }
 
-// fold returns the distances from the common median.
-func fold(chains [][]float64) [][]float64 {
-	var all []float64
-	for _, c := range chains {
-		all = append(all, c...)
-	}
-	index := order(all)
+// fold returns the distances of values from their median, and the indices that put
+// these in ascending order, given those that do so for the values: outwards from
+// the median on both sides.
+func fold(all []float64, index []uint32) (folded []float64, outwards []uint32) {
 	n := len(all)
 	median := (all[index[(n-1)/2]] + all[index[n/2]]) / 2
-	folded := cloneAll(chains)
-	for _, c := range folded {
-		for i, v := range c {
-			c[i] = math.Abs(v - median)
+	folded, outwards = make([]float64, n), make([]uint32, 0, n)
+	for i, v := range all {
+		folded[i] = math.Abs(v - median)
+	}
+	lo, hi := n/2-1, n/2
+	for len(outwards) < n {
+		if hi == n || lo >= 0 && folded[index[lo]] <= folded[index[hi]] {
+			outwards = append(outwards, index[lo])
+			lo--
+		} else {
+			outwards = append(outwards, index[hi])
+			hi++
 		}
 	}
-	return folded
+	return folded, outwards
 }
 
-// normalScores replaces every value by Φ⁻¹((r − 3/8)/(S + 1/4)), where r is its
-// rank among all S values (Blom 1958; eq. 14 of Vehtari et al. 2021, from
-// memory). Equal values share their mean rank.
-func normalScores(chains [][]float64) [][]float64 {
-	length := len(chains[0])
-	all := make([]float64, 0, len(chains)*length)
-	for _, c := range chains {
-		all = append(all, c...)
+// scores is the normal scores of n ranks, Φ⁻¹((r − 3/8)/(n + 1/4)) for 1 ≤ r ≤ n
+// (Blom 1958; eq. 14 of Vehtari et al. 2021, from memory).
+func scores(n int) []float64 {
+	z := make([]float64, n)
+	for i := range (n + 1) / 2 {
+		z[i] = score(float64(i+1), n)
+		z[n-1-i] = -z[i]
 	}
-	index := order(all)
-	scores := cloneAll(chains)
-	total := float64(len(all))
+	return z
+}
+
+func score(rank float64, n int) float64 {
+	return distuv.UnitNormal.Quantile((rank - 0.375) / (float64(n) + 0.25))
+}
+
+// normalScores replaces every value by the score of its rank, and cuts the result
+// into chains of equal length. index puts the values in order; equal values share
+// their mean rank.
+func normalScores(all []float64, index []uint32, table []float64, chains int) [][]float64 {
+	flat := make([]float64, len(all))
 	for i := 0; i < len(index); {
 		j := i + 1
 		for j < len(index) && all[index[j]] == all[index[i]] {
 			j++
 		}
-		rank := float64(i+1+j) / 2
-		score := distuv.UnitNormal.Quantile((rank - 0.375) / (total + 0.25))
+		z := table[i]
+		if j > i+1 {
+			z = score(float64(i+1+j)/2, len(all))
+		}
 		for ; i < j; i++ {
-			at := int(index[i])
-			scores[at/length][at%length] = score
+			flat[index[i]] = z
 		}
 	}
-	return scores
+	return slices.Collect(slices.Chunk(flat, len(all)/chains))
 }
 
 // rhat is the square root of the variance that all chains suggest together over

@@ -3,6 +3,7 @@ package sampler
 import (
 	"math"
 	"math/rand/v2"
+	"slices"
 	"testing"
 )
 
@@ -42,11 +43,30 @@ func TestRHat(t *testing.T) {
 // Without the folded half, ensembles that differ in width alone look alike.
 func TestRHatNeedsFolding(t *testing.T) {
 	halves := split(shifted(func(_ int, x float64) float64 { return 2 * x }))
-	if r := rhat(normalScores(halves)); r > 1.01 {
-		t.Errorf("bulk R-hat of the same mean = %v, want < 1.01", r)
+	bulk, folded := bulkAndFolded(halves)
+	if bulk > 1.01 {
+		t.Errorf("bulk R-hat of the same mean = %v, want < 1.01", bulk)
 	}
-	if r := rhat(normalScores(fold(halves))); r < 1.02 {
-		t.Errorf("folded R-hat of different widths = %v, want > 1.02", r)
+	if folded < 1.02 {
+		t.Errorf("folded R-hat of different widths = %v, want > 1.02", folded)
+	}
+}
+
+// Folding must leave the values in order, whatever their number and ties.
+func TestFold(t *testing.T) {
+	for _, x := range [][]float64{{1, 2}, {3, 1, 2}, {5, -1, 7, 5}, {2, 2, 2, 9}, {8, 1, 4, 4, 0, 4, -3}} {
+		folded, index := fold(x, order(x))
+		sorted := slices.Clone(x)
+		slices.Sort(sorted)
+		median := (sorted[(len(x)-1)/2] + sorted[len(x)/2]) / 2
+		seen := make([]bool, len(x))
+		for i, at := range index {
+			near(t, "distance", folded[at], math.Abs(x[at]-median), 0)
+			if seen[at] || i > 0 && folded[index[i-1]] > folded[at] {
+				t.Errorf("%v: distances %v in the order %v", x, folded, index)
+			}
+			seen[at] = true
+		}
 	}
 }
 
@@ -83,7 +103,8 @@ func TestSplit(t *testing.T) {
 
 func TestNormalScores(t *testing.T) {
 	// Φ⁻¹((r − 3/8)/(4 + 1/4)) for ranks 1, 2.5, 2.5, 4.
-	got := normalScores([][]float64{{5, -1}, {7, 5}})
+	all := []float64{5, -1, 7, 5}
+	got := normalScores(all, order(all), scores(4), 2)
 	want := [][]float64{{0, -1.0491314}, {1.0491314, 0}}
 	for i := range want {
 		for j := range want[i] {

@@ -24,8 +24,8 @@ func DefaultSettings() Settings {
 	return Settings{Seed: 1, Effective: 4000, MaxSteps: 1e6}
 }
 
-// Observer watches a run. Its methods are called from the goroutine of Run
-// while the ensembles wait.
+// Observer watches a run. Its methods are called one at a time; the ensembles go on
+// while Advanced works, at most until it would be called again.
 type Observer interface {
 	// Advanced gets the rows recorded since the last call, valid only during
 	// the call; there may be none. step is where the run is; the chain already
@@ -80,11 +80,23 @@ func Run(ctx context.Context, densities []Density, c *Chain, s Settings, o Obser
 	if err != nil {
 		return Outcome{}, err
 	}
+	outcome, err := r.run(ctx)
+	if late := r.settle(); err == nil && late != nil {
+		outcome.Stop, err = Interrupted, late
+	}
+	return outcome, err
+}
+
+// run takes the chain to where the run ends.
+func (r *runner) run(ctx context.Context) (Outcome, error) {
+	c, s := r.chain, r.settings
 	for next := dueAt(r.step, c.every); ; {
 		last := r.limit > 0 && r.step >= r.limit
 		if r.step == next || last {
-			check := r.check(last)
+			check, err := r.check(last)
 			switch {
+			case err != nil:
+				return Outcome{Interrupted, check}, err
 			case check.Converged:
 				return Outcome{Converged, check}, nil
 			case last:
@@ -102,8 +114,10 @@ func Run(ctx context.Context, densities []Density, c *Chain, s Settings, o Obser
 }
 
 const (
-	firstCheck = 50   // the step of the first check
-	checkRatio = 1.15 // from one check to the next
+	firstCheck = 50 // the step of the first check
+	earlyRatio = 1.5
+	checkRatio = 1.15 // from one check to the next, once a chain may be long enough
+	hardlyLong = 400  // before that it hardly is
 )
 
 // dueAt returns the first step not before the given one at which a chain is
@@ -115,7 +129,11 @@ func dueAt(step, every int) int {
 	up := func(n int) int { return (n + every - 1) / every * every }
 	due := up(firstCheck)
 	for due < step {
-		due = up(max(due+1, int(float64(due)*checkRatio)))
+		ratio := checkRatio
+		if due < hardlyLong {
+			ratio = earlyRatio
+		}
+		due = up(max(due+1, int(float64(due)*ratio)))
 	}
 	return due
 }
@@ -130,13 +148,17 @@ type runner struct {
 	limit     int // steps, 0 for none
 	stride    int // steps in the next block
 	records   []record
+	before    []int // proposals that each ensemble had accepted at its last record
+
+	// The observer reads one block's records while the next are made.
+	handed chan error // its answer to the last block, nil if it has none
+	spare  []record
 }
 
 // record is what one ensemble recorded in a block.
 type record struct {
 	x, logp  []float64
 	accepted []int // at each recorded step, since the ensemble was made
-	before   int   // the same, at the last step recorded before
 }
 
 func newRunner(densities []Density, c *Chain, s Settings, o Observer) (*runner, error) {
@@ -152,6 +174,8 @@ func newRunner(densities []Density, c *Chain, s Settings, o Observer) (*runner, 
 		limit:     (s.MaxSteps + c.every - 1) / c.every * c.every,
 		stride:    1,
 		records:   make([]record, len(densities)),
+		spare:     make([]record, len(densities)),
+		before:    make([]int, len(densities)),
 	}
 	for m, d := range densities {
 		if c.lastP != nil {
@@ -169,15 +193,18 @@ func newRunner(densities []Density, c *Chain, s Settings, o Observer) (*runner, 
 
 // check judges the chain, in full only where a glance leaves it open or nothing
 // follows, and tells the observer.
-func (r *runner) check(last bool) Check {
+func (r *runner) check(last bool) (Check, error) {
 	check := glance(r.chain, r.settings)
 	if last || !check.hopeless(r.settings) {
 		check = Assess(r.chain, r.settings)
 	}
+	if err := r.settle(); err != nil {
+		return check, err
+	}
 	if r.observer != nil {
 		r.observer.Checked(check)
 	}
-	return check
+	return check, nil
 }
 
 // Blocks between which a run looks up, to record, report and stop, take about
@@ -205,10 +232,32 @@ func (r *runner) block(to int) error {
 	if err := r.append(rows); err != nil {
 		return err
 	}
-	if r.observer != nil {
-		return r.observer.Advanced(r.step, rows)
+	return r.hand(rows)
+}
+
+// hand gives the observer what a block recorded, without waiting for it.
+func (r *runner) hand(rows View) error {
+	if r.observer == nil {
+		return nil
 	}
+	if err := r.settle(); err != nil {
+		return err
+	}
+	step, handed := r.step, make(chan error, 1)
+	r.handed = handed
+	r.records, r.spare = r.spare, r.records
+	go func() { handed <- r.observer.Advanced(step, rows) }()
 	return nil
+}
+
+// settle waits for the observer's answer to the last block.
+func (r *runner) settle() error {
+	if r.handed == nil {
+		return nil
+	}
+	err := <-r.handed
+	r.handed = nil
+	return err
 }
 
 // run takes an ensemble on by n steps and records those that are due.
@@ -251,8 +300,8 @@ func (r *runner) rows(first int) View {
 		v.x = append(v.x, b.x)
 		v.logp = append(v.logp, b.logp)
 		for i, total := range b.accepted {
-			v.accepted[i] += total - b.before
-			b.before = total
+			v.accepted[i] += total - r.before[m]
+			r.before[m] = total
 		}
 	}
 	return v
