@@ -5,6 +5,8 @@ import (
 	"errors"
 	"fmt"
 	"math"
+	"runtime"
+	"sync"
 
 	"omen/cmd/omen/internal/exact"
 	"omen/cmd/omen/internal/outlook"
@@ -45,7 +47,7 @@ func (f *Fitted) BIC() float64 { return evidence.BIC(-f.Chi2/2, f.Parameters, f.
 // it.
 type Own struct {
 	Exact *exact.Posterior // nil if it was not integrated
-	Drawn *outlook.Drawn   // nil without a chain
+	Drawn *outlook.Drawn   // nil without a chain, or beside an integral
 	Best  []float64
 }
 
@@ -64,12 +66,24 @@ type Comparison struct {
 // Compare fits every model that the family of a posterior contains to the same data:
 // by quadrature up to three free parameters, by a chain and bridge sampling beyond.
 func Compare(ctx context.Context, p *likelihood.Posterior, own Own, o Options) (*Comparison, error) {
+	models := Models(p.Space().Family())
+	fits, errs := make([]*Fitted, len(models)), make([]error, len(models))
+	var group sync.WaitGroup
+	free := make(chan struct{}, threads(o))
+	for i, m := range models {
+		free <- struct{}{}
+		group.Go(func() {
+			fits[i], errs[i] = fit(ctx, p, m, own, o)
+			<-free
+		})
+	}
+	group.Wait()
 	c := &Comparison{}
-	for _, m := range Models(p.Space().Family()) {
-		f, err := fit(ctx, p, m, own, o)
-		if err != nil {
-			return nil, fmt.Errorf("%s: %w", m.Words, err)
+	for i, m := range models {
+		if errs[i] != nil {
+			return nil, fmt.Errorf("%s: %w", m.Words, errs[i])
 		}
+		f := fits[i]
 		f.Odds = 1
 		if odds, ok := o.Odds[m.Name]; ok {
 			f.Odds = odds
@@ -77,6 +91,14 @@ func Compare(ctx context.Context, p *likelihood.Posterior, own Own, o Options) (
 		c.Models = append(c.Models, *f)
 	}
 	return c, c.weigh()
+}
+
+// threads is how many models are fitted at a time.
+func threads(o Options) int {
+	if o.Threads > 0 {
+		return o.Threads
+	}
+	return runtime.GOMAXPROCS(0)
 }
 
 // weigh turns evidences and odds into probabilities.

@@ -140,10 +140,14 @@ func fit(r Run) Fit {
 	return f
 }
 
+// directDraws is how many draws directShare looks at, about.
+const directDraws = 10_000
+
 // directShare is the fraction of a view for which the condensed form of the
 // supernovae was not good enough. It is found from the view and not counted along
 // the way, so that it does not depend on interruptions.
 func directShare(p *likelihood.Posterior, view sampler.View, threads int) Number {
+	view = view.Thin(max(1, view.Steps()*view.Ensembles()*view.Walkers()/directDraws))
 	before := p.DirectEvaluations()
 	view.MapAll(1, threads, func() func(x, y []float64) {
 		e := p.Evaluator()

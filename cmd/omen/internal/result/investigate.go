@@ -24,7 +24,7 @@ func (r *Run) Investigate(ctx context.Context) error {
 		return nil
 	}
 	own := nested.Own{Exact: r.Exact, Best: r.Best}
-	if r.Chain != nil {
+	if r.Chain != nil && r.Exact == nil {
 		own.Drawn = nested.Draws(r.Job.Space, r.Outcome.Check, r.Threads)
 	}
 	o := nested.Options{Seed: r.Job.Run.Sampling.Seed, Threads: r.Threads, Odds: r.Job.Run.Fates.Odds}
