@@ -17,15 +17,16 @@ type rule struct {
 	above    float64
 	want     string
 	redshift bool
+	uncut    bool // the caller's user has no cut to leave a row out with
 }
 
 var (
 	anyNumber   = rule{above: math.Inf(-1), want: "a finite number"}
 	aboveZero   = rule{above: 0, want: "a finite number above 0"}
 	fromZero    = rule{above: -math.SmallestNonzeroFloat64, want: "a finite number, 0 or above"}
-	redshift0   = rule{fromZero.above, fromZero.want, true}
-	redshift    = rule{aboveZero.above, aboveZero.want, true}
-	redshiftHel = rule{-1, "a finite number above -1", true}
+	redshift0   = rule{above: fromZero.above, want: fromZero.want, redshift: true}
+	redshift    = rule{above: aboveZero.above, want: aboveZero.want, redshift: true}
+	redshiftHel = rule{above: -1, want: "a finite number above -1", redshift: true}
 )
 
 // highest is a redshift that no object is seen at; the last scattering of the microwave background, at about 1090
@@ -42,6 +43,9 @@ func (r rule) parse(cell string) (float64, error) {
 		return v, nil
 	}
 	found, do := quoted(cell), "correct the cell, or leave the row out with a cut"
+	if r.uncut {
+		do = "correct the cell, or remove the row"
+	}
 	switch {
 	case ok:
 		found = clip(cell)

@@ -16,6 +16,17 @@ type Options struct {
 	// zHD > 0.01 && IS_CALIBRATOR == 0. A column whose name is not an identifier is $env["3rdvar"]. A column is
 	// a number if all its cells are (empty ones count as NaN), otherwise text. Empty keeps all rows.
 	Cut string
+	// Mapping writes an entry of Columns as the user of the caller would, for messages that propose one; nil
+	// writes columns = { z = "zHD" }.
+	Mapping func(name, column string) string
+}
+
+// mapping is an entry of Columns for a message.
+func (o Options) mapping(name, column string) string {
+	if o.Mapping != nil {
+		return o.Mapping(name, column)
+	}
+	return fmt.Sprintf("columns = { %s = %q }", name, column)
 }
 
 // field is a column that a kind of table can have.
@@ -54,7 +65,8 @@ func (h headings) has(name string, columns map[string]string) bool {
 }
 
 // resolve finds the place in the header of every field that the file has.
-func (h headings) resolve(fields []field, columns map[string]string) (map[string]int, error) {
+func (h headings) resolve(fields []field, o Options) (map[string]int, error) {
+	columns := o.Columns
 	if err := h.checkNames(fields, columns); err != nil {
 		return nil, err
 	}
@@ -69,9 +81,9 @@ func (h headings) resolve(fields []field, columns map[string]string) (map[string
 		case i >= 0:
 			places[f.name] = i
 		case mapped:
-			return nil, h.missing(name, "the one mapped to "+f.name, f.name, h.free(fields, columns))
+			return nil, h.missing(name, "the one mapped to "+f.name, f.name, h.free(fields, columns), o)
 		case !f.optional:
-			return nil, h.missing(name, f.what, f.name, h.free(fields, columns))
+			return nil, h.missing(name, f.what, f.name, h.free(fields, columns), o)
 		}
 	}
 	return places, nil
@@ -107,15 +119,15 @@ func (h headings) checkNames(fields []field, columns map[string]string) error {
 
 // missing shows how to map the column most likely meant: one that is known to carry the quantity, else the one
 // whose name is nearest. If none is near it lists a few and leaves the choice to the user.
-func (h headings) missing(name, what, ours string, free []string) error {
+func (h headings) missing(name, what, ours string, free []string, o Options) error {
 	do := "add it"
 	near := byDistance(name, free)
 	if known, ok := Recognise(free)[ours]; ok {
-		do = fmt.Sprintf("the nearest is %q: columns = { %s = %q }", known, ours, known)
+		do = fmt.Sprintf("the nearest is %q: %s", known, o.mapping(ours, known))
 	} else if len(near) > 0 && distance(name, near[0]) <= farthest {
-		do = fmt.Sprintf("the nearest is %q: columns = { %s = %q }", near[0], ours, near[0])
+		do = fmt.Sprintf("the nearest is %q: %s", near[0], o.mapping(ours, near[0]))
 	} else if len(near) > 0 {
-		do = fmt.Sprintf("name one, such as %s: columns = { %s = \"…\" }", strings.Join(near[:min(5, len(near))], ", "), ours)
+		do = fmt.Sprintf("name one, such as %s: %s", strings.Join(near[:min(5, len(near))], ", "), o.mapping(ours, "…"))
 	}
 	return &Error{h.file, h.line, name, message("no such column", what, do)}
 }

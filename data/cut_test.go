@@ -1,6 +1,7 @@
 package data
 
 import (
+	"errors"
 	"strings"
 	"testing"
 
@@ -56,4 +57,32 @@ func TestCuts(t *testing.T) {
 			}
 		}
 	}
+}
+
+// What is wrong with a cut is told apart from what is wrong with a file.
+func TestCutError(t *testing.T) {
+	for _, c := range []struct {
+		cut, in string
+		want    bool
+	}{
+		{"z >", header + "a,0.1,20,0.1\n", true},
+		{"Z > 1", header + "a,0.1,20,0.1\n", true},
+		{"z > 1", header + "a,0.1,20,0.1\n", true},
+		{"int(name) > 1", header + "a,0.1,20,0.1\n", true},
+		{"z > 0", header + "a,0.1,x,0.1\n", false},
+		{"z > 0", header, false},
+	} {
+		_, err := ReadSupernovae(strings.NewReader(c.in), "t.csv", Options{Cut: c.cut})
+		var cut *CutError
+		if err == nil || errors.As(err, &cut) != c.want {
+			t.Errorf("%q: %T, %v; a CutError: expected %t", c.cut, err, err, c.want)
+		}
+	}
+}
+
+// A mapping is proposed in the words of the caller.
+func TestMappingOfTheCaller(t *testing.T) {
+	o := Options{Mapping: func(name, column string) string { return "--" + name + "=" + column }}
+	_, err := ReadSupernovae(strings.NewReader("zHD,mag\n0.1,20\n"), "t.csv", o)
+	wantMessage(t, err, `t.csv:1: column "z": found no such column, expected the redshift in the CMB frame; the nearest is "zHD": --z=zHD`)
 }

@@ -35,5 +35,6 @@
 // # Errors
 //
 // Whatever is wrong with a file is an [*Error]: one line with the file, the line and the column, what was found,
-// what was expected and what to do. Only a failing reader returns an error of another type.
+// what was expected and what to do. Where a cut is to blame, which the caller wrote, it comes in a [*CutError]. Only a
+// failing reader returns an error of another type.
 package data

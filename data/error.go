@@ -37,6 +37,14 @@ func (e *Error) Error() string {
 	return b.String()
 }
 
+// CutError is an [Error] whose cause is [Options].Cut: the caller knows where the cut was written, and can say so.
+type CutError struct{ Err error }
+
+func (e *CutError) Error() string { return e.Err.Error() }
+
+// Unwrap gives the Error: the file, and what in it the cut does not fit.
+func (e *CutError) Unwrap() error { return e.Err }
+
 // message builds the part after the place: what was found, what was expected, what to do.
 func message(found, expected, do string) string {
 	return "found " + found + ", expected " + expected + "; " + do

@@ -28,6 +28,7 @@ func ReadColumns(r io.Reader, file string, o Options, columns ...Column) (map[st
 		if c.NotNegative {
 			rule = fromZero
 		}
+		rule.uncut = true
 		v, err := t.numbers(c.Name, rule, s)
 		if err != nil {
 			return nil, s, err

@@ -56,7 +56,7 @@ func TestPantheonPlusRows(t *testing.T) {
 		{"USED_IN_SH0ES_HF == 1", 277, []CutCount{{"USED_IN_SH0ES_HF == 1", 1424}}},
 	}
 	for _, test := range tests {
-		sn, err := ReadSupernovae(public(t, "pantheonplus/Pantheon+SH0ES.dat"), "sn.dat", Options{pantheonPlus, test.cut})
+		sn, err := ReadSupernovae(public(t, "pantheonplus/Pantheon+SH0ES.dat"), "sn.dat", Options{Columns: pantheonPlus, Cut: test.cut})
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -108,7 +108,7 @@ func TestPantheon2018(t *testing.T) {
 }
 
 func TestPantheon2018Covariance(t *testing.T) {
-	sn, err := ReadSupernovae(public(t, "pantheon2018/lcparam_DS17f.txt"), "sn.txt", Options{pantheon2018, "zcmb > 0.1"})
+	sn, err := ReadSupernovae(public(t, "pantheon2018/lcparam_DS17f.txt"), "sn.txt", Options{Columns: pantheon2018, Cut: "zcmb > 0.1"})
 	if err != nil {
 		t.Fatal(err)
 	}

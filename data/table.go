@@ -128,12 +128,12 @@ func read(r io.Reader, file string, o Options, fields func(headings) ([]field, e
 	if err != nil {
 		return nil, Selection{}, err
 	}
-	if t.places, err = t.resolve(f, o.Columns); err != nil {
+	if t.places, err = t.resolve(f, o); err != nil {
 		return nil, Selection{}, err
 	}
 	c, err := newCut(o.Cut, t.headings)
 	if err != nil {
-		return nil, Selection{}, err
+		return nil, Selection{}, &CutError{err}
 	}
 	wanted := c.columns
 	for _, i := range t.places {
@@ -143,10 +143,13 @@ func read(r io.Reader, file string, o Options, fields func(headings) ([]field, e
 		return nil, Selection{}, err
 	}
 	s, err := c.apply(t)
+	if err != nil {
+		return nil, Selection{}, &CutError{err}
+	}
 	if t.warning != nil {
 		s.Warnings = append(s.Warnings, t.warning)
 	}
-	return t, s, err
+	return t, s, nil
 }
 
 // fixed is for the kinds of table whose columns do not depend on the file.

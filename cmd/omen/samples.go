@@ -5,12 +5,10 @@ import (
 	"cmp"
 	"crypto/sha256"
 	"encoding/hex"
-	"errors"
 	"fmt"
 	"io"
 	"math"
 	"os"
-	"regexp"
 	"slices"
 	"strings"
 
@@ -48,9 +46,9 @@ func (o *fateOptions) runSamples(knowsH0 bool, stdout io.Writer) error {
 	if err != nil {
 		return usagef("--samples: cannot read %s: %v", o.samples, err)
 	}
-	values, rows, err := data.ReadColumns(plain, o.samples, data.Options{Columns: columns}, sampleColumns...)
+	values, rows, err := data.ReadColumns(plain, o.samples, data.Options{Columns: columns, Mapping: asFlag}, sampleColumns...)
 	if err != nil {
-		return asFlags(err)
+		return err
 	}
 	if err := checkSample(values, rows, columns); err != nil {
 		return err
@@ -68,16 +66,8 @@ func (o *fateOptions) runSamples(knowsH0 bool, stdout io.Writer) error {
 	return report.Text(stdout, summary)
 }
 
-// mapping is how a run file maps a column.
-var mapping = regexp.MustCompile(`columns = \{ (\w+) = "([^"]*)" \}`)
-
-// asFlags says in flags what a message says in the words of a run file.
-func asFlags(err error) error {
-	if e, ok := errors.AsType[*data.Error](err); ok {
-		e.Message = mapping.ReplaceAllString(e.Message, "--columns $1=$2")
-	}
-	return err
-}
+// asFlag is how a column is mapped on the command line.
+func asFlag(name, column string) string { return fmt.Sprintf("--columns %s=%s", name, column) }
 
 // columnMap reads --columns Om=omegam,OL=omegal.
 func (o *fateOptions) columnMap() (map[string]string, error) {

@@ -52,6 +52,7 @@ func TestFateMistakes(t *testing.T) {
 		{"--samples " + short + " --columns Om=OL", "both Om and OL"},
 		{"--samples " + short, "found 2 rows"},
 		{"--samples " + rows("omega_m", "%g"), "--columns Om=omega_m"},
+		{"--samples " + rows("Om,H0", "x%g,70"), "correct the cell, or remove the row"},
 		{"--samples " + rows("Om,H0", "%g,0.7"), "s.csv:2: column \"H0\": found 0.7"},
 		{"--samples " + rows("m,OL", "30%g,0.7") + " --columns Om=m", "percent"},
 		{"--samples " + rows("Om,OL", "%g,170"), "s.csv:2: column \"OL\""},

@@ -4,12 +4,12 @@
 package job
 
 import (
-	"crypto/sha256"
-	"encoding/hex"
+	"errors"
 	"fmt"
 	"io"
 	"os"
 	"path/filepath"
+	"sync"
 
 	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/runfile"
@@ -49,8 +49,9 @@ type Job struct {
 	Space     *likelihood.Space
 	Posterior *likelihood.Posterior
 
-	cache *cache.Cache
-	whole bool // matrices stay in memory, to be looked at
+	cache   *cache.Cache
+	keeping sync.WaitGroup // what is still being written to the cache
+	whole   bool           // matrices stay in memory, to be looked at
 }
 
 // Load reads the tables of a run and all that belongs to them. Paths are relative
@@ -65,6 +66,7 @@ func LoadToFit(run *runfile.Run, c *cache.Cache) (*Job, error) {
 }
 
 func load(j *Job) (*Job, error) {
+	defer j.keeping.Wait()
 	family, err := j.Run.Family()
 	if err != nil {
 		return nil, err
@@ -95,14 +97,19 @@ func (j *Job) table(i int) (*Table, error) {
 		t.Name = filepath.Base(spec.Table)
 	}
 	key := fmt.Sprintf("data.%d", i+1)
-	if err := j.open(key+".table", spec.Table, t.read); err != nil {
-		return nil, err
+	sum := j.ahead(key+".covariance", spec.Covariance)
+	err := j.open(key+".table", spec.Table, t.read)
+	if _, ok := errors.AsType[*data.CutError](err); ok {
+		return nil, j.Run.Errorf(key+".keep", "%v", err)
 	}
-	noise, err := j.noise(key, t)
 	if err != nil {
 		return nil, err
 	}
-	return t, j.term(i, t, noise)
+	noise, name, err := j.noise(key, t, sum)
+	if err != nil {
+		return nil, err
+	}
+	return t, j.term(i, t, noise, name)
 }
 
 // open hands a file to read and records its hash.
@@ -113,7 +120,8 @@ func (j *Job) open(key, name string, read func(io.Reader, string) error) error {
 		return j.Run.Errorf(key, "cannot read %s: %v; paths are relative to the run file", path, underlying(err))
 	}
 	defer f.Close()
-	sum := sha256.New()
+	sum := newDigest()
+	defer sum.Close()
 	tee := io.TeeReader(f, sum)
 	plain, err := data.Decompress(tee)
 	if err != nil {
@@ -125,7 +133,7 @@ func (j *Job) open(key, name string, read func(io.Reader, string) error) error {
 	if _, err := io.Copy(io.Discard, tee); err != nil {
 		return err
 	}
-	j.Inputs = append(j.Inputs, Input{Path: path, SHA256: hex.EncodeToString(sum.Sum(nil))})
+	j.Inputs = append(j.Inputs, Input{Path: path, SHA256: sum.hex()})
 	return nil
 }
 
@@ -186,11 +194,12 @@ func (t *Table) Errors() []float64 {
 	return t.Rates.Err
 }
 
-// term builds the likelihood term of a table that has been read.
-func (j *Job) term(i int, t *Table, noise likelihood.Noise) (err error) {
+// term builds the likelihood term of a table that has been read, with a noise and
+// the name of the noise.
+func (j *Job) term(i int, t *Table, noise likelihood.Noise, name cache.Key) (err error) {
 	switch {
 	case t.Supernovae != nil:
-		err = j.supernovae(i, t, noise)
+		err = j.supernovae(i, t, noise, name)
 	case t.BAO != nil:
 		t.Term, err = likelihood.NewBAO(t.BAO, noise)
 	case t.Ages != nil:
@@ -204,7 +213,7 @@ func (j *Job) term(i int, t *Table, noise likelihood.Noise) (err error) {
 	return nil
 }
 
-func (j *Job) supernovae(i int, t *Table, noise likelihood.Noise) error {
+func (j *Job) supernovae(i int, t *Table, noise likelihood.Noise, name cache.Key) error {
 	offset, err := j.Run.Offset(i)
 	if err != nil {
 		return err
@@ -213,8 +222,15 @@ func (j *Job) supernovae(i int, t *Table, noise likelihood.Noise) error {
 	if s := t.Spec.StandsFor; s != nil {
 		standing = likelihood.Standing{Rows: s.Rows, Chi2: s.Chi2}
 	}
-	t.Term, err = likelihood.NewSupernovae(t.Supernovae, noise, offset, standing)
-	return err
+	sn, err := likelihood.NewSupernovae(t.Supernovae, noise, offset, standing)
+	if err != nil {
+		return err
+	}
+	if j.keeps(t) {
+		sn.Remember(memory{j.cache, name})
+	}
+	t.Term = sn
+	return nil
 }
 
 // Z are the redshifts of the kept rows.
