@@ -56,7 +56,7 @@ func TestMistakesInFiles(t *testing.T) {
 		files map[string]string
 		want  []string // parts of the message, in order
 	}{
-		{"no such table", nil, []string{"run.toml:7: cannot read", "sn.csv: no such file", "relative to the run file"}},
+		{"no such table", nil, []string{"run.toml:7: cannot read", "sn.csv: no such file", `; "sn.csv" is looked for from `, "the folder of the run file: correct the path"}},
 		{"empty table", withTable(""), []string{"sn.csv", "empty"}},
 		{"header only", withTable("name,z,mag,mag_err\n"), []string{"sn.csv", "no rows"}},
 		{"missing column", withTable(swap("z,mag", "zHD,mag")), []string{`sn.csv:1: column "z"`, `the nearest is "zHD"`, `columns = { z = "zHD" }`}},

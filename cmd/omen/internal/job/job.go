@@ -7,6 +7,7 @@ import (
 	"errors"
 	"fmt"
 	"io"
+	"io/fs"
 	"os"
 	"path/filepath"
 	"sync"
@@ -117,7 +118,7 @@ func (j *Job) open(key, name string, read func(io.Reader, string) error) error {
 	path := j.Path(name)
 	f, err := os.Open(path)
 	if err != nil {
-		return j.Run.Errorf(key, "cannot read %s: %v; paths are relative to the run file", path, underlying(err))
+		return j.unreadable(key, name, err)
 	}
 	defer f.Close()
 	sum := newDigest()
@@ -135,6 +136,24 @@ func (j *Job) open(key, name string, read func(io.Reader, string) error) error {
 	}
 	j.Inputs = append(j.Inputs, Input{Path: path, SHA256: sum.hex()})
 	return nil
+}
+
+// unreadable says of a file where it was looked for, and what to do: a folder that was
+// moved takes along its run file, but not what that names.
+func (j *Job) unreadable(key, name string, err error) error {
+	path, err := j.Path(name), underlying(err)
+	switch {
+	case !errors.Is(err, fs.ErrNotExist):
+		return j.Run.Errorf(key, "cannot read %s: %v", path, err)
+	case filepath.IsAbs(name):
+		return j.Run.Errorf(key, "cannot read %s: %v; correct the path, or put the file there", path, err)
+	}
+	dir := filepath.Dir(j.Run.File)
+	if abs, err := filepath.Abs(dir); err == nil {
+		dir = abs
+	}
+	return j.Run.Errorf(key, "cannot read %s: %v; %q is looked for from %s, the folder of the run file: correct the path, put the file there, or, if that folder was moved, move it back",
+		path, err, name, dir)
 }
 
 // Path resolves a path of the run file.

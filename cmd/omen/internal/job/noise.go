@@ -112,7 +112,7 @@ func (j *Job) sum(key, name string) (string, error) {
 	path := j.Path(name)
 	f, err := os.Open(path)
 	if err != nil {
-		return "", j.Run.Errorf(key, "cannot read %s: %v; paths are relative to the run file", path, underlying(err))
+		return "", j.unreadable(key, name, err)
 	}
 	defer f.Close()
 	h := sha256.New()
