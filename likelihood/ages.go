@@ -18,14 +18,15 @@ type Ages struct {
 }
 
 var (
-	_ Term   = (*Ages)(nil)
-	_ needer = (*Ages)(nil)
+	_ Term    = (*Ages)(nil)
+	_ needer  = (*Ages)(nil)
+	_ bounded = (*Ages)(nil)
 )
 
 // NewAges builds the term. A nil noise is the table's own errors; lower bounds
 // cannot be correlated with anything.
 func NewAges(a *data.Ages, noise Noise) (*Ages, error) {
-	if noise != nil && anyLower(a) {
+	if noise != nil && lower(a.Bound) > 0 {
 		return nil, fmt.Errorf("a lower bound on an age cannot carry a covariance; remove the covariance or the bounds")
 	}
 	noise, err := noiseOr(noise, a.Err, len(a.Z))
@@ -35,14 +36,17 @@ func NewAges(a *data.Ages, noise Noise) (*Ages, error) {
 	return &Ages{z: a.Z, age: a.Age, bound: a.Bound, noise: noise}, nil
 }
 
-func anyLower(a *data.Ages) bool {
-	for _, b := range a.Bound {
+// lower counts the lower bounds.
+func lower(list []data.Bound) (n int) {
+	for _, b := range list {
 		if b == data.LowerBound {
-			return true
+			n++
 		}
 	}
-	return false
+	return n
 }
+
+func (a *Ages) bounds() int { return lower(a.bound) }
 
 // Redshifts is empty: ages need no distances.
 func (a *Ages) Redshifts() []float64 { return nil }

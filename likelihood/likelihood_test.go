@@ -158,6 +158,18 @@ func TestAgeBoundIsOneSided(t *testing.T) {
 	}
 }
 
+// A bound is a row, but no degree of freedom; a marginalised offset is a parameter.
+func TestDegreesOfFreedom(t *testing.T) {
+	sn, _ := invented(7, 20)
+	ages := must[*Ages](t)(NewAges(&data.Ages{Z: []float64{0, 1, 0.5}, Age: []float64{15, 3, 5}, Err: []float64{0.5, 0.4, 0.5},
+		Bound: []data.Bound{data.LowerBound, data.Measured, data.LowerBound}}, nil))
+	f := Family{Flat: true, Free: []Parameter{param(t, "H0", 50, 90), param(t, "Om", 0, 1)}}
+	p := posterior(t, f, must[*Supernovae](t)(NewSupernovae(sn, nil, Offset{}, Standing{})), ages)
+	if rows, parameters, dof := p.Rows(), p.Parameters(), p.DegreesOfFreedom(); rows != 23 || parameters != 3 || dof != 18 {
+		t.Errorf("%d rows, %d parameters, %d degrees of freedom, want 23, 3, 18", rows, parameters, dof)
+	}
+}
+
 // Every prior integrates to one over its range.
 func TestPriorsAreNormalised(t *testing.T) {
 	for _, p := range []Prior{

@@ -167,12 +167,24 @@ func (p *Posterior) Rows() int {
 	return n
 }
 
-// DegreesOfFreedom is the rows less the free parameters and the marginalised
-// offsets. A parameter that the data cannot constrain still counts.
-func (p *Posterior) DegreesOfFreedom() int {
-	dof := p.Rows() - p.space.Dim()
+// Parameters counts what is fitted: the free parameters and the marginalised offsets.
+// A parameter that the data cannot constrain still counts.
+func (p *Posterior) Parameters() int {
+	n := p.space.Dim()
 	for _, t := range p.terms {
-		dof -= t.Offsets()
+		n += t.Offsets()
+	}
+	return n
+}
+
+// DegreesOfFreedom is the rows less the parameters. A bound is no row here: where it
+// is kept it adds nothing to chi-squared.
+func (p *Posterior) DegreesOfFreedom() int {
+	dof := p.Rows() - p.Parameters()
+	for _, t := range p.terms {
+		if b, ok := t.(bounded); ok {
+			dof -= b.bounds()
+		}
 	}
 	return dof
 }

@@ -34,3 +34,7 @@ type Needs struct{ H0, HRd, M bool }
 
 // needer is implemented by terms that need more than the shape of E(z).
 type needer interface{ Needs() Needs }
+
+// bounded is implemented by terms of which some rows are bounds rather than
+// measurements.
+type bounded interface{ bounds() int }

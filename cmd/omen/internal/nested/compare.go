@@ -130,7 +130,7 @@ func fit(ctx context.Context, p *likelihood.Posterior, m Model, own Own, o Optio
 		}
 		f.space, own = space, Own{}
 	}
-	f.Rows, f.Parameters = p.Rows(), p.Rows()-p.DegreesOfFreedom()
+	f.Rows, f.Parameters = p.Rows(), p.Parameters()
 	volume, err := Volume(ctx, f.space)
 	if err != nil {
 		return nil, err
