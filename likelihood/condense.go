@@ -111,7 +111,7 @@ func (s *Supernovae) condensed(nodes *model.Nodes, c columns) []float64 {
 	s.lock.Lock()
 	defer s.lock.Unlock()
 	if s.triangles[key] == nil {
-		s.triangles[key] = s.condense(nodes, c)
+		s.triangles[key] = s.recall(nodes, c)
 	}
 	return s.triangles[key]
 }
@@ -120,6 +120,36 @@ func (s *Supernovae) condensed(nodes *model.Nodes, c columns) []float64 {
 type condensedKey struct {
 	span float64
 	columns
+}
+
+// recall is condense, from the memory if that has it.
+func (s *Supernovae) recall(nodes *model.Nodes, c columns) []float64 {
+	if s.memory == nil {
+		return s.condense(nodes, c)
+	}
+	key, side := s.key(nodes, c), c.one+2
+	if r, ok := s.memory.Recall(key); ok && len(r) == side*side {
+		return r
+	}
+	r := s.condense(nodes, c)
+	s.memory.Keep(key, r)
+	return r
+}
+
+// form is the first number of a key. It changes when the same inputs would be
+// condensed to other numbers.
+const form = 1
+
+// key is everything that condense depends on but the noise.
+func (s *Supernovae) key(nodes *model.Nodes, c columns) []float64 {
+	key := make([]float64, 0, 8+c.g+2*len(s.z))
+	key = append(key, form, float64(s.offset.Kind), s.offset.Mean, s.offset.SD,
+		float64(c.g), float64(c.zero), float64(c.m), float64(c.one))
+	for k := range c.g {
+		key = append(key, nodes.Z(k))
+	}
+	key = append(key, s.z...)
+	return append(key, s.target...)
 }
 
 // condense is the triangle over [v, the aliased polynomial] of one table, its

@@ -17,7 +17,7 @@ import (
 
 // Noise is the joint Gaussian error of the rows of a table, with a covariance C
 // that is factorised once and never inverted. There are three kinds:
-// [Independent], [Correlated] and [Systematics].
+// [Independent], [Correlated] and [Systematics]; [Deferred] is one of them, later.
 //
 // Each is a linear map W, not always square, with rᵀC⁻¹r = |W r|² for every r:
 // all that a chi-squared needs. It follows that (W r)·(W s) = rᵀC⁻¹s.
@@ -41,6 +41,7 @@ var (
 	_ Noise = independent{}
 	_ Noise = (*correlated)(nil)
 	_ Noise = (*systematics)(nil)
+	_ Noise = deferred{}
 )
 
 // noiseOr is the noise of n rows, their own errors if it is nil.
@@ -127,6 +128,23 @@ func (c *correlated) whitenAll(a blas64.General) {
 	}
 	group.Wait()
 }
+
+// deferred is a noise that is made when it is first needed.
+type deferred struct {
+	rows int
+	made func() Noise
+}
+
+// Deferred is the noise of so many rows that make returns. It is called once, when
+// the noise is first needed: never, if the condensed form of the table is remembered
+// and every universe is judged by it.
+func Deferred(rows int, make func() Noise) Noise { return deferred{rows, sync.OnceValue(make)} }
+
+func (d deferred) Rows() int                                     { return d.rows }
+func (d deferred) Sigma(i int) float64                           { return d.made().Sigma(i) }
+func (d deferred) width() int                                    { return d.made().width() }
+func (d deferred) whiten(r []float64)                            { d.made().whiten(r) }
+func (d deferred) reduce(t *triangle, fill func(int, []float64)) { d.made().reduce(t, fill) }
 
 // systematics is the noise of C = D² + F Fᵀ, where D holds the errors and the k
 // columns of F are templates: what a systematic does to every row when it is off

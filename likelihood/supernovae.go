@@ -54,11 +54,14 @@ type Supernovae struct {
 	measured []float64
 	noise    Noise
 	offset   Offset
-	modulus  bool      // the table holds mu, not mag
-	ones     []float64 // L⁻¹1
-	weight   float64   // 1ᵀC⁻¹1 + 1/s²
+	modulus  bool // the table holds mu, not mag
 	standing Standing
 
+	// shared is W1, what an offset does to every row, and 1ᵀC⁻¹1 + 1/s². Only an
+	// evaluation over all rows asks for it.
+	shared func() (ones []float64, weight float64)
+
+	memory    Memory // of condensed forms, from run to run; nil for none
 	lock      sync.Mutex
 	triangles map[condensedKey][]float64 // see condensed
 }
@@ -79,21 +82,29 @@ func NewSupernovae(sn *data.Supernovae, noise Noise, offset Offset, standing Sta
 		return nil, fmt.Errorf("the normal prior on the offset needs a positive width, found %g", offset.SD)
 	}
 	s := &Supernovae{z: sn.Z, measured: sn.Value, noise: noise, offset: offset, triangles: map[condensedKey][]float64{},
-		modulus: sn.Absolute, standing: standing, target: make([]float64, n), ones: make([]float64, noise.width())}
+		modulus: sn.Absolute, standing: standing, target: make([]float64, n)}
 	zHel := sn.ZHel
 	if zHel == nil {
 		zHel = sn.Z // the difference is below 0.003 mag beyond z = 0.1
 	}
 	for i := range s.target {
 		s.target[i] = sn.Value[i] - 5*math.Log10(1+zHel[i])
-		s.ones[i] = 1
 	}
-	noise.whiten(s.ones)
-	s.weight = floats.Dot(s.ones, s.ones)
-	if offset.Kind == NormalOffset {
-		s.weight += 1 / (offset.SD * offset.SD)
-	}
+	s.shared = sync.OnceValues(s.share)
 	return s, nil
+}
+
+func (s *Supernovae) share() (ones []float64, weight float64) {
+	ones = make([]float64, s.noise.width())
+	for i := range s.z {
+		ones[i] = 1
+	}
+	s.noise.whiten(ones)
+	weight = floats.Dot(ones, ones)
+	if s.offset.Kind == NormalOffset {
+		weight += 1 / (s.offset.SD * s.offset.SD)
+	}
+	return ones, weight
 }
 
 // Redshifts are those of the supernovae, CMB frame.
@@ -131,8 +142,9 @@ func (s *Supernovae) Chi2(p *Prediction) float64 {
 	r := s.whitened(p)
 	chi2 := floats.Dot(r, r)
 	if s.offset.Kind != AbsoluteOffset {
-		b := floats.Dot(s.ones, r)
-		chi2 -= b * b / s.weight
+		ones, weight := s.shared()
+		b := floats.Dot(ones, r)
+		chi2 -= b * b / weight
 	}
 	return chi2 + s.standing.Chi2
 }
@@ -174,7 +186,8 @@ func (s *Supernovae) Offset(p *Prediction) float64 {
 		return 0
 	}
 	r := s.whitened(p)
-	return floats.Dot(s.ones, r) / s.weight
+	ones, weight := s.shared()
+	return floats.Dot(ones, r) / weight
 }
 
 // Residuals lists every supernova against the prediction at p with the offset

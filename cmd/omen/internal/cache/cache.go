@@ -11,6 +11,7 @@ import (
 	"encoding/hex"
 	"fmt"
 	"hash"
+	"io"
 	"io/fs"
 	"math"
 	"os"
@@ -71,8 +72,13 @@ func (k *KeyWriter) Number(n uint64) {
 // Numbers adds a slice.
 func (k *KeyWriter) Numbers(x []float64) {
 	k.Number(uint64(len(x)))
-	for _, v := range x {
-		k.Number(math.Float64bits(v))
+	buffer := make([]byte, 0, min(piece, 8*len(x)))
+	for part := range slices.Chunk(x, piece/8) {
+		buffer = buffer[:0]
+		for _, v := range part {
+			buffer = binary.LittleEndian.AppendUint64(buffer, math.Float64bits(v))
+		}
+		k.sum.Write(buffer)
 	}
 }
 
@@ -98,22 +104,46 @@ func (c *Cache) Get(key Key) ([]float64, bool) {
 	if c == nil {
 		return nil, false
 	}
-	text, err := os.ReadFile(c.path(key))
-	if err != nil || len(text) < header || (len(text)-header)%8 != 0 {
+	f, err := os.Open(c.path(key))
+	if err != nil {
 		return nil, false
 	}
-	numbers := text[header:]
-	sum := sha256.Sum256(numbers)
-	if !bytes.Equal(text[:header], slices.Concat([]byte(magic), key[:], sum[:])) {
+	defer f.Close()
+	x, ok := read(f, key)
+	if ok {
+		now := time.Now()
+		_ = os.Chtimes(f.Name(), now, now) // the oldest entries are those not used for long
+	}
+	return x, ok
+}
+
+// piece is how many bytes of an entry are read at a time: few enough to be checked
+// and taken apart before they leave the processor's own memory.
+const piece = 1 << 17
+
+// read is the numbers of an entry. It ends with the file as it was opened.
+func read(f *os.File, key Key) ([]float64, bool) {
+	info, err := f.Stat()
+	if err != nil || info.Size() < int64(header) || (info.Size()-int64(header))%8 != 0 {
 		return nil, false
 	}
-	now := time.Now()
-	_ = os.Chtimes(c.path(key), now, now) // the oldest entries are those not used for long
-	x := make([]float64, len(numbers)/8)
-	for i := range x {
-		x[i] = math.Float64frombits(binary.LittleEndian.Uint64(numbers[8*i:]))
+	head := make([]byte, header)
+	if _, err := io.ReadFull(f, head); err != nil {
+		return nil, false
 	}
-	return x, true
+	n := int(info.Size()-int64(header)) / 8
+	x, sum, buffer := make([]float64, 0, n), sha256.New(), make([]byte, piece)
+	for len(x) < n {
+		part := buffer[:min(piece, 8*(n-len(x)))]
+		if _, err := io.ReadFull(f, part); err != nil {
+			return nil, false
+		}
+		sum.Write(part)
+		for ; len(part) > 0; part = part[8:] {
+			x = append(x, math.Float64frombits(binary.LittleEndian.Uint64(part)))
+		}
+	}
+	return x, bytes.Equal(head, slices.Concat([]byte(magic), key[:], sum.Sum(nil)))
 }
 
 // Put keeps numbers under a key. An error is of no consequence.

@@ -8,11 +8,13 @@ import (
 	"math/rand/v2"
 	"os"
 	"path/filepath"
+	"slices"
 	"strings"
 	"testing"
 
 	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/runfile"
+	"omen/likelihood"
 )
 
 // parse reads a run file with settings.
@@ -78,15 +80,13 @@ func survey(t testing.TB, dir string, n int, scale float64) {
 		"[[data]]\nkind = \"supernovae\"\ntable = \"sn.csv\"\ncovariance = \"sn.cov\"\n"))
 }
 
-// at is the log-density in a few places.
+// at is the log-density in a few places, by the condensed form and over all rows.
 func at(j *Job) (out []float64) {
-	e := j.Posterior.Evaluator()
+	e, d := j.Posterior.Evaluator(), j.Posterior.Direct().Evaluator()
 	x := [][]float64{{0.3, 0.7}, {0.2, 0.5}, {0.9, 0.1}, {0.1, 1.18}}
 	for _, p := range x {
-		if j.Space.Dim() == 3 {
-			p = append(p, 70)
-		}
-		out = append(out, e.LogDensity(p))
+		p = append(p, 70, -19.3)[:j.Space.Dim()]
+		out = append(out, e.LogDensity(p), d.LogDensity(p))
 	}
 	return out
 }
@@ -106,9 +106,13 @@ func TestCacheChangesNothing(t *testing.T) {
 		t.Error("matrices are kept where they are not wanted, or the other way round")
 	}
 	c := cache.Open(kept)
-	same := func(what string) string {
+	same := func(what string) []string {
 		t.Helper()
 		j := fit(t, run, c)
+		files, err := filepath.Glob(filepath.Join(kept, "*"))
+		if err != nil || len(files) != 2 {
+			t.Fatalf("%s: entries %v, want the factor and the condensed form", what, files)
+		}
 		got := at(j)
 		for i, want := range at(plain) {
 			if got[i] != want {
@@ -118,32 +122,61 @@ func TestCacheChangesNothing(t *testing.T) {
 		if fmt.Sprint(j.Inputs) != fmt.Sprint(plain.Inputs) || fmt.Sprint(whole.Inputs) != fmt.Sprint(plain.Inputs) {
 			t.Errorf("%s: inputs %v, want %v", what, j.Inputs, plain.Inputs)
 		}
-		files, err := filepath.Glob(filepath.Join(kept, "*"))
-		if err != nil || len(files) != 1 {
-			t.Fatalf("%s: entries %v", what, files)
-		}
-		return files[0]
+		return files
 	}
 	same("empty cache")
-	entry := same("filled cache")
-	text, err := os.ReadFile(entry)
-	if err != nil {
-		t.Fatal(err)
+	for i, entry := range same("filled cache") {
+		text, err := os.ReadFile(entry)
+		if err != nil {
+			t.Fatal(err)
+		}
+		write(t, entry, text[:len(text)/2])
+		same(fmt.Sprintf("entry %d cut short", i))
+		damaged := bytes.Clone(text)
+		damaged[len(text)-3] ^= 1
+		write(t, entry, damaged)
+		same(fmt.Sprintf("entry %d damaged", i))
+		if err := os.Remove(entry); err != nil {
+			t.Fatal(err)
+		}
+		same(fmt.Sprintf("entry %d removed", i))
 	}
-	write(t, entry, text[:len(text)/2])
-	same("truncated entry")
-	text[len(text)-3] ^= 1
-	write(t, entry, text)
-	same("damaged entry")
 }
 
-// A hit does not parse the matrix: a forged entry under the right key is believed.
+// Once a job is loaded, nothing of it depends on what becomes of its files.
+func TestCacheNeedsNoFilesLater(t *testing.T) {
+	dir, kept := t.TempDir(), t.TempDir()
+	survey(t, dir, 250, 1)
+	run := parse(t, filepath.Join(dir, "run.toml"))
+	want := at(fit(t, run, cache.Open(kept)))
+	j := fit(t, run, cache.Open(kept))
+	for _, folder := range []string{dir, kept} {
+		if err := os.RemoveAll(folder); err != nil {
+			t.Fatal(err)
+		}
+	}
+	for i, got := range at(j) {
+		if got != want[i] {
+			t.Errorf("log-density %v, want %v", got, want[i])
+		}
+	}
+}
+
+// spy is a memory that shows what was looked up.
+type spy struct{ key []float64 }
+
+func (s *spy) Recall(key []float64) ([]float64, bool) { s.key = key; return nil, false }
+func (s *spy) Keep([]float64, []float64)              {}
+
+// A hit neither parses the matrix nor condenses the table: forged entries under the
+// right keys are believed, each where it is used.
 func TestCacheIsUsed(t *testing.T) {
 	dir := t.TempDir()
 	survey(t, dir, 250, 1)
 	run := parse(t, filepath.Join(dir, "run.toml"))
 	c := cache.Open(t.TempDir())
-	want := at(fit(t, run, c))
+	first := fit(t, run, c)
+	want := at(first)
 	j := &Job{Run: run, cache: c}
 	table := &Table{Spec: run.Data[0]}
 	if err := j.open("data.1.table", "sn.csv", table.read); err != nil {
@@ -153,16 +186,29 @@ func TestCacheIsUsed(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
-	u := unpacked(c, factorKey(table, sum), 250)
-	if u == nil {
-		t.Fatal("no entry under the key")
-	}
-	u.SetTri(0, 0, 2*u.At(0, 0))
-	if err := c.Put(factorKey(table, sum), packed(u)); err != nil {
+	factor := factorKey(table, sum)
+	var seen spy
+	sn, err := likelihood.NewSupernovae(table.Supernovae, nil, likelihood.Offset{}, likelihood.Standing{})
+	if err != nil {
 		t.Fatal(err)
 	}
-	if got := at(fit(t, run, c)); got[0] == want[0] {
-		t.Error("the entry was not used")
+	sn.Remember(&seen)
+	if _, err := likelihood.NewPosterior(first.Space, sn); err != nil {
+		t.Fatal(err)
+	}
+	for which, key := range []cache.Key{memory{c, factor}.key(seen.key), factor} {
+		x, ok := c.Get(key)
+		if !ok {
+			t.Fatalf("no entry under key %d", which)
+		}
+		x[0] *= 2
+		if err := c.Put(key, x); err != nil {
+			t.Fatal(err)
+		}
+		got := at(fit(t, run, c))
+		if got[0] == want[0] || (got[1] == want[1]) != (which == 0) {
+			t.Errorf("entry %d forged: %v, was %v", which, got, want)
+		}
 	}
 }
 
@@ -177,6 +223,20 @@ func TestCacheKnowsItsInputs(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
+	alone := []string{"data.1.covariance=none"}
+	withTemplates := append([]string{"data.1.templates=templates.csv"}, alone...)
+	digit := func(text []byte) { text[len(text)-2] ^= 1 } // the last one of a file
+	replaced := func(name string, change func([]byte)) func() {
+		return func() {
+			text, err := os.ReadFile(filepath.Join(dir, name))
+			if err != nil {
+				t.Fatal(err)
+			}
+			change(text)
+			write(t, filepath.Join(dir, name), text)
+		}
+	}
+	var before []float64
 	var zipped bytes.Buffer
 	z := gzip.NewWriter(&zipped)
 	z.Write(cov)
@@ -194,6 +254,16 @@ func TestCacheKnowsItsInputs(t *testing.T) {
 		{"added to the errors", []string{"data.1.covariance-holds=added"}, func() {}},
 		{"an inverse", []string{"data.1.covariance-holds=inverse"}, func() {}},
 		{"an offset", []string{"data.1.offset={ normal = [-19, 1] }", "prior.H0={ flat = [50, 90] }"}, func() {}},
+		{"another offset", []string{"data.1.offset={ normal = [-19.1, 1] }", "prior.H0={ flat = [50, 90] }"}, func() {}},
+		{"a narrower offset", []string{"data.1.offset={ normal = [-19, 0.5] }", "prior.H0={ flat = [50, 90] }"}, func() {}},
+		{"no offset", []string{"data.1.offset=absolute", "prior.M={ flat = [-20, -19] }", "prior.H0={ flat = [50, 90] }"}, func() {}},
+		{"templates", withTemplates, func() {}},
+		{"templates and a cut", append([]string{"data.1.keep=z > 0.1"}, withTemplates...), func() {}},
+		{"templates and another cut", append([]string{"data.1.keep=z < 2.1"}, withTemplates...), func() {}},
+		{"one number of the templates", withTemplates, replaced("templates.csv", digit)},
+		{"errors alone", alone, func() {}},
+		{"one error alone", alone, replaced("sn.csv", digit)},
+		{"one magnitude", nil, replaced("sn.csv", func(text []byte) { text[bytes.LastIndexByte(text, ',')-1] ^= 1 })},
 		{"one number of the matrix", nil, func() { write(t, filepath.Join(dir, "sn.cov"), other) }},
 		{"packed", nil, func() { write(t, filepath.Join(dir, "sn.cov"), zipped.Bytes()) }},
 		{"other errors", []string{"data.1.covariance-holds=added"}, func() { survey(t, dir, 300, 1.5) }},
@@ -202,6 +272,10 @@ func TestCacheKnowsItsInputs(t *testing.T) {
 		change.do()
 		run := parse(t, file, change.sets...)
 		want := at(fit(t, run, nil))
+		if slices.Equal(want, before) {
+			t.Errorf("%s: log-density %v, as before", change.name, want)
+		}
+		before = want
 		for _, which := range []string{"first", "second"} {
 			for i, got := range at(fit(t, run, c)) {
 				if got != want[i] {
