@@ -13,8 +13,9 @@ import (
 
 	"omen/cmd/omen/internal/chainfile"
 	"omen/cmd/omen/internal/explore"
-	"omen/cmd/omen/internal/inspect"
 	"omen/cmd/omen/internal/job"
+	"omen/cmd/omen/internal/outlook"
+	"omen/cmd/omen/internal/progress"
 	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
 	"omen/cmd/omen/internal/runfile"
@@ -78,7 +79,9 @@ func runFit(ctx context.Context, args []string, stdout, stderr io.Writer) error 
 	if err != nil {
 		return err
 	}
+	end := o.tasks(stderr).Begin("reading and factorising the tables")
 	j, err := job.LoadToFit(run, o.explore.Cache)
+	end()
 	if err != nil {
 		return err
 	}
@@ -91,7 +94,7 @@ func runFit(ctx context.Context, args []string, stdout, stderr io.Writer) error 
 	if err != nil {
 		return err
 	}
-	return conclude(ctx, done, dir, o.noReport, stdout)
+	return conclude(ctx, done, dir, o.limits, stdout, stderr)
 }
 
 // begin explores the posterior by a chain, unless the run asks for quadrature alone.
@@ -135,25 +138,17 @@ func freeFolder(file string) string {
 }
 
 // conclude writes the result of a run to its folder and to stdout.
-func conclude(ctx context.Context, run *result.Run, dir string, noReport bool, stdout io.Writer) error {
-	if err := run.Investigate(ctx); err != nil {
+func conclude(ctx context.Context, run *result.Run, dir string, l limits, stdout, stderr io.Writer) error {
+	tasks := l.tasks(stderr)
+	if err := run.Investigate(ctx, tasks.Begin); err != nil {
 		return err
 	}
 	if run.Chain == nil && run.Exact == nil {
 		return explore.ErrTooEarly
 	}
-	s := result.Build(*run)
-	var text bytes.Buffer
-	if err := report.JSON(&text, s); err != nil {
+	s, trace := summarise(run, tasks)
+	if err := keepResult(dir, s, trace); err != nil {
 		return err
-	}
-	if err := chainfile.Replace(filepath.Join(dir, "summary.json"), text.Bytes()); err != nil {
-		return fmt.Errorf("%w; the chain is safe, omen resume %s writes the result again", err, dir)
-	}
-	if trace := run.Trace(); trace != nil {
-		if err := chainfile.Replace(filepath.Join(dir, "history.csv"), report.History(trace)); err != nil {
-			return err
-		}
 	}
 	if err := report.Text(stdout, s); err != nil {
 		return err
@@ -163,7 +158,10 @@ func conclude(ctx context.Context, run *result.Run, dir string, noReport bool, s
 		chain = ""
 	}
 	fmt.Fprintf(stdout, "\nIn %s: %ssummary.json, history.csv, run.toml\n", dir, chain)
-	if err := concludeReport(run, s, dir, noReport, stdout); err != nil {
+	end := tasks.Begin("drawing figures and writing the report")
+	err := concludeReport(run, s, dir, l.noReport, stdout)
+	end()
+	if err != nil {
 		return err
 	}
 	if why := run.Ended(); why != "" {
@@ -172,31 +170,25 @@ func conclude(ctx context.Context, run *result.Run, dir string, noReport bool, s
 	return nil
 }
 
-const inspectHelp = `omen inspect says what a run file reads, and what looks odd in it.
-
-  omen inspect fate.toml
-  omen inspect fate.toml --set data.1.keep='z > 0.05'
-`
-
-func inspectFlags(sets *[]string) *pflag.FlagSet {
-	f := newFlags("inspect", inspectHelp)
-	f.StringArrayVar(sets, "set", nil, "change a key of the run file, as `key=value`; may be repeated")
-	return f
+// summarise makes the summary of a run and follows its history, side by side.
+func summarise(run *result.Run, tasks *progress.Tasks) (*result.Summary, *outlook.Trace) {
+	defer tasks.Begin("summarising")()
+	trace := make(chan *outlook.Trace, 1)
+	go func() { trace <- run.Trace() }()
+	return result.Build(*run), <-trace
 }
 
-func runInspect(args []string, stdout io.Writer) error {
-	var sets []string
-	f := inspectFlags(&sets)
-	if done, err := parse(f, args, stdout, 1); done || err != nil {
+// keepResult writes a summary and a history to the folder of a run.
+func keepResult(dir string, s *result.Summary, trace *outlook.Trace) error {
+	var text bytes.Buffer
+	if err := report.JSON(&text, s); err != nil {
 		return err
 	}
-	j, err := load(f.Arg(0), sets)
-	if err != nil {
-		return err
+	if err := chainfile.Replace(filepath.Join(dir, "summary.json"), text.Bytes()); err != nil {
+		return fmt.Errorf("%w; the chain is safe, omen resume %s writes the result again", err, dir)
 	}
-	best, err := explore.Best(j)
-	if err != nil {
-		return err
+	if trace == nil {
+		return nil
 	}
-	return inspect.Write(stdout, j, best)
+	return chainfile.Replace(filepath.Join(dir, "history.csv"), report.History(trace))
 }

@@ -1,12 +1,14 @@
 package main
 
 import (
+	"io"
 	"runtime"
 	"strconv"
 	"time"
 
 	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/explore"
+	"omen/cmd/omen/internal/progress"
 
 	"github.com/spf13/pflag"
 )
@@ -46,6 +48,11 @@ func (l *limits) cache() *cache.Cache {
 		return nil
 	}
 	return cache.Default()
+}
+
+// tasks tells of what takes long, unless nobody wants to know.
+func (l *limits) tasks(stderr io.Writer) *progress.Tasks {
+	return progress.NewTasks(stderr, progress.Detect(stderr, l.explore.Quiet))
 }
 
 // sets are the flags that were given as settings of the run file.

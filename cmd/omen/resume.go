@@ -37,5 +37,5 @@ func runResume(ctx context.Context, args []string, stdout, stderr io.Writer) err
 	if err != nil {
 		return err
 	}
-	return conclude(ctx, run, dir, l.noReport, stdout)
+	return conclude(ctx, run, dir, l, stdout, stderr)
 }

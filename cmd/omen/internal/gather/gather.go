@@ -45,7 +45,7 @@ func Open(ctx context.Context, dir string, o explore.Options) (*Run, error) {
 	}
 	s, ok := kept(dir, run)
 	if run.Chain == nil { // the figures are made from the integral
-		if err := run.Investigate(ctx); err != nil {
+		if err := run.Investigate(ctx, nil); err != nil {
 			return nil, err
 		}
 		if run.Exact == nil {
@@ -54,7 +54,7 @@ func Open(ctx context.Context, dir string, o explore.Options) (*Run, error) {
 		s = result.Build(*run)
 	} else if !ok {
 		if run.Ended() == "" { // of an unfinished run the chain alone is told
-			if err := run.Investigate(ctx); err != nil {
+			if err := run.Investigate(ctx, nil); err != nil {
 				return nil, err
 			}
 		}

@@ -276,3 +276,40 @@ func TestForecast(t *testing.T) {
 	f.Observe(200*time.Second, 40)
 	check("fewer than before", at(200*time.Second, 100), 300*time.Second)
 }
+
+// A task is told of once it has taken long, and leaves nothing on a terminal.
+func TestTasks(t *testing.T) {
+	for kind, want := range map[Kind]string{Silent: "", Lines: "integrating\n", Bar: "integrating ..." + eraseLine} {
+		var out written
+		tasks := NewTasks(&out, kind)
+		tasks.Begin("too short to tell")()
+		tasks.patience = 0
+		end := tasks.Begin("integrating")
+		for kind != Silent && out.String() == "" {
+			time.Sleep(time.Millisecond)
+		}
+		end()
+		end()
+		if got := out.String(); got != want {
+			t.Errorf("kind %d: %q, want %q", kind, got, want)
+		}
+	}
+}
+
+// written is a buffer that goroutines share.
+type written struct {
+	mu sync.Mutex
+	b  bytes.Buffer
+}
+
+func (w *written) Write(p []byte) (int, error) {
+	w.mu.Lock()
+	defer w.mu.Unlock()
+	return w.b.Write(p)
+}
+
+func (w *written) String() string {
+	w.mu.Lock()
+	defer w.mu.Unlock()
+	return w.b.String()
+}

@@ -12,11 +12,16 @@ import (
 
 // Investigate computes what the run asks for beside its chain: the integral of the
 // posterior, and the nested universes. A run that was interrupted is in a hurry: nothing is
-// computed then.
-func (r *Run) Investigate(ctx context.Context) error {
+// computed then. begin, unless it is nil, is told what begins; what it returns is called when
+// that ends.
+func (r *Run) Investigate(ctx context.Context, begin func(what string) (end func())) error {
 	if ctx.Err() != nil {
 		return nil
 	}
+	if begin == nil {
+		begin = func(string) func() { return func() {} }
+	}
+	defer begin("integrating the posterior, and comparing the nested universes")()
 	if err := r.integrate(ctx); err != nil {
 		return quiet(ctx, err)
 	}
