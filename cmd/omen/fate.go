@@ -64,6 +64,8 @@ func runFate(args []string, stdout io.Writer) error {
 		return err
 	}
 	switch {
+	case o.samples == "" && f.Changed("samples"):
+		return usagef("--samples names no file; give it one, or leave it out")
 	case o.samples == "" && len(o.columns) > 0:
 		return usagef("--columns maps the columns of --samples FILE, which is missing")
 	case o.samples != "" && (f.Changed("Om") || f.Changed("OL")):

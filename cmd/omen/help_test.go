@@ -3,7 +3,9 @@ package main
 import (
 	"bytes"
 	"context"
+	"io"
 	"strings"
+	"syscall"
 	"testing"
 )
 
@@ -81,5 +83,19 @@ func TestManualListsTheCommands(t *testing.T) {
 	}
 	if len(list) < 6 {
 		t.Errorf("%d commands", len(list))
+	}
+}
+
+// full is a device without space.
+type full struct{}
+
+func (full) Write([]byte) (int, error) { return 0, syscall.ENOSPC }
+
+// A text that could not be written is a failure, the help and the version too.
+func TestHelpIntoAFullDevice(t *testing.T) {
+	for _, line := range []string{"help", "--help", "version", "fit --help", "help compare", "fate --Om 0.3"} {
+		if err := run(t.Context(), strings.Fields(line), full{}, io.Discard); status(err) != 1 {
+			t.Errorf("omen %s: status %d (%v), expected 1", line, status(err), err)
+		}
 	}
 }

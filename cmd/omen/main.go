@@ -89,8 +89,8 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 	case "help", "--help", "-h":
 		return runHelp(ctx, rest, stdout, stderr)
 	case "version", "--version":
-		fmt.Fprintln(stdout, "omen", version())
-		return nil
+		_, err := fmt.Fprintln(stdout, "omen", version())
+		return err
 	}
 	commands := []string{"fit", "resume", "status", "report", "compare", "fate", "inspect", "new", "help", "version"}
 	return usagef("unknown command %q; the nearest is %q (known: %s)", args[0], data.Nearest(args[0], commands), strings.Join(commands, ", "))
@@ -98,8 +98,8 @@ func run(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 
 func runHelp(ctx context.Context, args []string, stdout, stderr io.Writer) error {
 	if len(args) == 0 || args[0] == "help" {
-		fmt.Fprint(stdout, help)
-		return nil
+		_, err := io.WriteString(stdout, help)
+		return err
 	}
 	return run(ctx, []string{args[0], "--help"}, stdout, stderr)
 }
@@ -162,8 +162,8 @@ func parse(f *pflag.FlagSet, args []string, stdout io.Writer, want int) (done bo
 		return false, usagef("%s: %v; see omen %s --help", f.Name(), err, f.Name())
 	}
 	if asked, _ := f.GetBool("help"); asked {
-		fmt.Fprintf(stdout, "%s\n%s", f.Lookup("help").Annotations["text"][0], usages(f))
-		return true, nil
+		_, err := fmt.Fprintf(stdout, "%s\n%s", f.Lookup("help").Annotations["text"][0], usages(f))
+		return true, err
 	}
 	if want >= 0 && f.NArg() != want {
 		return false, usagef("%s: expected %s, found %d; see omen %s --help", f.Name(), digits.Count(want, "argument"), f.NArg(), f.Name())

@@ -66,8 +66,18 @@ func (o *fateOptions) runSamples(knowsH0 bool, stdout io.Writer) error {
 	return report.Text(stdout, summary)
 }
 
-// asFlag is how a column is mapped on the command line.
-func asFlag(name, column string) string { return fmt.Sprintf("--columns %s=%s", name, column) }
+// asFlag is how a column is mapped on the command line: in quotation marks for a shell, and
+// for the comma between mappings, where it needs them.
+func asFlag(name, column string) string {
+	pair := name + "=" + column
+	if strings.ContainsAny(pair, ",\"\r\n") {
+		pair = `"` + strings.ReplaceAll(pair, `"`, `""`) + `"`
+	}
+	if strings.ContainsAny(pair, " \t\r\n\"'$`\\*?[](){}<>|&;!#~") {
+		pair = "'" + strings.ReplaceAll(pair, "'", `'\''`) + "'"
+	}
+	return "--columns " + pair
+}
 
 // columnMap reads --columns Om=omegam,OL=omegal.
 func (o *fateOptions) columnMap() (map[string]string, error) {
@@ -109,6 +119,11 @@ func checkSample(values map[string][]float64, rows data.Selection, columns map[s
 	if n := len(rows.Kept); n < fewestRows {
 		return &data.Error{File: rows.File, Message: fmt.Sprintf("found %s, expected a posterior sample of at least %d", digits.Count(n, "row"), fewestRows)}
 	}
+	if n := worth(values["weight"]); n < fewestRows {
+		return usagef("--samples: the weights in %s are worth %.3g rows of equal weight (Kish), expected at least %d; is the column the right one? --columns weight=NAME",
+			rows.File, n, fewestRows)
+	}
+	const other = "is the column the right one? map another: --columns "
 	for _, c := range []struct {
 		name     string
 		from, to float64
@@ -117,6 +132,10 @@ func checkSample(values map[string][]float64, rows data.Selection, columns map[s
 		{"Om", 0, largestDensity, "is it in percent? divide it by 100, or map another column: --columns Om=NAME"},
 		{"OL", -largestDensity, largestDensity, "is it in percent? divide it by 100, or map another column: --columns OL=NAME"},
 		{"H0", leastH0, largestH0, "is it h = H0/100? multiply it by 100, or map another column: --columns H0=NAME"},
+		{"Ok", -3 * largestDensity, 3 * largestDensity, other + "Ok=NAME"},
+		{"Or", 0, largestDensity, other + "Or=NAME"},
+		{"w0", -largestW, largestW, other + "w0=NAME"},
+		{"wa", -largestW, largestW, other + "wa=NAME"},
 	} {
 		for i, x := range values[c.name] {
 			if !(x >= c.from && x <= c.to) {
@@ -128,14 +147,27 @@ func checkSample(values map[string][]float64, rows data.Selection, columns map[s
 	return nil
 }
 
+// worth is how many rows of equal weight there are for the weights (Kish 1965, Survey
+// Sampling, §11.7, from memory): (Σw)²/Σw². Without weights nothing is amiss.
+func worth(weights []float64) float64 {
+	if weights == nil {
+		return math.Inf(1)
+	}
+	largest, sum, squares := slices.Max(weights), 0.0, 0.0
+	if largest == 0 {
+		return 0
+	}
+	for _, w := range weights {
+		sum, squares = sum+w/largest, squares+w/largest*(w/largest)
+	}
+	return sum * sum / squares
+}
+
 // contradiction is by how much Om + OL + Or + Ok may miss 1: rounding in a published table.
 const contradiction = 1e-3
 
 // universes makes one of every row. Columns that the sample does not have are the flags'.
 func (o *fateOptions) universes(s *result.Sample, values map[string][]float64, rows data.Selection) error {
-	if w := values["weight"]; w != nil && slices.Max(w) == 0 {
-		return usagef("--samples: all weights in %s are 0; is the column the right one? --columns weight=NAME", o.samples)
-	}
 	at := func(name string, i int, otherwise float64) float64 {
 		if v := values[name]; v != nil {
 			return v[i]

@@ -33,6 +33,7 @@ func TestFateMistakes(t *testing.T) {
 	if err := os.WriteFile(short, []byte("Om\n0.3\n0.31\n"), 0o644); err != nil {
 		t.Fatal(err)
 	}
+	lone := sampleFile(t, "Om,weight", func(i int) string { return fmt.Sprintf("0.3%d,%g", i, max(1e-300, 1-float64(i))) })
 	for _, c := range []struct{ args, want string }{
 		{"--Om 0.3 --OL nan", "--OL NaN"},
 		{"--Om nan", "--Om NaN"},
@@ -57,7 +58,13 @@ func TestFateMistakes(t *testing.T) {
 		{"--samples " + rows("m,OL", "30%g,0.7") + " --columns Om=m", "percent"},
 		{"--samples " + rows("Om,OL", "%g,170"), "s.csv:2: column \"OL\""},
 		{"--samples " + rows("Om,OL,Ok", "%g,0.7,0.5"), "s.csv:2: found Ok = 0.5"},
-		{"--samples " + rows("Om,weight", "%g,0"), "--columns weight=NAME"},
+		{"--samples " + rows("Om,weight", "%g,0"), "are worth 0 rows of equal weight (Kish), expected at least 10; is the column the right one? --columns weight=NAME"},
+		{"--samples " + lone, "are worth 1 rows of equal weight"},
+		{"--samples " + rows("Om,w0", "%g,-1e5"), "s.csv:2: column \"w0\": found -100000"},
+		{"--samples " + rows("Om,wa", "%g,1e300"), "s.csv:2: column \"wa\": found 1e+300"},
+		{"--samples " + rows("Om,Or", "%g,1e300"), "s.csv:2: column \"Or\": found 1e+300"},
+		{"--samples " + rows("Om,Ok", "%g,1e300"), "s.csv:2: column \"Ok\": found 1e+300"},
+		{"--samples=", "--samples names no file"},
 		{"--samples " + rows("x,Om", "%g,0.3"), "same universe"},
 	} {
 		err := run(context.Background(), append([]string{"fate"}, strings.Fields(c.args)...), &bytes.Buffer{}, &bytes.Buffer{})
@@ -83,5 +90,21 @@ func TestSampleFixedColumn(t *testing.T) {
 	percent := sampleFile(t, "Om", func(i int) string { return fmt.Sprint(30 + i*i%7) })
 	if text := output(t, "fate", "--samples", percent); !strings.Contains(text, "percent") {
 		t.Error(text)
+	}
+}
+
+// What a message proposes can be typed as it stands.
+func TestAsFlag(t *testing.T) {
+	for _, c := range [][2]string{
+		{"omega_m", "--columns Om=omega_m"},
+		{"Ωm", "--columns Om=Ωm"},
+		{"omega m", "--columns 'Om=omega m'"},
+		{"a,b", `--columns '"Om=a,b"'`},
+		{`the "m"`, `--columns '"Om=the ""m"""'`},
+		{"it's", `--columns 'Om=it'\''s'`},
+	} {
+		if got := asFlag("Om", c[0]); got != c[1] {
+			t.Errorf("asFlag(%q) = %s, expected %s", c[0], got, c[1])
+		}
 	}
 }

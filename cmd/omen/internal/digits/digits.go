@@ -85,9 +85,14 @@ func Format(x float64, place int) string {
 	return s
 }
 
-// Value writes a quantity with its spread, "0.293 ± 0.011".
+// Value writes a quantity with its spread, "0.293 ± 0.011". A spread that the Monte
+// Carlo error of so few draws would round to nothing keeps its first digit.
 func Value(x, spread, mcse float64) string {
 	p := Place(spread, mcse)
+	first, ok := exponent(spread)
+	if ok && math.Round(spread/math.Pow10(p)) == 0 {
+		return Format(x, p) + " ± " + Format(spread, first)
+	}
 	return Format(x, p) + " ± " + Format(spread, p)
 }
 

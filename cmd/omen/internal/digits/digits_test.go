@@ -72,6 +72,22 @@ func TestError(t *testing.T) {
 	}
 }
 
+// A spread is never written as nothing.
+func TestValueOfFewDraws(t *testing.T) {
+	for _, c := range []struct {
+		x, spread, mcse float64
+		want            string
+	}{
+		{-0.4951, 0.032, 0.011, "-0.5 ± 0.03"},
+		{0.3291, 0.0214, 0.0076, "0.33 ± 0.02"},
+		{0.3, 0, 0.01, "0.30 ± 0.00"},
+	} {
+		if got := Value(c.x, c.spread, c.mcse); got != c.want {
+			t.Errorf("Value(%g, %g, %g) = %q, expected %q", c.x, c.spread, c.mcse, got, c.want)
+		}
+	}
+}
+
 func ExampleValue() {
 	fmt.Println(Value(0.29321, 0.01141, 0.0002))
 	// Output: 0.293 ± 0.011

@@ -93,7 +93,7 @@ func Probability(f result.Fate) string {
 	case p == 0 && up > 0:
 		return "< " + small(max(up, tiniest)) + level
 	case p == 1 && up > 1e-4:
-		return "> " + digits.Format(1-up, limitPlace(up)) + level
+		return "> " + digits.Format(1-up, min(limitPlace(up), limitPlace(1-up))) + level
 	case p == 1 && up > 0:
 		return "> 1 - " + small(max(up, tiniest)) + level
 	case p == 0 || p == 1:
@@ -226,7 +226,7 @@ func times(b *strings.Builder, s *result.Summary) {
 			name += " [" + t.Unit + "]"
 		}
 		if math.IsNaN(float64(t.Median)) {
-			line(b, fmt.Sprintf("  %s –  too few draws: %.0f in which %s", pad(name, 36), math.Max(0, float64(t.ESS)), t.Given))
+			line(b, fmt.Sprintf("  %s –  too few draws of such: %.0f", pad(name, 36), math.Max(0, float64(t.ESS))))
 			continue
 		}
 		spread := float64(t.Interval68[1]-t.Interval68[0]) / 2

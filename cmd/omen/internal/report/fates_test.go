@@ -22,6 +22,8 @@ func TestProbability(t *testing.T) {
 	}{
 		{0, none, 0.00063, false, "< 0.00063 (95%)"},
 		{1, none, 0.00063, false, "> 0.9994 (95%)"},
+		{1, none, 0.96, false, "> 0.04 (95%)"},
+		{1, none, 0.28, false, "> 0.72 (95%)"},
 		{0, none, 1e-12, true, "< 1e-12"},
 		{0, none, 8.9e-14, true, "< 1e-12"},
 		{1, none, 2e-12, true, "> 1 - 2e-12"},
@@ -88,7 +90,7 @@ func TestTimesTable(t *testing.T) {
 	}})
 	want := `Times                                  median   68% interval    95% interval
   age today [Gyr]                      13.51    13.30 … 13.70   13.10 … 13.90
-  time to the big crunch [1/H0]        –  too few draws: 7 in which it recollapses
+  time to the big crunch [1/H0]        –  too few draws of such: 7
   each in those universes alone in which it comes to be
 
 `
