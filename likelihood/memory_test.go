@@ -2,6 +2,7 @@ package likelihood
 
 import (
 	"math"
+	"runtime"
 	"slices"
 	"testing"
 
@@ -140,5 +141,24 @@ func TestRememberTellsApart(t *testing.T) {
 	}
 	if len(n.keys) != 14 {
 		t.Errorf("%d entries", len(n.keys))
+	}
+}
+
+// The condensed form has the same bits however many processors computed it.
+func TestCondensedOnAnyProcessors(t *testing.T) {
+	defer runtime.GOMAXPROCS(runtime.GOMAXPROCS(0))
+	table, templates := survey(1, 300, 5)
+	full := correlate(t, written(table.Err, templates))
+	var want []float64
+	for _, n := range []int{1, 2, 3, 8} {
+		runtime.GOMAXPROCS(n)
+		kept := &notes{}
+		sn := must[*Supernovae](t)(NewSupernovae(table, full, Offset{}, Standing{}))
+		sn.Remember(kept)
+		posterior(t, curvedFamily(t), sn)
+		if n > 1 && !slices.Equal(kept.entries[0], want) {
+			t.Errorf("%d processors condense to other numbers", n)
+		}
+		want = kept.entries[0]
 	}
 }

@@ -116,10 +116,12 @@ func (c *correlated) reduce(t *triangle, fill func(int, []float64)) {
 	t.stream(n, func(i int, row []float64) { copy(row, a.Data[i*a.Stride:]) })
 }
 
-// whitenAll is whiten for many columns, a share of them in each goroutine: what
-// happens to a column does not depend on the others.
+// whitenAll is whiten for many columns, a share of them on each processor: what
+// happens to a column does not depend on the others. Shares are as wide as can be,
+// for the factor is gone through once for each, and long rows are faster.
 func (c *correlated) whitenAll(a blas64.General) {
-	const columns = 32
+	processors := runtime.GOMAXPROCS(0)
+	columns := max(16, (a.Cols+processors-1)/processors)
 	var group sync.WaitGroup
 	for from := 0; from < a.Cols; from += columns {
 		part := a
