@@ -197,7 +197,8 @@ func (s *session) Checked(c sampler.Check) {
 	if i >= 0 {
 		u.Slowest = s.job.Space.Free()[i].Name
 	}
-	s.forecast.Observe(s.elapsed(), u.Goal*c.Progress(u.Goal))
+	u.Done = c.Progress(u.Goal)
+	s.forecast.Observe(s.elapsed(), u.Goal*u.Done)
 	u.Note = ""
 	if u.Effective >= u.Goal && c.Times < sampler.Trust {
 		u.Note = "on until the errors are known"

@@ -159,14 +159,15 @@ func bar(u Update, width int) string {
 	if u.Goal < 1 || length < 1 {
 		return string([]rune(words)[:min(len([]rune(words)), max(0, width))])
 	}
-	b := progressbar.NewOptions64(int64(u.Goal),
+	const whole = 1000
+	b := progressbar.NewOptions64(whole,
 		progressbar.OptionSetWriter(io.Discard),
 		progressbar.OptionSetWidth(length),
 		progressbar.OptionSetTheme(progressbar.Theme{Saucer: "#", SaucerPadding: ".", BarStart: "[", BarEnd: "]"}),
 		progressbar.OptionSetPredictTime(false),
 		progressbar.OptionShowDescriptionAtLineEnd(),
 		progressbar.OptionSetDescription(words))
-	b.Set64(min(int64(u.Goal), max(0, int64(u.Effective))))
+	b.Set64(min(whole, max(0, int64(whole*u.Done))))
 	b.RenderBlank()
 	return strings.Join(strings.Fields(b.String()), " ")
 }

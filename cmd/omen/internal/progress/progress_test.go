@@ -30,7 +30,7 @@ func newMeter(w *bytes.Buffer, kind Kind, width int) (*Meter, *clock) {
 func after(d time.Duration) Update {
 	s := d.Seconds()
 	return Update{
-		Steps: int(20 * s), Effective: s, Goal: 4000, Slowest: "Om", RHat: 1 + 9/s, Acceptance: 0.314,
+		Steps: int(20 * s), Effective: s, Goal: 4000, Done: s / 4000, Slowest: "Om", RHat: 1 + 9/s, Acceptance: 0.314,
 		EvaluationsPerSecond: 412345, Elapsed: d, Left: 4000*time.Second - d,
 	}
 }
@@ -105,7 +105,7 @@ func TestBarEnds(t *testing.T) {
 		4000:       "100% [####################] 0 steps, 4000 of 4000 effective",
 		1e9:        "100% [##############] 0 steps, 1000000000 of 4000 effective",
 	} {
-		if got := bar(Update{Effective: effective, Goal: 4000}, 60); got != want {
+		if got := bar(Update{Effective: effective, Goal: 4000, Done: min(effective/4000, 1)}, 60); got != want {
 			t.Errorf("%g: %q, want %q", effective, got, want)
 		}
 	}
@@ -275,6 +275,15 @@ func TestForecast(t *testing.T) {
 	check("one check", at(100*time.Second, 100), 100*time.Second)
 	f.Observe(200*time.Second, 40)
 	check("fewer than before", at(200*time.Second, 100), 300*time.Second)
+}
+
+// A goal that is passed is no share any more.
+func TestPastTheGoal(t *testing.T) {
+	u := Update{Steps: 900, Effective: 5200, Goal: 4000, Slowest: "OL", Elapsed: 400 * time.Millisecond, Note: "on until the errors are known"}
+	want := "after 0.4s: 900 steps, 5200 effective samples (goal 4000, OL is slowest), on until the errors are known"
+	if got := u.String(); got != want {
+		t.Errorf("%q, want %q", got, want)
+	}
 }
 
 // A task is told of once it has taken long, and leaves nothing on a terminal.

@@ -13,6 +13,7 @@ import (
 type Update struct {
 	Steps, MaxSteps      int           // done, and at most (0 for no limit)
 	Effective, Goal      float64       // samples of the slowest parameter
+	Done                 float64       // of all that the goal takes, 0 to 1: what a bar shows
 	Slowest              string        // its name
 	RHat                 float64       // the largest
 	Acceptance           float64       // fraction of moves
@@ -32,7 +33,12 @@ func (u Update) String() string {
 	}
 	add(u.MaxSteps == 0, "%d steps", u.Steps)
 	add(u.MaxSteps > 0, "%d of at most %d steps", u.Steps, u.MaxSteps)
-	add(known(u.Effective), "%s effective samples%s", u.share(" of "), u.slowest(" (%s is slowest)"))
+	switch {
+	case u.Goal > 0 && u.Effective >= u.Goal:
+		add(known(u.Effective), "%.0f effective samples (goal %.0f%s)", u.Effective, u.Goal, u.slowest(", %s is slowest"))
+	default:
+		add(known(u.Effective), "%s effective samples%s", u.share(" of "), u.slowest(" (%s is slowest)"))
+	}
 	add(known(u.RHat), "R-hat %.3f", u.RHat)
 	add(known(u.Acceptance), "acceptance %.2f", u.Acceptance)
 	add(known(u.EvaluationsPerSecond), "%s evaluations/s", count(u.EvaluationsPerSecond))
@@ -149,6 +155,8 @@ func digits(v float64, unit string) string {
 func span(d time.Duration) string {
 	d = max(0, d)
 	switch {
+	case 0 < d && d < time.Second:
+		return fmt.Sprintf("%.1fs", d.Seconds())
 	case d < time.Minute:
 		return fmt.Sprintf("%ds", d/time.Second)
 	case d < 10*time.Minute:
@@ -167,6 +175,7 @@ type updateJSON struct {
 	MaxSteps    int     `json:"max_steps,omitempty"`
 	Effective   float64 `json:"effective,omitempty"`
 	Goal        float64 `json:"goal,omitempty"`
+	Done        float64 `json:"done,omitempty"`
 	Slowest     string  `json:"slowest,omitempty"`
 	RHat        float64 `json:"rhat,omitempty"`
 	Acceptance  float64 `json:"acceptance,omitempty"`
@@ -179,7 +188,7 @@ type updateJSON struct {
 
 // MarshalJSON encodes the update, without what is not known.
 func (u Update) MarshalJSON() ([]byte, error) {
-	return json.Marshal(updateJSON{u.Steps, u.MaxSteps, finite(u.Effective), finite(u.Goal), u.Slowest,
+	return json.Marshal(updateJSON{u.Steps, u.MaxSteps, finite(u.Effective), finite(u.Goal), finite(u.Done), u.Slowest,
 		finite(u.RHat), finite(u.Acceptance), finite(u.EvaluationsPerSecond),
 		u.Elapsed.Seconds(), u.MaxElapsed.Seconds(), u.Left.Seconds(), u.Note})
 }
@@ -190,7 +199,7 @@ func (u *Update) UnmarshalJSON(b []byte) error {
 	if err := json.Unmarshal(b, &j); err != nil {
 		return err
 	}
-	*u = Update{j.Steps, j.MaxSteps, j.Effective, j.Goal, j.Slowest, j.RHat, j.Acceptance, j.Evaluations,
+	*u = Update{j.Steps, j.MaxSteps, j.Effective, j.Goal, j.Done, j.Slowest, j.RHat, j.Acceptance, j.Evaluations,
 		seconds(j.Elapsed), seconds(j.MaxElapsed), seconds(j.Left), j.Note}
 	return nil
 }
