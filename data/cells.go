@@ -33,12 +33,19 @@ var (
 // (Planck Collaboration 2020, A&A 641, A6), lies below.
 const highest = 2000
 
+// largest is the size of a measured number, and its inverse that of an error, beyond which their squares are no numbers
+// any more; no unit needs it.
+const largest = 1e100
+
 // parse reads a cell that must obey the rule. The error is the message of an Error without its place.
 func (r rule) parse(cell string) (float64, error) {
 	v, ok := parse(cell)
 	if ok && v > r.above && !math.IsInf(v, 0) {
 		if r.redshift && v >= highest {
 			return 0, errors.New(message(clip(cell), "a redshift below 2000", "is this a velocity, or another column?"))
+		}
+		if !r.uncut && (math.Abs(v) > largest || r.above == 0 && v < 1/largest) {
+			return 0, errors.New(message(clip(cell), "a number that can be squared, 1e-100 to 1e100 in size", "correct the cell, or leave the row out with a cut"))
 		}
 		return v, nil
 	}

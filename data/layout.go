@@ -38,6 +38,10 @@ func look(b *bufio.Reader, file string) (layout, error) {
 			return l, failed(file, err)
 		}
 		s := strings.TrimSpace(string(line))
+		if strings.Contains(s, "\r") {
+			return l, &Error{File: file, Line: n, Message: message("lines that end in a carriage return alone", "a line feed after every row",
+				"save it again with the line ends of Unix or Windows")}
+		}
 		isComment := strings.HasPrefix(s, "#")
 		if s != "" && !isComment {
 			if content = append(content, s); len(content) == 1 {

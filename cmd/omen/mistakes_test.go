@@ -80,6 +80,7 @@ func TestMistakesInFiles(t *testing.T) {
 		{"a covariance that is not positive definite", withCov(matrix(1, 2, "0.02", "0.02")), []string{"c.cov", "smallest eigenvalue -0.01", "b (", "c (", "positive definite"}},
 		{"a covariance with text", withCov("4\n1 0 0 x\n"), []string{"c.cov:2", `"x"`}},
 		{"no covariance file", withRun(goodRun + "covariance = \"gone.cov\"\n"), []string{"run.toml:8: cannot read", "gone.cov"}},
+		{"a folder for a covariance", withRun(goodRun + "covariance = \".\"\n"), []string{"run.toml:8: cannot read", ": it is a folder; name a file in it"}},
 		{"unknown key", withRun("[universe]\ngeometri = \"flat\"\n" + goodRun), []string{"run.toml:2", "geometri", `"geometry"`}},
 		{"wrong type", withRun("[sampling]\nseed = \"x\"\n" + goodRun), []string{"run.toml:2", "sampling.seed"}},
 		{"empty prior", withRun(strings.Replace(goodRun, "[0, 1]", "[1, 1]", 1)), []string{"run.toml:2", "empty"}},

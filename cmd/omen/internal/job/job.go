@@ -11,6 +11,7 @@ import (
 	"os"
 	"path/filepath"
 	"sync"
+	"syscall"
 
 	"omen/cmd/omen/internal/cache"
 	"omen/cmd/omen/internal/runfile"
@@ -126,7 +127,7 @@ func (j *Job) open(key, name string, read func(io.Reader, string) error) error {
 	tee := io.TeeReader(f, sum)
 	plain, err := data.Decompress(tee)
 	if err != nil {
-		return j.Run.Errorf(key, "cannot read %s: %v", path, err)
+		return j.unreadable(key, name, err)
 	}
 	if err := read(plain, path); err != nil {
 		return err
@@ -143,6 +144,8 @@ func (j *Job) open(key, name string, read func(io.Reader, string) error) error {
 func (j *Job) unreadable(key, name string, err error) error {
 	path, err := j.Path(name), underlying(err)
 	switch {
+	case errors.Is(err, syscall.EISDIR):
+		return j.Run.Errorf(key, "cannot read %s: it is a folder; name a file in it", path)
 	case !errors.Is(err, fs.ErrNotExist):
 		return j.Run.Errorf(key, "cannot read %s: %v", path, err)
 	case filepath.IsAbs(name):

@@ -64,6 +64,8 @@ func explain(file string, err error) error {
 		msg := plain(err)
 		if key := strings.Join(wrong.Key(), "."); key != "" {
 			msg = key + ": " + msg
+		} else {
+			msg += "; expected a run file: TOML in UTF-8, with [tables] of key = value and text in quotation marks"
 		}
 		return &Error{file, line, msg}
 	}

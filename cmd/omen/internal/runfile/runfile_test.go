@@ -30,6 +30,7 @@ func TestMistakes(t *testing.T) {
 		{"wrong type", good + "[sampling]\nseed = \"one\"\n", `my.toml:9: sampling.seed`},
 		{"bad duration", good + "[sampling]\nmax-time = \"soon\"\n", `my.toml:9: `},
 		{"broken TOML", "[prior\n", `my.toml:1: `},
+		{"a table for a run file", "z,mag\n0.1,20\n", `my.toml:1: expected '=' after key; expected a run file: TOML in UTF-8`},
 		{"wrong word", "[universe]\ngeometry = \"round\"\n" + good, `my.toml:2: universe.geometry: found "round", expected one of curved, flat`},
 		{"no data", "[prior]\nOm = { flat = [0, 1] }\nOL = 0.7\n", "my.toml: there are no data"},
 		{"unknown parameter", "[prior]\nOmega_m = 0.3\n" + good[8:], `my.toml:2: "Omega_m" is not a parameter; the nearest is "Om"`},
