@@ -11,7 +11,8 @@
 //     them to a small triangular matrix over a few nodes in redshift, so that their
 //     chi-squared costs the same however many they are (condense.go), and asks the
 //     terms themselves only for a universe in which the nodes are too few. One
-//     pass over distances serves all terms.
+//     pass over distances serves all terms. A [Memory] may keep that matrix from one
+//     run to the next, and a [Deferred] noise need not be made before it is asked.
 //  4. An [Evaluator] is a Posterior with scratch memory of its own, one for each
 //     goroutine. LogDensity is the function that is called millions of times; it
 //     does not allocate.

@@ -4,6 +4,8 @@ import (
 	"math"
 	"runtime"
 	"slices"
+	"sync"
+	"sync/atomic"
 	"testing"
 
 	"omen/data"
@@ -160,5 +162,32 @@ func TestCondensedOnAnyProcessors(t *testing.T) {
 			t.Errorf("%d processors condense to other numbers", n)
 		}
 		want = kept.entries[0]
+	}
+}
+
+// Whichever evaluator first needs a deferred noise makes it, for all of them.
+func TestDeferredOnce(t *testing.T) {
+	table, templates := survey(1, 100, 5)
+	full := correlate(t, written(table.Err, templates))
+	f, n := curvedFamily(t), &notes{}
+	build := func(noise Noise) *Posterior {
+		sn := must[*Supernovae](t)(NewSupernovae(table, noise, Offset{}, Standing{}))
+		sn.Remember(n)
+		return posterior(t, f, sn).Direct()
+	}
+	want := build(full).Evaluator().LogDensity([]float64{0.3, 0.7})
+	var calls atomic.Int32
+	d := build(Deferred(100, func() Noise { calls.Add(1); return full }))
+	var group sync.WaitGroup
+	for range 8 {
+		group.Go(func() {
+			if got := d.Evaluator().LogDensity([]float64{0.3, 0.7}); got != want {
+				t.Errorf("log-density %v, want %v", got, want)
+			}
+		})
+	}
+	group.Wait()
+	if n := calls.Load(); n != 1 {
+		t.Errorf("the noise was made %d times", n)
 	}
 }
