@@ -56,7 +56,11 @@ func runCompare(ctx context.Context, args []string, stdout io.Writer) error {
 	}
 	var runs []*gather.Run
 	for _, name := range f.Args() {
-		r, err := gather.Open(ctx, filepath.Clean(name), explore.Options{Version: version(), Cache: cache.Default()})
+		dir, err := runFolder(name)
+		if err != nil {
+			return err
+		}
+		r, err := gather.Open(ctx, dir, explore.Options{Version: version(), Cache: cache.Default()})
 		if err != nil {
 			return err
 		}

@@ -111,6 +111,26 @@ func TestNewRecognisesColumns(t *testing.T) {
 	checkMistake(t, "unrecognised columns", err, []string{"odd.csv:1", "no such column"})
 }
 
+// Whatever files, folders and columns are called, the new run file is one.
+func TestNewQuotes(t *testing.T) {
+	dir := folder(t, map[string]string{"a \"b\"": "zHD,mB,\"x\ny\"\n0.1,19,1\n", "c\\\x1b\n\"": "z,mag,mag_err\n0.1,19,0.1\n0.2,20.5,0.1\n"})
+	for i, name := range []string{"a \"b\"", "c\\\x1b\n\""} {
+		mine := filepath.Join(dir, []string{"my \"run\"", "two\nlines"}[i])
+		got := output(t, "new", mine, "--supernovae", filepath.Join(dir, name))
+		if strings.Contains(got, "\x1b") || !strings.Contains(got, "omen fit '"+dir) {
+			t.Errorf("%q said %q", name, got)
+		}
+		run, err := parseRun(filepath.Join(mine, filepath.Base(mine)+".toml"), nil)
+		if err != nil {
+			t.Errorf("%q: %v", name, err)
+			continue
+		}
+		if run.Title != filepath.Base(mine) || run.Data[0].Table != "../"+name {
+			t.Errorf("%q: title %q, table %q", name, run.Title, run.Data[0].Table)
+		}
+	}
+}
+
 // Names that would steer the terminal are shown, not obeyed.
 func TestInspectPrintable(t *testing.T) {
 	dir := folder(t, map[string]string{"run.toml": goodRun + "name = \"x\\u001b[2J\"\n",

@@ -153,6 +153,8 @@ func TestMistakesOnTheCommandLine(t *testing.T) {
 		{[]string{"fate", "--Om", "0.3", "--Or", "hot"}, []string{"--Or hot", "from-temperature"}},
 		{[]string{"fate", "--Om", "NaN"}, []string{"Om"}},
 		{[]string{"new", dir}, []string{"exists"}},
+		{[]string{"new", ""}, []string{"the folder has no name"}},
+		{[]string{"new", filepath.Join(dir, "n"), "--bao", dir}, []string{"not a file but a folder"}},
 		{[]string{"new", filepath.Join(dir, "n"), "--covariance", "c.cov"}, []string{"without a table"}},
 		{[]string{"new", filepath.Join(dir, "n"), "--supernovae", "gone.csv"}, []string{"cannot read gone.csv"}},
 		{[]string{"new", filepath.Join(dir, "n"), "--supernovae", "gone.csv", "--covariance", "gone.cov"}, []string{"cannot read gone.cov"}},

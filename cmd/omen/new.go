@@ -9,11 +9,12 @@ import (
 	"os"
 	"path/filepath"
 	"slices"
-	"strconv"
 	"strings"
 	"text/template"
+	"unicode"
 
 	"omen/cmd/omen/internal/example"
+	"omen/cmd/omen/internal/report"
 	"omen/data"
 
 	"github.com/spf13/pflag"
@@ -45,6 +46,7 @@ func newFlagSet(o *newOptions) *pflag.FlagSet {
 // newRun is what the template is filled with.
 type newRun struct {
 	File, Title string
+	Shown       string // the file as it can be typed
 	BAO         bool
 	Tables      []newTable
 }
@@ -63,6 +65,9 @@ func runNew(args []string, stdout io.Writer) error {
 	f := newFlagSet(&o)
 	if done, err := parse(f, args, stdout, 1); done || err != nil {
 		return err
+	}
+	if f.Arg(0) == "" {
+		return usagef("new: the folder has no name; give it one, for example omen new mine")
 	}
 	dir := filepath.Clean(f.Arg(0))
 	if o.covariance != "" && o.supernovae == "" && o.bao == "" {
@@ -92,7 +97,7 @@ func readable(path string) error {
 	}
 	defer f.Close()
 	if info, err := f.Stat(); err != nil || info.IsDir() {
-		return usagef("new: cannot read %s: it is not a file", path)
+		return usagef("new: cannot read %s: it is not a file but a folder; name a file in it", path)
 	}
 	return nil
 }
@@ -135,6 +140,9 @@ var useful = map[string][]string{
 
 // recognise reads the header of a table and proposes its columns.
 func recognise(kind, path, dir string) (*newTable, error) {
+	if err := readable(path); err != nil {
+		return nil, err
+	}
 	f, err := os.Open(path)
 	if err != nil {
 		return nil, usagef("new: cannot read %s: %v", path, err.(*os.PathError).Err)
@@ -181,19 +189,37 @@ func relative(path, dir string) string {
 
 // quoted escapes what goes between quotation marks in the template.
 func (t newTable) quoted() newTable {
-	q := func(s string) string { return strings.Trim(strconv.Quote(s), `"`) }
-	t.Path, t.Covariance, t.Keep = q(t.Path), q(t.Covariance), q(t.Keep)
+	t.Path, t.Covariance, t.Keep = escaped(t.Path), escaped(t.Covariance), escaped(t.Keep)
+	t.Header = report.Printable(t.Header)
 	t.Columns = slices.Clone(t.Columns)
 	for i := range t.Columns {
-		t.Columns[i].File = q(t.Columns[i].File)
+		t.Columns[i].File = escaped(t.Columns[i].File)
 	}
 	return t
+}
+
+// escaped is a text as it stands between the quotation marks of a basic string (TOML 1.0.0).
+func escaped(s string) string {
+	var b strings.Builder
+	for _, r := range s {
+		switch {
+		case r == '"' || r == '\\':
+			b.WriteRune('\\')
+			b.WriteRune(r)
+		case unicode.IsControl(r):
+			fmt.Fprintf(&b, "\\u%04X", r)
+		default:
+			b.WriteRune(r)
+		}
+	}
+	return b.String()
 }
 
 func (run *newRun) write(dir string, survey []byte, stdout io.Writer) error {
 	for i := range run.Tables {
 		run.Tables[i] = run.Tables[i].quoted()
 	}
+	run.Title, run.Shown = escaped(run.Title), shellWord(run.File)
 	var text bytes.Buffer
 	if err := template.Must(template.New("run").Parse(newTemplate)).Execute(&text, run); err != nil {
 		return err
@@ -209,12 +235,14 @@ func (run *newRun) write(dir string, survey []byte, stdout io.Writer) error {
 	if err := os.WriteFile(run.File, text.Bytes(), 0o644); err != nil {
 		return err
 	}
-	fmt.Fprintf(stdout, "%s is ready.\n", run.File)
+	var said strings.Builder
+	fmt.Fprintf(&said, "%s is ready.\n", report.Printable(run.File))
 	for _, t := range run.Tables {
 		for _, m := range t.Missing {
-			fmt.Fprintf(stdout, "No column of %s was recognised as %s: fill it in first.\n", t.Path, m)
+			fmt.Fprintf(&said, "No column of %s was recognised as %s: fill it in first.\n", t.Path, m)
 		}
 	}
-	fmt.Fprintf(stdout, "\n  omen inspect %s    what it reads\n  omen fit %s        constraints and fates\n", run.File, run.File)
-	return nil
+	fmt.Fprintf(&said, "\n  omen inspect %s    what it reads\n  omen fit %s        constraints and fates\n", run.Shown, run.Shown)
+	_, err := io.WriteString(stdout, said.String())
+	return err
 }

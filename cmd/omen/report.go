@@ -80,7 +80,10 @@ func runReport(ctx context.Context, args []string, stdout io.Writer) error {
 	if err := o.check(); err != nil {
 		return err
 	}
-	dir := filepath.Clean(f.Arg(0))
+	dir, err := runFolder(f.Arg(0))
+	if err != nil {
+		return err
+	}
 	r, err := gather.Open(ctx, dir, explore.Options{Version: version(), Cache: cache.Default()})
 	if err != nil {
 		return err

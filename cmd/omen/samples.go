@@ -73,10 +73,15 @@ func asFlag(name, column string) string {
 	if strings.ContainsAny(pair, ",\"\r\n") {
 		pair = `"` + strings.ReplaceAll(pair, `"`, `""`) + `"`
 	}
-	if strings.ContainsAny(pair, " \t\r\n\"'$`\\*?[](){}<>|&;!#~") {
-		pair = "'" + strings.ReplaceAll(pair, "'", `'\''`) + "'"
+	return "--columns " + shellWord(pair)
+}
+
+// shellWord is a word as it can be typed in a shell, in quotation marks where it needs them.
+func shellWord(s string) string {
+	if s != "" && !strings.ContainsAny(s, " \"'$`\\*?[](){}<>|&;!#~") && report.Printable(s) == s {
+		return s
 	}
-	return "--columns " + pair
+	return "'" + strings.ReplaceAll(report.Printable(s), "'", `'\''`) + "'"
 }
 
 // columnMap reads --columns Om=omegam,OL=omegal.

@@ -28,7 +28,10 @@ func runStatus(args []string, stdout io.Writer) error {
 	if done, err := parse(f, args, stdout, 1); done || err != nil {
 		return err
 	}
-	dir := filepath.Clean(f.Arg(0))
+	dir, err := runFolder(f.Arg(0))
+	if err != nil {
+		return err
+	}
 	state, err := chainfile.ReadState(dir)
 	if errors.Is(err, fs.ErrNotExist) {
 		return &explore.Refused{Dir: dir, Why: explore.NoRun}
@@ -42,6 +45,15 @@ func runStatus(args []string, stdout io.Writer) error {
 	}
 	_, err = io.WriteString(stdout, text)
 	return err
+}
+
+// runFolder refuses a file in place of the folder of a run.
+func runFolder(name string) (string, error) {
+	dir := filepath.Clean(name)
+	if info, err := os.Stat(dir); err == nil && !info.IsDir() {
+		return "", &explore.Refused{Dir: dir, Why: "found a file, expected the folder of a run; name the one that omen fit made"}
+	}
+	return dir, nil
 }
 
 // describe says how far the run in dir is.
