@@ -49,14 +49,20 @@ func (m *moments) judge(series [][]float64, spacing int) {
 }
 
 // meanVariance returns the weighted mean and variance of draws, and the mean
-// weight. Two passes, so that a mean far from zero costs no digits.
+// weight. Two passes, so that a mean far from zero costs no digits. The variance of a
+// constant is zero, whatever the rounding of its mean.
 func meanVariance(d Draws) (mean, variance, weight float64) {
 	var sum, sumW float64
+	least, most := math.Inf(1), math.Inf(-1)
 	d.each(func(x, w float64) {
 		sum += w * x
 		sumW += w
+		least, most = min(least, x), max(most, x)
 	})
 	mean = sum / sumW
+	if least == most {
+		return least, 0, sumW / float64(d.Len())
+	}
 	d.each(func(x, w float64) { variance += w * (x - mean) * (x - mean) })
 	return mean, variance / sumW, sumW / float64(d.Len())
 }

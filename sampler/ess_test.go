@@ -2,6 +2,7 @@ package sampler
 
 import (
 	"math"
+	"slices"
 	"math/rand/v2"
 	"testing"
 )
@@ -62,7 +63,8 @@ func TestESSThatCannotBeKnown(t *testing.T) {
 		"none":     NewDraws(2),
 		"empty":    NewDraws(2, nil, nil),
 		"short":    NewDraws(1, normals(1, 7)),
-		"constant": NewDraws(1, make([]float64, 100)),
+		"zero":     NewDraws(1, make([]float64, 100)),
+		"constant": NewDraws(1, slices.Repeat([]float64{0.3}, 3000)),
 		"NaN":      NewDraws(1, append(normals(1, 100), math.NaN())),
 		"infinite": NewDraws(1, append(normals(1, 100), math.Inf(1))),
 	} {

@@ -10,6 +10,7 @@ import (
 	"path/filepath"
 	"strconv"
 	"strings"
+	"syscall"
 
 	"omen/cmd/omen/internal/chainfile"
 	"omen/cmd/omen/internal/explore"
@@ -120,10 +121,18 @@ func load(file string, sets []string) (*job.Job, error) {
 // parseRun reads a run file and nothing that it names.
 func parseRun(file string, sets []string) (*runfile.Run, error) {
 	text, err := os.ReadFile(file)
+	if kept := filepath.Join(file, explore.RunFileName); errors.Is(err, syscall.EISDIR) && exists(kept) {
+		return nil, usagef("%s is the folder of a run; omen resume %s goes on with it, omen fit %s fits the same anew", file, file, kept)
+	}
 	if err != nil {
 		return nil, usagef("cannot read %s: %v; omen new makes a run file", file, err.(*os.PathError).Err)
 	}
 	return runfile.Parse(file, text, sets)
+}
+
+func exists(path string) bool {
+	_, err := os.Stat(path)
+	return err == nil
 }
 
 // freeFolder is the run file's name with the first number that is not taken.

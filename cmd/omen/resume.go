@@ -3,7 +3,6 @@ package main
 import (
 	"context"
 	"io"
-	"path/filepath"
 
 	"omen/cmd/omen/internal/explore"
 )
@@ -31,8 +30,11 @@ func runResume(ctx context.Context, args []string, stdout, stderr io.Writer) err
 	if err := l.check(); err != nil {
 		return err
 	}
+	dir, err := runFolder(f.Arg(0))
+	if err != nil {
+		return err
+	}
 	l.explore.Version, l.explore.Cache = version(), l.cache()
-	dir := filepath.Clean(f.Arg(0))
 	run, err := explore.Resume(ctx, dir, l.sets(f), l.explore, stderr)
 	if err != nil {
 		return err

@@ -269,6 +269,18 @@ func TestRefusals(t *testing.T) {
 		must(t, status, c.words, "resume", dir)
 		write(t, was, path)
 	}
+	must(t, 2, "omen resume "+dir+" goes on with it", "fit", dir)
+	must(t, 2, "found a file, expected the folder of a run", "resume", filepath.Join(dir, "run.toml"))
+	for _, name := range []string{chainfile.ChainName, chainfile.SumsName} {
+		path := filepath.Join(dir, name)
+		was := read(t, path)
+		if err := os.Remove(path); err != nil {
+			t.Fatal(err)
+		}
+		must(t, 2, dir+": "+name+" is missing; put it back from a copy", "resume", dir)
+		must(t, 2, dir+": "+name+" is missing; put it back from a copy", "report", dir)
+		write(t, was, path)
+	}
 	os.Remove(filepath.Join(base, "desi-dr2-bao.cov"))
 	must(t, 2, "desi-dr2-bao.cov: no such file or directory", "resume", dir)
 }

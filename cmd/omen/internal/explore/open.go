@@ -38,7 +38,7 @@ func Open(dir string, o Options) (*result.Run, error) {
 		return s.chain.Append(step.Number, step.X, step.LogP, step.Accepted)
 	})
 	if err != nil {
-		return nil, err
+		return nil, incomplete(dir, err)
 	}
 	o.tellCut(dir, rec)
 	if s.chain.Steps() == 0 {

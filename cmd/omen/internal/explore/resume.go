@@ -133,7 +133,7 @@ func (s *session) restore(state chainfile.State, stderr io.Writer) error {
 		return s.chain.Append(step.Number, step.X, step.LogP, step.Accepted)
 	})
 	if err != nil {
-		return err
+		return incomplete(s.dir, err)
 	}
 	if notice := rec.Notice(); notice != "" {
 		s.tell(stderr, notice)
@@ -172,4 +172,14 @@ func (s *session) verify(step chainfile.Step) error {
 		}
 	}
 	return nil
+}
+
+// incomplete says what to do about a run that lacks one of its files; any other
+// error stays what it is.
+func incomplete(dir string, err error) error {
+	var path *fs.PathError
+	if !errors.Is(err, fs.ErrNotExist) || !errors.As(err, &path) {
+		return err
+	}
+	return &Refused{dir, filepath.Base(path.Path) + " is missing; put it back from a copy, or begin again in another folder"}
 }

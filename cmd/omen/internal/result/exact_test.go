@@ -89,3 +89,27 @@ func TestOfSample(t *testing.T) {
 		t.Errorf("times %+v", got.Times)
 	}
 }
+
+// A parameter that is the same in every row says nothing of what the sample is worth;
+// if all are, nothing does.
+func TestOfSampleWithoutSpread(t *testing.T) {
+	for _, c := range []struct {
+		width   float64
+		warning string
+	}{{0.02, ""}, {0, "no parameter varies"}} {
+		rng := rand.New(rand.NewPCG(7, 8))
+		s := Sample{Names: []string{"Om", "H0"}, KnowsH0: true}
+		for range 3000 {
+			om := 0.3 + c.width*rng.NormFloat64()
+			s.Universes = append(s.Universes, model.Universe{Om: om, OL: 1 - om, H0: 70, W0: -1})
+		}
+		got := OfSample(s)
+		if text := strings.Join(got.Warnings, "; "); (text == "") != (c.warning == "") || !strings.Contains(text, c.warning) {
+			t.Errorf("width %v: warnings %q, want %q", c.width, text, c.warning)
+		}
+		limit := float64(got.Fates[0].Upper95)
+		if (c.width > 0) != (limit > 0 && limit < 0.01) {
+			t.Errorf("width %v: P(recollapse) < %v", c.width, limit)
+		}
+	}
+}

@@ -5,6 +5,7 @@ import (
 	"math"
 	"slices"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/outlook"
 	"omen/likelihood"
 	"omen/model"
@@ -36,8 +37,13 @@ func OfSample(p Sample) *Summary {
 	least := math.Inf(1)
 	for _, name := range p.Names {
 		q := quantity(name, sampler.Summarize(p.draws(func(u model.Universe) float64 { return parameter(name, u) })))
-		least = math.Min(least, float64(q.ESS))
+		if ess := float64(q.ESS); ess < least { // NaN of a parameter that is the same in all rows
+			least = ess
+		}
 		s.Parameters = append(s.Parameters, q)
+	}
+	if math.IsInf(least, 1) {
+		least = math.NaN()
 	}
 	for _, name := range p.derivedNames(f) {
 		d := p.draws(func(u model.Universe) float64 { return ofUniverse(name, u) })
@@ -49,7 +55,10 @@ func OfSample(p Sample) *Summary {
 		s.add(drawnTime(newTime(e, p.KnowsH0), p.draws(func(u model.Universe) float64 { return e.At(u, p.KnowsH0) })))
 	}
 	s.Assumptions = append(p.Notes, p.words()...)
-	if least < fewestForSample {
+	switch {
+	case math.IsNaN(least):
+		s.Warnings = append(s.Warnings, "no parameter varies along the sample: nothing can be said of errors; look at what its columns were taken for")
+	case least < fewestForSample:
 		s.Warnings = append(s.Warnings, fmt.Sprintf("the sample is worth %.0f independent draws: intervals and small probabilities are rough below %d; ask its authors for more rows", math.Floor(least), fewestForSample))
 	}
 	return s
@@ -121,7 +130,7 @@ func parameter(name string, u model.Universe) float64 {
 
 // words says what the sample was taken for.
 func (p *Sample) words() []string {
-	rows := fmt.Sprintf("%d rows in the order of the file, whose correlation from row to row is estimated and allowed for", len(p.Universes))
+	rows := digits.Count(len(p.Universes), "row") + " in the order of the file, whose correlation from row to row is estimated and allowed for"
 	out := []string{rows}
 	if p.Weights != nil {
 		var sum, squares float64

@@ -5,6 +5,7 @@ import (
 	"math"
 	"sort"
 
+	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/runfile"
 	"omen/likelihood"
 	"omen/sampler"
@@ -17,7 +18,7 @@ func warnings(r Run, s *Summary, view sampler.View) []string {
 	var out []string
 	add := func(format string, args ...any) { out = append(out, fmt.Sprintf(format, args...)) }
 	if why := r.Ended(); why != "" {
-		add("unfinished: %s after %d steps, before the goal was met; omen resume goes on", why, r.Chain.Steps())
+		add("unfinished: %s after %s, before the goal was met; omen resume goes on", why, digits.Count(r.Chain.Steps(), "step"))
 	}
 	if r.Chain != nil {
 		out = append(out, chainWarnings(r)...)
@@ -34,10 +35,13 @@ func chainWarnings(r Run) []string {
 	if rhat := check.RHat(); !(rhat < 1.01) {
 		add("R-hat is %.3f, above 1.01: the ensembles disagree; run longer, or look for a second peak", rhat)
 	}
-	if goal := float64(r.Job.Run.Sampling.EffectiveSamples); check.ESS() < goal {
+	switch goal := float64(r.Job.Run.Sampling.EffectiveSamples); {
+	case math.IsNaN(check.ESS()):
+		add("the effective samples cannot be told from so short a chain: intervals are uncertain; run longer")
+	case check.ESS() < goal:
 		add("effective samples %.0f, below the goal of %.0f: intervals are uncertain; run longer", math.Floor(check.ESS()), goal)
 	}
-	if check.Times < sampler.Trust {
+	if !(check.Times >= sampler.Trust) {
 		add("the chain is %.0f autocorrelation times long, below %d: Monte Carlo errors may be too small; run longer", math.Floor(check.Times), sampler.Trust)
 	}
 	return out
@@ -160,11 +164,11 @@ func edgeWarnings(p likelihood.Prior, q Quantity, density [2]float64) []string {
 func fitWarnings(f Fit) []string {
 	switch p := float64(f.Probability); {
 	case f.DoF <= 0:
-		return []string{fmt.Sprintf("%d degrees of freedom: there are no more data than parameters, and chi-squared tests nothing", f.DoF)}
+		return []string{digits.Count(f.DoF, "degree of freedom") + ": there are no more data than parameters, and chi-squared tests nothing"}
 	case p < 0.001:
-		return []string{fmt.Sprintf("chi-squared %.1f for %d degrees of freedom is improbably high (%.1g): errors too small, an outlier, or a model that cannot fit; see omen inspect", float64(f.Chi2), f.DoF, p)}
+		return []string{fmt.Sprintf("chi-squared %.1f for %s is improbably high (%.1g): errors too small, an outlier, or a model that cannot fit; see omen inspect", float64(f.Chi2), digits.Count(f.DoF, "degree of freedom"), p)}
 	case p > 0.999:
-		return []string{fmt.Sprintf("chi-squared %.1f for %d degrees of freedom is improbably low (%.1g): the errors look too large", float64(f.Chi2), f.DoF, 1-p)}
+		return []string{fmt.Sprintf("chi-squared %.1f for %s is improbably low (%.1g): the errors look too large", float64(f.Chi2), digits.Count(f.DoF, "degree of freedom"), 1-p)}
 	}
 	return nil
 }
