@@ -2,8 +2,8 @@ package sampler
 
 import (
 	"math"
-	"slices"
 	"math/rand/v2"
+	"slices"
 	"testing"
 )
 
