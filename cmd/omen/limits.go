@@ -28,7 +28,7 @@ func (l *limits) add(f *pflag.FlagSet) {
 	f.IntVar(&l.steps, "max-steps", 0, "stop at this many steps in all")
 	f.BoolVar(&l.explore.Quiet, "quiet", false, "show no progress")
 	f.BoolVar(&l.noReport, "no-report", false, "leave out figures and pages; the text and summary.json remain")
-	f.BoolVar(&l.noCache, "no-cache", false, "factorise covariances anew, and keep nothing in the user's cache folder")
+	f.BoolVar(&l.noCache, "no-cache", false, "factorise and condense anew, and keep nothing in the user's cache folder")
 	f.IntVar(&l.explore.Threads, "threads", 0, "ensembles that run at the same time; 0: one per processor")
 }
 
