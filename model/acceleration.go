@@ -11,27 +11,80 @@ import "math"
 // decelerated and accelerate again, which takes much radiation and a negative OL.
 func (u Universe) AccelerationOnset() float64 {
 	e := u.expansion()
-	accelerates := func(a float64) float64 {
-		_, dr := e.reduced(math.Log(a))
-		return dr
-	}
-	if !(accelerates(1) > 0) {
+	if _, dr := e.reduced(0); !(dr > 0) {
 		return math.NaN()
 	}
-	start := e.pastZero()
-	hi := 1.0
+	if e.b == 0 && e.p < 2 && e.ol > 0 && e.om >= 0 && e.or >= 0 {
+		return e.onlyOnset()
+	}
+	return e.lastOnset()
+}
+
+// onlyOnset is the onset for constant w < -1/3, with no density negative but that of curvature. ä then has the
+// sign of
+//
+//	f(a) = k aⁿ - Om a - 2Or,   k = -q OL, n = 2-q
+//
+// which is convex and has one positive root. a²E² is least there: if it is negative the universe bounced later.
+// Newton's method approaches the root from above, beginning with the smaller of its step from the root
+// A = (Om/k)^(1/(n-1)) without radiation and of A + (2Or/k)^(1/n), neither of which is below it.
+func (e *expansion) onlyOnset() float64 {
+	k, n := (2-e.p)*e.ol, 4-e.p
+	a := root(e.om/k, n-1)
+	if e.or > 0 {
+		bound := a + root(2*e.or/k, n)
+		a = min(bound, 1, a+2*e.or/((n-1)*e.om))
+		for range 200 {
+			p := k * power(a, n-1)
+			next := a - (a*(p-e.om)-2*e.or)/(n*p-e.om)
+			if !(next < a) {
+				break
+			}
+			a = next
+		}
+	}
+	if a <= earliest || !(e.ok >= 0 || e.sign(a) > 0) {
+		return math.Inf(1)
+	}
+	return 1/a - 1
+}
+
+// power is xⁿ, and root its inverse: with a cosmological constant n is 3 or 4.
+func power(x, n float64) float64 {
+	if n == 3 {
+		return x * x * x
+	}
+	return math.Pow(x, n)
+}
+
+func root(x, n float64) float64 {
+	switch n {
+	case 3:
+		return math.Cbrt(x)
+	case 4:
+		return math.Sqrt(math.Sqrt(x))
+	}
+	return math.Pow(x, 1/n)
+}
+
+// earliest is the scale factor beyond which the onset of acceleration is not followed.
+const earliest = 1e-30
+
+// lastOnset is the onset in any universe that accelerates today.
+func (e *expansion) lastOnset() float64 {
+	start, hi := e.pastZero(), 1.0
 	cuts, n := e.accelerationCuts(start)
 	for i := n - 1; i >= 0; i-- {
-		if accelerates(cuts[i]) <= 0 {
-			return 1/signChange(accelerates, cuts[i], hi) - 1
+		if _, dr := e.reduced(math.Log(cuts[i])); dr <= 0 {
+			return e.onsetBetween(cuts[i], hi)
 		}
 		hi = cuts[i]
 	}
-	lo := max(start, 1e-30)
-	if accelerates(lo) > 0 {
+	lo := max(start, earliest)
+	if _, dr := e.reduced(math.Log(lo)); dr > 0 {
 		return math.Inf(1)
 	}
-	return 1/signChange(accelerates, lo, hi) - 1
+	return e.onsetBetween(lo, hi)
 }
 
 // accelerationCuts are the scale factors in (start, 1), ascending, between which the sign of ä changes at most
@@ -47,18 +100,33 @@ func (e *expansion) accelerationCuts(start float64) ([3]float64, int) {
 	}, start, 1)
 }
 
-// signChange finds by bisection in ln a where f, not positive at lo and positive at hi, changes sign.
-func signChange(f func(float64) float64, lo, hi float64) float64 {
-	for hi-lo > 4e-16*hi {
-		mid := middle(lo, hi)
-		if mid <= lo || mid >= hi {
+// onsetBetween is the redshift at which ä changes sign, from not positive at the scale factor lo to positive at
+// hi: by Newton's method for ln(OL L D/G), which is nearly linear in s = ln a, kept inside a shrinking bracket.
+func (e *expansion) onsetBetween(lo, hi float64) float64 {
+	l, h := math.Log(lo), math.Log(hi)
+	q := e.p - 2
+	s := h
+	for range 200 {
+		a := math.Exp(s)
+		m, rad := e.om/a, e.or/(a*a)
+		steep, brake := e.b*a-q, m+2*rad // L and G
+		ratio := e.ol * steep * math.Exp(e.b*(a-1)-q*s) / brake
+		if ratio > 1 {
+			h = s
+		} else {
+			l = s
+		}
+		next := s - math.Log(ratio)/(e.b*a/steep+steep+(m+4*rad)/brake)
+		if math.Abs(next-s) <= 2e-16*max(1, math.Abs(s)) {
 			break
 		}
-		if f(mid) > 0 {
-			hi = mid
-		} else {
-			lo = mid
+		if !(next > l && next < h) {
+			next = l + (h-l)/2
 		}
+		if next == l || next == h {
+			break
+		}
+		s = next
 	}
-	return hi
+	return math.Expm1(-s)
 }

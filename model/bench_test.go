@@ -23,6 +23,9 @@ var benchCases = []struct {
 	{"w", benchW},
 	{"w0-wa", benchW0Wa},
 	{"loitering", benchNear},
+	{"w0-wa-early", Universe{Om: 0.3, OL: 0.7, H0: 70, W0: -0.7, Wa: 0.2}},
+	{"phantom", Universe{Om: 0.3, OL: 0.68, H0: 70, W0: -1.05}},
+	{"recollapse", Universe{Om: 1.3, OL: -0.2, H0: 70, W0: -1}},
 }
 
 // benchRedshifts are n redshifts as a supernova survey spreads them, denser at low z, from 0.001 to 2.26.
@@ -85,6 +88,13 @@ func BenchmarkHasBigBang(b *testing.B) { benchmarkEach(b, func(u Universe) { u.H
 func BenchmarkFate(b *testing.B)       { benchmarkEach(b, func(u Universe) { u.Fate() }) }
 func BenchmarkAgeToday(b *testing.B)   { benchmarkEach(b, func(u Universe) { u.AgeToday() }) }
 func BenchmarkDM(b *testing.B)         { benchmarkEach(b, func(u Universe) { u.DM(1) }) }
+func BenchmarkLookback(b *testing.B)   { benchmarkEach(b, func(u Universe) { u.Lookback(0.7) }) }
+func BenchmarkRip(b *testing.B)        { benchmarkEach(b, func(u Universe) { u.Rip() }) }
+func BenchmarkCrunch(b *testing.B)     { benchmarkEach(b, func(u Universe) { u.Crunch() }) }
+
+func BenchmarkAccelerationOnset(b *testing.B) {
+	benchmarkEach(b, func(u Universe) { u.AccelerationOnset() })
+}
 
 func BenchmarkHistory(b *testing.B) {
 	times := make([]float64, 200)

@@ -12,8 +12,7 @@ package model
 func (u Universe) HasBigBang() bool {
 	e := u.expansion()
 	if e.lambda && e.or == 0 && e.om > 0 {
-		k := -e.ok
-		return !(e.ol > 0 && k > 0 && k < 3*e.ol && 6.75*e.om*e.om*e.ol <= k*k*k) && finite(u)
+		return !e.bounced() && finite(u)
 	}
 	if sign, n := e.early(); !(sign > 0 && n > 0) {
 		return false
@@ -28,6 +27,12 @@ func (u Universe) HasBigBang() bool {
 		}
 	}
 	return finite(u)
+}
+
+// bounced reports a zero of E² behind, in a universe of matter, curvature and a cosmological constant.
+func (e *expansion) bounced() bool {
+	k := -e.ok
+	return e.ol > 0 && k > 0 && k < 3*e.ol && 6.75*e.om*e.om*e.ol <= k*k*k
 }
 
 // finite reports that the parameters that shape E² are all finite numbers: x-x is 0 only then.

@@ -16,11 +16,26 @@ func (e *expansion) comoving(y float64) float64 {
 	if y == 0 {
 		return 0
 	}
-	return whole.integrate(func(y float64) (v, noise float64) {
-		x := math.Exp(y)
-		v, noise = e.inverse(x, y, 1/x)
-		return x * v, x * noise
-	}, 0, y)
+	return whole.integrate(e.comovingRate, 0, y, integralTail)
+}
+
+// comovingRate is (1+z)/E at y = ln(1+z), and its rounding error.
+func (e *expansion) comovingRate(y points, n int) (v points, noise float64) {
+	var s, a points
+	for k, t := range y[:n] {
+		s[k], a[k] = -t, -t
+	}
+	exponentials(a[:n])
+	dark := e.dark(&s, &a, n)
+	for k, t := range a[:n] {
+		x := 1 / t
+		f, err := e.inverse(x, dark[k])
+		v[k] = x * f
+		if x*err > noise {
+			noise = x * err
+		}
+	}
+	return v, noise
 }
 
 // transverse turns a line-of-sight distance into a transverse one, both in units of c/H0:

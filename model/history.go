@@ -12,7 +12,7 @@ func (u Universe) ScaleFactor(t float64) float64 {
 }
 
 // History writes ScaleFactor of each of the times into dst, which must have the same length. Times that ascend
-// are cheap: each is reached from the one before it in a few Newton steps. The relative accuracy of a is 1e-9,
+// are cheap: each is found in the panel of the one before it, or the next. The relative accuracy of a is 1e-9,
 // except within 1e-6 of the span's length from a rip or a crunch, where a follows t without bound.
 func (u Universe) History(times, dst []float64) {
 	if len(times) != len(dst) {
@@ -34,13 +34,6 @@ type history struct {
 	crest clock   // time until turnaround against v = √(st - ln a), where 1/E is nearly singular
 }
 
-// clock is a monotonic relation between a position and a time, known at one point and by its slope.
-type clock struct {
-	rate   integrand // dt/dpos > 0
-	pos, t float64
-	limit  float64 // positions lie below this
-}
-
 func (u Universe) newHistory() *history {
 	h := &history{e: u.expansion(), turn: math.Inf(1), end: math.Inf(1)}
 	if !u.HasBigBang() {
@@ -48,14 +41,15 @@ func (u Universe) newHistory() *history {
 		return h
 	}
 	today := h.e.sinceBigBang(1)
-	h.rise = clock{rate: h.e.timeRate, t: today, limit: math.Inf(1)}
+	h.rise = newClock(h.e.timeRate, 0, today)
 	switch u.Future() {
 	case Recollapse:
 		h.st = math.Log(h.e.futureZero())
 		h.turn = today + h.e.untilTurnaround(0, h.st)
 		h.end = 2 * h.turn
 		h.rise.limit = h.st
-		h.crest = clock{rate: h.e.turnaroundRate(h.st), limit: math.Inf(1)}
+		crest := h.e.crest(h.st)
+		h.crest = newClock(crest.rate, 0, 0)
 	case BigRip:
 		h.end = today + u.Rip()/u.HubbleTime()
 	}
@@ -77,7 +71,7 @@ func (h *history) scaleFactor(t float64) float64 {
 		return math.Exp(h.st - v*v)
 	}
 	h.anchor(t)
-	return math.Exp(h.rise.seekLog(t))
+	return math.Exp(h.rise.seek(t))
 }
 
 // anchor moves the clock back to the neighbourhood of a much earlier time along the power law that it follows
@@ -85,52 +79,10 @@ func (h *history) scaleFactor(t float64) float64 {
 func (h *history) anchor(t float64) {
 	c := &h.rise
 	for range 100 {
-		if t > c.t/4 {
+		if t > c.start/4 {
 			return
 		}
-		rate, _ := c.rate(c.pos)
-		c.pos += max(-5, math.Log(t/c.t)*c.t/rate)
-		c.t = h.e.sinceBigBang(math.Exp(c.pos))
+		pos := c.lo + max(-5, math.Log(t/c.start)*c.start/h.e.timeRateAt(c.lo))
+		c.set(pos, h.e.sinceBigBang(math.Exp(pos)))
 	}
-}
-
-// seek moves the clock to time t by Newton's method and returns the position.
-func (c *clock) seek(t float64) float64 {
-	return c.newton(t, func(rate float64) float64 { return (t - c.t) / rate })
-}
-
-// seekLog is seek by Newton's method for the logarithm of time, which is nearly linear in ln a as long as the
-// expansion is a power law.
-func (c *clock) seekLog(t float64) float64 {
-	return c.newton(t, func(rate float64) float64 { return math.Log(t/c.t) * c.t / rate })
-}
-
-// newton takes steps of at most 1, kept inside a bracket that closes on the position of time t.
-func (c *clock) newton(t float64, step func(rate float64) float64) float64 {
-	lo, hi := math.Inf(-1), c.limit
-	for range 200 {
-		switch {
-		case c.t == t:
-			return c.pos
-		case c.t < t:
-			lo = c.pos
-		default:
-			hi = c.pos
-		}
-		rate, _ := c.rate(c.pos)
-		next := c.pos + max(-1, min(step(rate), 1))
-		if next == c.pos {
-			return c.pos
-		}
-		if !(next > lo && next < hi) {
-			next = (lo + hi) / 2
-		}
-		moved := next - c.pos
-		c.t += panel.integrate(c.rate, c.pos, next)
-		c.pos = next
-		if math.Abs(moved) < 1e-6 { // the next step would be of the order of its square
-			break
-		}
-	}
-	return c.pos
 }

@@ -112,12 +112,18 @@ func TestHistoryDomain(t *testing.T) {
 	u.History(make([]float64, 2), make([]float64, 1))
 }
 
-// TestHistoryOrder: unordered times give what ordered ones do.
+// TestHistoryOrder: unordered times give what each of them gives alone.
 func TestHistoryOrder(t *testing.T) {
 	rng := rand.New(rand.NewPCG(53, 54))
-	for _, u := range []Universe{lambdaCDM(.3, .7), lambdaCDM(1.5, .001), lambdaCDM(2, 0),
-		{Om: .3, OL: .7, Or: 1e-4, H0: HubbleTime1, W0: -1.5}, {Om: .3, OL: .8, H0: HubbleTime1, W0: -.9, Wa: -.5}} {
-		times := make([]float64, 100)
+	universes := []Universe{lambdaCDM(.3, .7), lambdaCDM(1.5, .001), lambdaCDM(2, 0),
+		{Om: .3, OL: .7, Or: 1e-4, H0: HubbleTime1, W0: -1.5}, {Om: .3, OL: .8, H0: HubbleTime1, W0: -.9, Wa: -.5}}
+	for len(universes) < 200 {
+		if u := randomUniverse(rng); u.HasBigBang() {
+			universes = append(universes, u)
+		}
+	}
+	for _, u := range universes {
+		times := make([]float64, 20)
 		end := math.Min(20, u.newHistory().end)
 		for i := range times {
 			times[i] = end * math.Pow(rng.Float64(), 4) * (1 - 1e-5)
@@ -127,5 +133,46 @@ func TestHistoryOrder(t *testing.T) {
 		for i, time := range times {
 			near(t, "a", a[i], u.ScaleFactor(time), 3e-9)
 		}
+	}
+}
+
+// TestHistorySteps: a walk in steps as short as those of a figure, and the time at every point of it.
+func TestHistorySteps(t *testing.T) {
+	rng := rand.New(rand.NewPCG(55, 56))
+	for n := 0; n < 100; {
+		u := randomUniverse(rng)
+		if !u.HasBigBang() {
+			continue
+		}
+		n++
+		h := u.newHistory()
+		end := math.Min(5, math.Min(h.turn, h.end)*0.99)
+		times, a := make([]float64, 150), make([]float64, 150)
+		for i := range times {
+			times[i] = end * float64(i+1) / float64(len(times))
+		}
+		u.History(times, a)
+		for i, time := range times {
+			// The relative error of a, from that of t.
+			got := u.TimeAt(a[i])
+			if diff := math.Abs(got-time) * math.Sqrt(u.E2(a[i])); !(diff < 1e-9) {
+				t.Fatalf("%+v: a = %v at %v, but that is reached at %v", u, a[i], time, got)
+			}
+		}
+	}
+}
+
+// TestTimeBeforeAFarTurnaround: the time to a turnaround that is all but infinitely far says nothing of what is near.
+func TestTimeBeforeAFarTurnaround(t *testing.T) {
+	for _, gap := range []float64{1e-4, 1e-6, 1e-9} {
+		u := Universe{Om: .3, OL: .7 + gap, H0: HubbleTime1, W0: -1.1, Wa: -.8}
+		flat := u
+		flat.OL = .7
+		_, turn := u.Turnaround()
+		if !(turn > 1e4) {
+			t.Fatalf("turnaround at %v", turn)
+		}
+		near(t, "time", u.TimeAt(2), flat.TimeAt(2), 10*gap)
+		near(t, "a", u.ScaleFactor(u.TimeAt(2)), 2, 1e-9)
 	}
 }

@@ -155,6 +155,32 @@ func TestLogarithms(t *testing.T) {
 	}
 }
 
+func TestExponentials(t *testing.T) {
+	rng := rand.New(rand.NewPCG(95, 96))
+	for range 20000 {
+		x := [3]float64{-708 + 1400*rng.Float64(), 20*rng.Float64() - 10, rng.NormFloat64() * math.Pow(10, -20*rng.Float64())}
+		got := x
+		exponentials(got[:])
+		for i, v := range x {
+			want := math.Exp(v)
+			if !(math.Abs(got[i]-want) <= 4e-16*want) {
+				t.Fatalf("exp %v = %v, want %v", v, got[i], want)
+			}
+		}
+	}
+	special := []float64{0, math.Copysign(0, -1), 1e300, -1e300, math.Inf(1), math.Inf(-1), 699.9, -699.9, 709.5, -745}
+	got := append([]float64{math.NaN()}, special...)
+	exponentials(got)
+	if !math.IsNaN(got[0]) {
+		t.Errorf("exp NaN = %v", got[0])
+	}
+	for i, v := range special {
+		if want := math.Exp(v); got[i+1] != want && !(math.Abs(got[i+1]/want-1) <= 4e-16) {
+			t.Errorf("exp %v = %v, want %v", v, got[i+1], want)
+		}
+	}
+}
+
 func BenchmarkNodes(b *testing.B) {
 	p, err := NewNodes(2.33, NodesFor(2.33), []float64{0.295, 0.51, 0.706, 0.934, 1.321, 1.484, 2.33})
 	if err != nil {

@@ -161,15 +161,8 @@ type descent struct {
 // refine does the work of fillPanel between lo and hi for the redshifts first … last-1.
 func (d *descent) refine(lo, hi, chi float64, first, last, depth int) float64 {
 	mid, half := (lo+hi)/2, (hi-lo)/2
-	var f [order]float64
-	noise := 0.0
-	for k, t := range panel.x {
-		y := mid + half*t
-		x := math.Exp(y)
-		v, n := d.e.inverse(x, y, 1/x)
-		f[k] = x * v
-		noise = max(noise, x*n)
-	}
+	values, noise := d.e.comovingRate(panel.between(mid, half), order)
+	f := [order]float64(values[:])
 	mean, omitted := panel.mean(f[:]), panel.omitted(f[:])-noise
 	d.budget--
 	// Without a redshift inside only the integral over the panel matters.

@@ -214,10 +214,7 @@ func TestPathWork(t *testing.T) {
 			e := u.expansion()
 			end := math.Min(7, e.reach()*(1-1e-15))
 			budget := panelBudget
-			whole.bisect(func(y float64) (v, noise float64) {
-				x := math.Exp(y)
-				return e.inverse(x, y, 1/x)
-			}, 0, end, maxDepth, &budget)
+			whole.bisect(e.comovingRate, 0, end, integralTail, maxDepth, &budget)
 			d := descent{p, &e, dm, panelBudget}
 			d.refine(0, end, 0, 0, sort.SearchFloat64s(p.y, end), maxDepth)
 			if used := 2*panelBudget - budget - d.budget; used > 400 {

@@ -1,6 +1,7 @@
 package model
 
 import (
+	"fmt"
 	"math"
 	"math/rand/v2"
 	"testing"
@@ -170,6 +171,50 @@ func TestAgesClosedForm(t *testing.T) {
 		near(t, "flat", lambdaCDM(om, 1-om).AgeToday(), flat(om), 1e-12)
 		near(t, "open", lambdaCDM(om, 0).AgeToday(), open(om), 1e-10)
 		near(t, "closed", lambdaCDM(1.1+om, 0).AgeToday(), closed(1.1+om), 1e-10)
+	}
+}
+
+// TestAgesInSteps: the age by short steps in ln a, over the prior range and near the universes that measurements
+// favour; in either, the worst difference that is allowed.
+func TestAgesInSteps(t *testing.T) {
+	steps := func(u Universe) float64 {
+		e := u.expansion()
+		s, sum := 0.0, 0.0
+		for ; s > -60; s -= .25 {
+			sum += whole.integrate(e.timeRate, s-.25, s, 1e-11)
+		}
+		_, n := e.early()
+		return sum + 2/n*e.timeRateAt(s)
+	}
+	rng := rand.New(rand.NewPCG(15, 16))
+	for range 1000 {
+		if u := randomUniverse(rng); u.HasBigBang() {
+			near(t, fmt.Sprintf("%+v", u), u.AgeToday(), steps(u), 5e-11)
+		}
+		u := Universe{Om: .2 + .2*rng.Float64(), OL: .5 + .4*rng.Float64(), Or: 8.5e-5, H0: HubbleTime1, W0: -1}
+		switch rng.IntN(4) {
+		case 0:
+			u.Or = 0
+		case 1:
+			u.W0 = -1.3 + .6*rng.Float64()
+		case 2:
+			u.W0, u.Wa = -1.3+.6*rng.Float64(), -1.5+2*rng.Float64()
+		}
+		near(t, fmt.Sprintf("%+v", u), u.AgeToday(), steps(u), 1e-12)
+	}
+}
+
+// TestTimesDoNotAllocate counts what is asked of every draw of a posterior.
+func TestTimesDoNotAllocate(t *testing.T) {
+	for _, c := range benchCases {
+		if n := testing.AllocsPerRun(10, func() {
+			c.u.AgeToday()
+			c.u.Lookback(c.u.AccelerationOnset())
+			c.u.Crunch()
+			c.u.Rip()
+		}); n != 0 {
+			t.Errorf("%s: %v allocations", c.name, n)
+		}
 	}
 }
 

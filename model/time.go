@@ -5,9 +5,24 @@ import "math"
 // Times are integrals of dt = d(ln a)/H. Inside this file they are in units of 1/H0.
 
 // timeRate is dt/ds = 1/E at s = ln a, and its rounding error.
-func (e *expansion) timeRate(s float64) (v, noise float64) {
+func (e *expansion) timeRate(s points, n int) (v points, noise float64) {
+	a := s
+	exponentials(a[:n])
+	dark := e.dark(&s, &a, n)
+	for k, t := range a[:n] {
+		var err float64
+		v[k], err = e.inverse(1/t, dark[k])
+		if err > noise {
+			noise = err
+		}
+	}
+	return v, noise
+}
+
+// timeRateAt is timeRate at one point.
+func (e *expansion) timeRateAt(s float64) float64 {
 	a := math.Exp(s)
-	return e.inverse(1/a, -s, a)
+	return 1 / math.Sqrt(e.squared(1/a, -s, a))
 }
 
 // between is the time from s1 = ln a1 to s2 = ln a2, with no zero of E² in between.
@@ -15,7 +30,7 @@ func (e *expansion) between(s1, s2 float64) float64 {
 	if s1 == s2 {
 		return 0
 	}
-	return whole.integrate(e.timeRate, s1, s2)
+	return whole.integrate(e.timeRate, s1, s2, integralTail)
 }
 
 // sinceBigBang is the time from the big bang to the scale factor a, in a universe that had one. If dark energy is
@@ -25,12 +40,12 @@ func (e *expansion) between(s1, s2 float64) float64 {
 // runs over ln a in steps, and what is left is a pure power law.
 func (e *expansion) sinceBigBang(a float64) float64 {
 	if e.om >= 0 && e.or >= 0 && e.om+e.or > 0 && (e.lambda || e.p <= 1) {
-		return whole.integrate(e.conformalRate, 0, 2*a/(math.Sqrt(e.or+e.om*a)+math.Sqrt(e.or)))
+		return whole.integrate(e.conformalRate, 0, 2*a/(math.Sqrt(e.or+e.om*a)+math.Sqrt(e.or)), looseTail)
 	}
-	const step, steps = 2, 20
+	const end = 50
 	s, t := math.Log(a), 0.0
-	for range steps {
-		dt := e.between(s-step, s)
+	for step := 1.5; step < end; step *= 2 {
+		dt := whole.integrate(e.timeRate, s-step, s, looseTail)
 		s -= step
 		t += dt
 		if dt < 1e-15*t {
@@ -38,58 +53,84 @@ func (e *expansion) sinceBigBang(a float64) float64 {
 		}
 	}
 	_, n := e.early()
-	rate, _ := e.timeRate(s)
-	return t + 2/n*rate
+	return t + 2/n*e.timeRateAt(s)
 }
 
 // conformalRate is dt/dη = a√((Or + Om a)/(a⁴E²)), and its rounding error.
-func (e *expansion) conformalRate(eta float64) (v, noise float64) {
-	a := eta * (math.Sqrt(e.or) + e.om*eta/4)
-	free := e.or + e.om*a
-	curved := e.ok * a * a
-	dark := e.ol * a * a * a * a
-	if !e.lambda {
-		dark = e.ol * math.Exp((4-e.p)*math.Log(a)+e.b*(a-1))
+func (e *expansion) conformalRate(eta points, n int) (v points, noise float64) {
+	root, quarter := math.Sqrt(e.or), e.om/4
+	a := eta
+	for k, t := range eta[:n] {
+		a[k] = t * (root + quarter*t)
 	}
-	rest := 1 + (curved+dark)/free
-	v = a / math.Sqrt(rest)
-	return v, rounding * v * (1 + (math.Abs(curved)+math.Abs(dark))/(free*rest))
+	s := a
+	if !e.lambda {
+		logarithms(s[:n])
+	}
+	dark := e.dark(&s, &a, n)
+	for k, t := range a[:n] {
+		square := t * t
+		free, curved, dark := e.or+e.om*t, e.ok*square, dark[k]*square*square // of a⁴E²
+		inverse := 1 / (free + curved + dark)
+		v[k] = t * math.Sqrt(free*inverse)
+		if err := v[k] * (1 + (math.Abs(curved)+math.Abs(dark))*math.Abs(inverse)); err > noise {
+			noise = err
+		}
+	}
+	return v, rounding * noise
 }
 
 // untilTurnaround is the time from ln a = s to the zero of E² at st > s.
 func (e *expansion) untilTurnaround(s, st float64) float64 {
-	return whole.integrate(e.turnaroundRate(st), 0, math.Sqrt(st-s))
+	c := e.crest(st)
+	return whole.integrate(c.rate, 0, math.Sqrt(st-s), integralTail)
 }
 
-// turnaroundRate returns -dt/dv and its rounding error for v = √(st - ln a) and a zero of E² at ln a = st, where
-// 1/E has an integrable singularity which this variable removes. E² is evaluated as its difference from the
-// value 0 at the zero, term by term with expm1, so it keeps its relative accuracy as it vanishes.
-func (e *expansion) turnaroundRate(st float64) integrand {
+// crest is the neighbourhood of a turnaround, a zero of E² at ln a = st, in the variable v = √(st - ln a).
+type crest struct {
+	at, b, q     float64 // scale factor, and b and q as in zeros.go
+	rad, m, dark float64 // what radiation, matter and dark energy contribute to r = a²E²
+	slope        float64 // dr/d ln a, negative
+}
+
+func (e *expansion) crest(st float64) crest {
 	at := math.Exp(st)
 	x := 1 / at
-	rad, m, q := e.or*x*x, e.om*x, e.p-2
-	de := 0.0
+	c := crest{at: at, b: e.b, q: e.p - 2, rad: e.or * x * x, m: e.om * x}
 	if e.ol != 0 {
-		de = e.ol * math.Exp(e.b*(at-1)-q*st)
+		c.dark = e.ol * math.Exp(c.b*(at-1)-c.q*st)
 	}
-	slope := de*(e.b*at-q) - m - 2*rad // dr/d ln a of r = a²E², negative
-	return func(v float64) (rate, noise float64) {
-		d := -v * v
+	c.slope = c.dark*(c.b*at-c.q) - c.m - 2*c.rad
+	return c
+}
+
+// rate is -dt/dv and its rounding error: 1/E has an integrable singularity at the zero, which this variable
+// removes. E² is evaluated as its difference from the value 0 at the zero, term by term with expm1, so it keeps
+// its relative accuracy as it vanishes.
+func (c *crest) rate(v points, n int) (f points, noise float64) {
+	for k, x := range v[:n] {
+		d := -x * x
 		if d == 0 {
-			return 2 * at / math.Sqrt(-slope), 0
+			f[k] = 2 * c.at / math.Sqrt(-c.slope)
+			continue
 		}
-		grow := math.Expm1(d)
-		matter, dark := m*math.Expm1(-d), 0.0
-		if de != 0 {
-			dark = de * math.Expm1(e.b*at*grow-q*d)
+		back := math.Expm1(-d)
+		scale := 1 / (1 + back)
+		grow := -back * scale // expm1(d)
+		matter, dark := c.m*back, 0.0
+		if c.dark != 0 {
+			dark = c.dark * math.Expm1(c.b*c.at*grow-c.q*d)
 		}
-		if rad != 0 {
-			matter += rad * math.Expm1(-2*d)
+		if c.rad != 0 {
+			matter += c.rad * back * (2 + back) // expm1(-2d)
 		}
 		r := matter + dark
-		rate = 2 * at * (1 + grow) / math.Sqrt(r/-d)
-		return rate, rounding * rate * (1 + math.Abs(dark/r))
+		f[k] = 2 * c.at * scale / math.Sqrt(r/-d)
+		if err := f[k] * (1 + math.Abs(dark/r)); err > noise {
+			noise = err
+		}
 	}
+	return f, rounding * noise
 }
 
 // Lookback is the time in Gyr between redshift z and today. NaN for z < 0 and for z at or beyond a bounce.
@@ -129,7 +170,7 @@ func (u Universe) TimeAt(a float64) float64 {
 		return math.NaN()
 	case a <= 1:
 		return u.HubbleTime() * e.sinceBigBang(a)
-	case math.IsInf(at, 1):
+	case a*a < at: // the turnaround is far, and the time to it may be immense
 		return u.HubbleTime() * (e.sinceBigBang(1) + e.between(0, math.Log(a)))
 	}
 	st := math.Log(at)
@@ -173,11 +214,11 @@ func (u Universe) Rip() float64 {
 	s, t := 0.0, 0.0
 	if e.b == 0 {
 		// Constant w: beyond a = e⁴⁰ all else is below rounding, and the integral is that of a power law.
-		for ; s < 40; s++ {
-			t += e.between(s, s+1)
+		for step := 1.0; s < 40; step *= 2 {
+			t += whole.integrate(e.timeRate, s, s+step, looseTail)
+			s += step
 		}
-		rate, _ := e.timeRate(s)
-		return u.HubbleTime() * (t - 2/e.p*rate)
+		return u.HubbleTime() * (t - 2/e.p*e.timeRateAt(s))
 	}
 	for ; s < 600; s++ {
 		dt := e.between(s, s+1)

@@ -113,13 +113,31 @@ func (e *expansion) squared(x, y, a float64) float64 {
 	return rest + e.ol*math.Exp(e.p*y+e.b*(a-1))
 }
 
-// inverse is 1/E and a bound on its rounding error, which grows as E² vanishes by cancellation. Arguments as of
-// squared.
-func (e *expansion) inverse(x, y, a float64) (v, noise float64) {
-	e2 := e.squared(x, y, a)
-	v = 1 / math.Sqrt(e2)
+// inverse is 1/E and a bound on its rounding error, which grows as E² vanishes by cancellation; from x = 1/a and
+// what dark energy contributes to E².
+func (e *expansion) inverse(x, dark float64) (v, noise float64) {
+	v = 1 / math.Sqrt(((e.or*x+e.om)*x+e.ok)*x*x+dark)
 	terms := ((math.Abs(e.or)*x+math.Abs(e.om))*x + math.Abs(e.ok)) * x * x
 	return v, rounding * v * (1 + terms*v*v)
+}
+
+// dark is what dark energy contributes to E² at each of the first n scale factors a; s = ln a is not used with a
+// cosmological constant.
+func (e *expansion) dark(s, a *points, n int) (d points) {
+	if e.lambda {
+		for k := range d[:n] {
+			d[k] = e.ol
+		}
+		return d
+	}
+	for k, t := range a[:n] {
+		d[k] = e.b*(t-1) - e.p*s[k]
+	}
+	exponentials(d[:n])
+	for k := range d[:n] {
+		d[k] *= e.ol
+	}
+	return d
 }
 
 // reduced is r = a²E² = (ȧ/H0)² at s = ln a, and dr/ds, whose sign is that of the acceleration.

@@ -72,7 +72,7 @@ func (e *expansion) merge(ol float64) (ok, om, or, rest float64) {
 
 // pastZero is the largest a < 1 at which E² = 0, the bounce of a universe without a big bang; 0 if none.
 func (e *expansion) pastZero() float64 {
-	if e.positive() {
+	if e.positive() || e.lambda && e.or == 0 && e.om > 0 && !e.bounced() {
 		return 0
 	}
 	roots, n := e.stationary(0, 1)

@@ -164,6 +164,49 @@ func TestAccelerationOnset(t *testing.T) {
 	}
 }
 
+// TestOnlyOnset: the short way for constant w finds what the way for all universes does.
+func TestOnlyOnset(t *testing.T) {
+	rng := rand.New(rand.NewPCG(69, 70))
+	seen := [2]int{}
+	for range 40000 {
+		u := randomUniverse(rng)
+		u.Wa = 0
+		switch rng.IntN(6) {
+		case 0:
+			u.Om = 0
+		case 1:
+			u.OL = cptNoBigBang(u.Om) + 1e-3*rng.NormFloat64()
+		case 2:
+			u.Om, u.Or = u.Om*math.Pow(10, -12*rng.Float64()), u.Or*math.Pow(10, -12*rng.Float64())
+		case 3:
+			u.W0 = -1./3 - math.Pow(10, -4*rng.Float64())
+		}
+		e := u.expansion()
+		if _, dr := e.reduced(0); !(dr > 0) || !(e.ol > 0 && e.p < 2) {
+			continue
+		}
+		got, want := e.onlyOnset(), e.lastOnset()
+		if got != u.AccelerationOnset() {
+			t.Fatalf("%+v does not go the short way", u)
+		}
+		if math.IsInf(want, 1) || math.IsInf(got, 1) {
+			seen[0]++
+			if got != want {
+				t.Fatalf("%+v: onset %v, want %v", u, got, want)
+			}
+			continue
+		}
+		seen[1]++
+		near(t, "1+z", 1+got, 1+want, 1e-13)
+		if t.Failed() {
+			t.Fatalf("%+v", u)
+		}
+	}
+	if seen[0] < 500 || seen[1] < 500 {
+		t.Errorf("cases seen: %v", seen)
+	}
+}
+
 // TestSecondSpell: after a bounce, at a = 0.1, these universes accelerate, decelerate for a short while around
 // a = 0.53 and accelerate again. Without matter (L D/G) is least where (ba)² - 1.4ba + 0.44 = 0.
 func TestSecondSpell(t *testing.T) {

@@ -77,23 +77,26 @@ func onset(u model.Universe) float64 {
 
 func onsetTime(u model.Universe) float64 { return u.Lookback(onset(u)) / u.HubbleTime() }
 
+// Without a big bang the time of a turnaround is NaN, but not that to a rip.
+
 func turnaround(u model.Universe) float64 {
-	if u.Fate() != model.Recollapse {
-		return math.NaN()
-	}
 	_, t := u.Turnaround()
+	if math.IsNaN(t) {
+		return t
+	}
 	return (t - u.AgeToday()) / u.HubbleTime()
 }
 
 func crunch(u model.Universe) float64 {
-	if u.Fate() != model.Recollapse {
-		return math.NaN()
+	t := u.Crunch()
+	if math.IsNaN(t) {
+		return t
 	}
-	return (u.Crunch() - u.AgeToday()) / u.HubbleTime()
+	return (t - u.AgeToday()) / u.HubbleTime()
 }
 
 func rip(u model.Universe) float64 {
-	if u.Fate() != model.BigRip {
+	if u.Future() != model.BigRip || !u.HasBigBang() {
 		return math.NaN()
 	}
 	return u.Rip() / u.HubbleTime()
