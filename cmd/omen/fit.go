@@ -36,11 +36,12 @@ The result goes to standard output, the chain and everything else to a folder:
 -o, or the run file's name with a number. --set changes a key of the run file;
 data.1 is the first [[data]] table, and the value none removes a key.
 
-The run ends when the goal is met. Interrupt it (Ctrl-C) and it finishes the
-step under way, writes the result so far, marked as unfinished, and ends with
-status 3; so it does at --max-time or --max-steps. Interrupt it twice and it
-ends at once. Whatever ends it, omen resume DIR goes on; omen status DIR looks
-at it meanwhile.
+The run ends when the goal is met and the chain is 400 autocorrelation times
+long, without which its errors cannot be trusted. Interrupt it (Ctrl-C) and it
+finishes the step under way, writes the result so far, marked as unfinished, and
+ends with status 3; so it does at --max-time or --max-steps. Interrupt it twice
+and it ends at once. Whatever ends it, omen resume DIR goes on; omen status DIR
+looks at it meanwhile.
 `
 
 type fitOptions struct {
