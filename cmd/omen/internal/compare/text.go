@@ -177,7 +177,7 @@ func (c *Comparison) TeX() []byte {
 		for _, v := range q.Values {
 			b.WriteString(" & ")
 			if v != nil {
-				b.WriteString("$" + draft.Estimate(*v) + "$")
+				b.WriteString(draft.Estimate(*v))
 			}
 		}
 		b.WriteString(" \\\\\n")

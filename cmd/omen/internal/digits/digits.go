@@ -2,8 +2,7 @@
 //
 // Two rules meet. The spread of a quantity asks for two significant digits. Its
 // Monte Carlo error forbids any digit that another seed would change by more than
-// one. For print there is the rule of the Particle Data Group, which keeps one
-// digit of the spread where the first is large.
+// one. They hold wherever a quantity is printed: on the terminal, on a page, in LaTeX.
 package digits
 
 import (
@@ -42,9 +41,9 @@ func exponent(x float64) (exp int, ok bool) {
 	return exp, true
 }
 
-// Spread is the last place that the Particle Data Group's rule keeps of an error
-// and of its value: of the error's three leading digits, 100–354 keep two,
-// 355–949 keep one, 950–999 round up to 1000 and keep two.
+// Spread is the last place to print of a limit, which needs no second digit where its
+// first is large: the Particle Data Group's rule for errors. Of three leading digits,
+// 100–354 keep two, 355–949 keep one, 950–999 round up to 1000 and keep two.
 func Spread(sd float64) (place int, ok bool) {
 	if !(sd > 0) || math.IsInf(sd, 0) {
 		return 0, false
@@ -85,15 +84,26 @@ func Format(x float64, place int) string {
 	return s
 }
 
-// Value writes a quantity with its spread, "0.293 ± 0.011". A spread that the Monte
-// Carlo error of so few draws would round to nothing keeps its first digit.
+// Value writes a quantity with its spread, "0.293 ± 0.011".
 func Value(x, spread, mcse float64) string {
 	p := Place(spread, mcse)
-	first, ok := exponent(spread)
-	if ok && math.Round(spread/math.Pow10(p)) == 0 {
-		return Format(x, p) + " ± " + Format(spread, first)
+	return Format(x, p) + " ± " + Width(spread, p)
+}
+
+// Width writes a spread with its last digit at 10^place. One that the Monte Carlo error
+// of so few draws would round to nothing keeps its first digit.
+func Width(spread float64, place int) string {
+	if first, ok := exponent(spread); ok && math.Round(spread/math.Pow10(place)) == 0 {
+		place = first
 	}
-	return Format(x, p) + " ± " + Format(spread, p)
+	return Format(spread, place)
+}
+
+// Ends is the last place to print of both ends of an interval about a quantity with the
+// given spread: they have one number of decimals, which is what the less certain of the
+// two supports.
+func Ends(spread float64, mcse [2]float64) int {
+	return max(Place(spread, mcse[0]), Place(spread, mcse[1]))
 }
 
 // Error writes an error with two significant digits.

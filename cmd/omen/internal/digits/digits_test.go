@@ -88,6 +88,27 @@ func TestValueOfFewDraws(t *testing.T) {
 	}
 }
 
+// Both ends have as many decimals as the less certain one supports, and no fewer.
+func TestEnds(t *testing.T) {
+	for _, c := range []struct {
+		lo, hi, sd float64
+		mcse       [2]float64
+		want       string
+	}{
+		{99.104, 102.03, 0.74, [2]float64{0.009, 0.012}, "99.1 … 102.0"},
+		{99.104, 102.03, 0.74, [2]float64{0.009, 0.008}, "99.10 … 102.03"},
+		{-1.384, -0.511, 0.23, [2]float64{0.02, 0.006}, "-1.4 … -0.5"},
+		{0.0351, 0.2263, 0.053, [2]float64{0.0008, 0.0011}, "0.04 … 0.23"},
+		{0.0351, 0.2263, 0.053, [2]float64{0, math.NaN()}, "0.035 … 0.226"}, // of an integral
+		{0.27123, 0.40211, math.NaN(), [2]float64{0.0011, 0.0004}, "0.27 … 0.40"},
+	} {
+		p := Ends(c.sd, c.mcse)
+		if got := Format(c.lo, p) + " … " + Format(c.hi, p); got != c.want {
+			t.Errorf("Ends(%g, %g): %q, expected %q", c.sd, c.mcse, got, c.want)
+		}
+	}
+}
+
 func ExampleValue() {
 	fmt.Println(Value(0.29321, 0.01141, 0.0002))
 	// Output: 0.293 ± 0.011

@@ -7,8 +7,8 @@
 //	Methods      methods.md: two paragraphs on data, priors, likelihood and chain
 //	CSV          constraints.csv: the same numbers for a program
 //
-// Errors are rounded by the rule of the Particle Data Group, and nothing is
-// printed finer than its Monte Carlo error. Every name from a file is escaped.
+// Numbers have the digits that they have on the terminal, none finer than its Monte
+// Carlo error. Every name from a file is escaped.
 package draft
 
 import (
@@ -39,38 +39,22 @@ type estimate struct {
 const lopsided = 0.1
 
 func newEstimate(q result.Quantity) estimate {
-	median := float64(q.Median)
+	median, sd := float64(q.Median), float64(q.SD)
 	up, down := float64(q.Interval68[1])-median, median-float64(q.Interval68[0])
 	noise := math.Hypot(float64(q.MCSE68[0]), float64(q.MCSE68[1]))
-	if d := math.Abs(up - down); d > lopsided*(up+down)/2 && d > 2*noise {
-		e := estimate{centre: median, up: up, down: down, place: place(math.Min(up, down), float64(q.MCSE))}
-		if digits.Format(up, e.place) != digits.Format(down, e.place) {
-			return e
-		}
+	place := digits.Place(sd, float64(q.MCSE))
+	if d := math.Abs(up - down); d > lopsided*(up+down)/2 && d > 2*noise && digits.Format(up, place) != digits.Format(down, place) {
+		return estimate{centre: median, up: up, down: down, place: place}
 	}
-	sd := float64(q.SD)
-	return estimate{float64(q.Mean), sd, sd, true, place(sd, float64(q.MCSE))}
-}
-
-// place is the last digit to print of a value with an error: the Particle Data
-// Group's rule, or coarser where the Monte Carlo error says so.
-func place(err, mcse float64) int {
-	p, ok := digits.Spread(err)
-	if !ok {
-		p = digits.Place(err, mcse)
-	}
-	if mcse > 0 && !math.IsInf(mcse, 0) {
-		p = max(p, digits.MonteCarlo(mcse))
-	}
-	return p
+	return estimate{float64(q.Mean), sd, sd, true, place}
 }
 
 // tex is the estimate in math mode.
 func (e estimate) tex() string {
 	if e.symmetric {
-		return number(e.centre, e.place) + ` \pm ` + number(e.up, e.place)
+		return number(e.centre, e.place) + ` \pm ` + digits.Width(e.up, e.place)
 	}
-	return number(e.centre, e.place) + "^{+" + number(e.up, e.place) + "}_{-" + number(e.down, e.place) + "}"
+	return number(e.centre, e.place) + "^{+" + digits.Width(e.up, e.place) + "}_{-" + digits.Width(e.down, e.place) + "}"
 }
 
 // number formats for math mode.
@@ -88,30 +72,54 @@ func number(x float64, place int) string {
 func Constraints(r *gather.Run) []byte {
 	var b bytes.Buffer
 	s := r.Summary
+	all := slices.Concat(s.Parameters, s.Derived)
 	heading(&b, r, "The constraints as a tabular. In the preamble: \\usepackage{booktabs}. In the text:",
 		`  \begin{table}\centering\input{constraints}\caption{...}\end{table}`,
 		"Mean and standard deviation, or median and central 68% interval where the errors",
 		"differ; central 95% interval; best fit.")
-	b.WriteString("\\begin{tabular}{lccc}\n\\toprule\nQuantity & Value (68\\%) & 95\\% interval & Best fit \\\\\n\\midrule\n")
+	fmt.Fprintf(&b, "\\begin{tabular}{lccc}\n\\toprule\nQuantity & %s & Central 95\\%% & Best fit \\\\\n\\midrule\n", column(all))
 	for _, q := range s.Parameters {
 		best, ok := s.Fit.Best[q.Name]
-		row(&b, q, float64(best), ok)
+		row(&b, q, best, ok)
 	}
 	if len(s.Derived) > 0 {
 		b.WriteString("\\midrule\n")
 	}
 	for _, q := range s.Derived {
-		row(&b, q, math.NaN(), false)
+		row(&b, q, 0, false)
 	}
-	b.WriteString("\\bottomrule\n")
-	if slices.ContainsFunc(s.Parameters, func(q result.Quantity) bool { return q.CutByPrior }) {
-		b.WriteString("\\multicolumn{4}{l}{\\footnotesize $^{*}$ cut by its prior}\\\\\n")
-	}
-	b.WriteString("\\end{tabular}\n")
+	b.WriteString("\\bottomrule\n" + Notes(all, 4) + "\\end{tabular}\n")
 	if !s.Complete {
 		b.WriteString("\\par\\smallskip\\textbf{Unfinished: the run stopped before its goal.}\n")
 	}
 	return b.Bytes()
+}
+
+// column is the title of a column of estimates.
+func column(qs []result.Quantity) string {
+	if slices.ContainsFunc(qs, apart) {
+		return "Value"
+	}
+	return `Mean $\pm$ sd`
+}
+
+// apart reports whether a quantity is printed with an error on either side.
+func apart(q result.Quantity) bool { return q.Constrained && !newEstimate(q).symmetric }
+
+// Notes says under a table of so many columns what its values and marks are, as far as
+// they need it.
+func Notes(qs []result.Quantity, columns int) string {
+	note := func(text string) string {
+		return fmt.Sprintf("\\multicolumn{%d}{l}{\\footnotesize %s}\\\\\n", columns, text)
+	}
+	s := ""
+	if slices.ContainsFunc(qs, apart) {
+		s += note(`Mean $\pm$ sd; with two errors, median and central 68\%`)
+	}
+	if slices.ContainsFunc(qs, func(q result.Quantity) bool { return q.CutByPrior && q.Constrained }) {
+		s += note("$^{*}$ cut by its prior")
+	}
+	return s
 }
 
 // Name is a quantity with its unit.
@@ -123,30 +131,27 @@ func Name(name, inUnit string) string {
 	return s
 }
 
-// Estimate is a quantity with its errors in math mode.
-func Estimate(q result.Quantity) string { return newEstimate(q).tex() }
+// Estimate is a quantity with its errors, marked where its prior cuts it.
+func Estimate(q result.Quantity) string {
+	s := newEstimate(q).tex()
+	if q.CutByPrior {
+		s += "{}^{*}"
+	}
+	return "$" + s + "$"
+}
 
-func row(b *bytes.Buffer, q result.Quantity, best float64, known bool) {
+func row(b *bytes.Buffer, q result.Quantity, best result.Number, known bool) {
 	name := Name(q.Name, q.Unit)
 	if !q.Constrained {
 		fmt.Fprintf(b, "%s & not constrained & & \\\\\n", name)
 		return
 	}
-	if q.CutByPrior {
-		name += "$^{*}$"
-	}
-	e := newEstimate(q)
 	at := ""
 	if known {
-		at = "$" + number(best, place(float64(q.SD), 0)-1) + "$"
+		at = "$" + report.Best(q, best) + "$"
 	}
-	fmt.Fprintf(b, "%s & $%s$ & $[%s, %s]$ & %s \\\\\n", name, e.tex(), end(q, q.Interval95, q.MCSE95, 0), end(q, q.Interval95, q.MCSE95, 1), at)
-}
-
-// end is one end of an interval, to the second digit of the spread or what its
-// own Monte Carlo error leaves of it.
-func end(q result.Quantity, ends, mcse [2]result.Number, i int) string {
-	return number(float64(ends[i]), digits.Place(float64(q.SD), float64(mcse[i])))
+	lo, hi := report.Ends(q.Interval95, q.MCSE95, q)
+	fmt.Fprintf(b, "%s & %s & $[%s, %s]$ & %s \\\\\n", name, Estimate(q), inMath(lo), inMath(hi), at)
 }
 
 // probability is a probability in math mode, with its error or as a limit.
@@ -207,22 +212,30 @@ func Header() []string {
 
 // Record is a quantity as a row of CSV, with the best fit where there is one.
 func Record(q result.Quantity, best map[string]result.Number) []string {
-	cell := func(x, mcse result.Number) string {
-		if v := float64(x); math.IsNaN(v) || math.IsInf(v, 0) {
-			return ""
-		}
-		return digits.Format(float64(x), digits.Place(math.NaN(), float64(mcse)))
+	cell := func(x, mcse result.Number) string { return plainly(x, digits.Place(math.NaN(), float64(mcse))) }
+	ends := func(v, mcse [2]result.Number) (lo, hi string) {
+		place := digits.Ends(math.NaN(), [2]float64{float64(mcse[0]), float64(mcse[1])})
+		return plainly(v[0], place), plainly(v[1], place)
 	}
 	at := ""
 	if v, ok := best[q.Name]; ok {
-		at = digits.Format(float64(v), place(float64(q.SD), 0)-2)
+		at = report.Best(q, v)
 	}
-	return []string{q.Name, q.Unit, cell(q.Mean, q.MCSE), cell(q.SD, q.MCSE), cell(q.Median, q.MCSE),
-		cell(q.Interval68[0], q.MCSE68[0]), cell(q.Interval68[1], q.MCSE68[1]),
-		cell(q.Interval95[0], q.MCSE95[0]), cell(q.Interval95[1], q.MCSE95[1]),
-		cell(q.HDI68[0], q.MCSE68[0]), cell(q.HDI68[1], q.MCSE68[1]),
-		at, known(q.MCSE, digits.Error(float64(q.MCSE))), known(q.ESS, digits.Format(math.Floor(float64(q.ESS)), 0)),
-		known(q.RHat, digits.Format(float64(q.RHat), -4)), strconv.FormatBool(q.Constrained)}
+	row := []string{q.Name, q.Unit, cell(q.Mean, q.MCSE), cell(q.SD, q.MCSE), cell(q.Median, q.MCSE)}
+	for _, v := range [3][2][2]result.Number{{q.Interval68, q.MCSE68}, {q.Interval95, q.MCSE95}, {q.HDI68, q.MCSE68}} {
+		lo, hi := ends(v[0], v[1])
+		row = append(row, lo, hi)
+	}
+	return append(row, at, known(q.MCSE, digits.Error(float64(q.MCSE))), known(q.ESS, digits.Format(math.Floor(float64(q.ESS)), 0)),
+		known(q.RHat, digits.Format(float64(q.RHat), -4)), strconv.FormatBool(q.Constrained))
+}
+
+// plainly is a number for a program, nothing where it does not exist.
+func plainly(x result.Number, place int) string {
+	if v := float64(x); math.IsNaN(v) || math.IsInf(v, 0) {
+		return ""
+	}
+	return digits.Format(float64(x), place)
 }
 
 // known is a text, nothing where the number behind it is not known.

@@ -10,6 +10,7 @@ import (
 	"testing"
 	"unicode/utf8"
 
+	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
 )
 
@@ -19,25 +20,49 @@ func quantity(mean, sd, down, up, mcse float64) result.Quantity {
 		MCSE: n(mcse), MCSE68: [2]result.Number{n(mcse), n(mcse)}, MCSE95: [2]result.Number{n(mcse), n(mcse)}, Constrained: true}
 }
 
-// Rounding by the rule of the Particle Data Group (Review of Particle Physics,
-// introduction, §5.3), never finer than the Monte Carlo error.
+// A value in print has the digits that it has on the terminal.
 func TestEstimate(t *testing.T) {
+	cut := quantity(0.354, 0.0342, 0.0342, 0.0342, 1e-4)
+	cut.CutByPrior = true
 	for _, c := range []struct {
 		q    result.Quantity
 		want string
 	}{
-		{quantity(0.82751, 0.1191, 0.119, 0.119, 1e-5), `0.83 \pm 0.12`}, // the Group's own examples
-		{quantity(0.8272, 0.367, 0.367, 0.367, 1e-5), `0.8 \pm 0.4`},
-		{quantity(14.674, 0.964, 0.964, 0.964, 1e-5), `14.7 \pm 1.0`},
-		{quantity(0.29318, 0.01134, 0.0112, 0.0114, 0.00017), `0.293 \pm 0.011`},
-		{quantity(0.29318, 0.01134, 0.0112, 0.0114, 0.004), `0.29 \pm 0.01`},
-		{quantity(-0.431, 0.27, 0.32, 0.23, 0.004), `-0.43^{+0.23}_{-0.32}`},
-		{quantity(-0.431, 0.27, 0.32, 0.23, 0.05), `-0.4 \pm 0.3`}, // lopsided within the noise
-		{quantity(67.36, 0.541, 0.54, 0.54, 0.01), `67.4 \pm 0.5`},
-		{quantity(1234, 212, 212, 212, 3), `1230 \pm 210`},
+		{quantity(0.82751, 0.1191, 0.119, 0.119, 1e-5), `$0.83 \pm 0.12$`},
+		{quantity(0.33, 0.351, 0.351, 0.351, 1e-3), `$0.33 \pm 0.35$`},
+		{quantity(100.551, 0.742, 0.742, 0.742, 0.008), `$100.55 \pm 0.74$`},
+		{quantity(0.0491, 0.0362, 0.0362, 0.0362, 0.0006), `$0.049 \pm 0.036$`},
+		{quantity(0.29318, 0.01134, 0.0112, 0.0114, 0.004), `$0.29 \pm 0.01$`},
+		{quantity(-0.4951, 0.032, 0.032, 0.032, 0.011), `$-0.5 \pm 0.03$`},
+		{quantity(-0.431, 0.27, 0.32, 0.23, 0.004), `$-0.43^{+0.23}_{-0.32}$`},
+		{quantity(-0.431, 0.27, 0.32, 0.23, 0.05), `$-0.4 \pm 0.3$`}, // lopsided within the noise
+		{quantity(1234, 212, 212, 212, 3), `$1230 \pm 210$`},
+		{cut, `$0.354 \pm 0.034{}^{*}$`},
 	} {
+		if text := strings.NewReplacer("$", "", `\pm`, "±", "{}^{*}", "").Replace(c.want); !strings.Contains(c.want, "_") && report.MeanSD(c.q) != text {
+			t.Errorf("on the terminal %s, expected %s", report.MeanSD(c.q), text)
+		}
 		if got := Estimate(c.q); got != c.want {
 			t.Errorf("mean %g, sd %g, Monte Carlo error %g: %s, expected %s", c.q.Mean, c.q.SD, c.q.MCSE, got, c.want)
+		}
+	}
+}
+
+// A table says which of its values are medians, and what its mark means, if it has such.
+func TestNotes(t *testing.T) {
+	even, uneven := quantity(0.3, 0.011, 0.011, 0.011, 1e-4), quantity(-0.431, 0.27, 0.32, 0.23, 0.004)
+	open, cut := uneven, even
+	open.Constrained, cut.CutByPrior = false, true
+	for _, c := range []struct {
+		qs           []result.Quantity
+		title, notes string
+	}{
+		{[]result.Quantity{even, open}, `Mean $\pm$ sd`, ""},
+		{[]result.Quantity{even, uneven}, "Value", `\multicolumn{3}{l}{\footnotesize Mean $\pm$ sd; with two errors, median and central 68\%}\\` + "\n"},
+		{[]result.Quantity{cut}, `Mean $\pm$ sd`, `\multicolumn{3}{l}{\footnotesize $^{*}$ cut by its prior}\\` + "\n"},
+	} {
+		if title, notes := column(c.qs), Notes(c.qs, 3); title != c.title || notes != c.notes {
+			t.Errorf("column %q with notes %q, expected %q with %q", title, notes, c.title, c.notes)
 		}
 	}
 }

@@ -19,14 +19,15 @@ func Numbers(r *gather.Run) []byte {
 	m := &macros{}
 	heading(&m.Buffer, r, "One macro for every number. In the preamble: \\input{numbers}",
 		"Several runs in one text: \\def\\omenprefix{flat}\\input{flat/numbers} makes \\flatOm and so on.",
-		"They work in text and in math mode.")
+		"They work in text and in math mode. A quantity is mean and standard deviation, or",
+		"median with errors to the central 68% interval where these differ; a time has a median.")
 	m.WriteString("\\providecommand{\\omenprefix}{omen}\n")
 	m.WriteString("\\providecommand{\\omendefine}[2]{\\expandafter\\newcommand\\csname\\omenprefix#1\\endcsname{\\ensuremath{#2}}}\n")
 	s := r.Summary
 	for _, q := range s.Parameters {
 		m.quantity(q)
 		if at, ok := s.Fit.Best[q.Name]; ok {
-			m.define(letters(q.Name)+"Best", number(float64(at), place(float64(q.SD), 0)-1))
+			m.define(letters(q.Name)+"Best", report.Best(q, at))
 		}
 	}
 	for _, q := range s.Derived {
@@ -47,15 +48,18 @@ func (m *macros) quantity(q result.Quantity) {
 		m.define(name, `\mbox{not constrained}`)
 		return
 	}
-	mean := place(float64(q.SD), float64(q.MCSE))
+	place := digits.Place(float64(q.SD), float64(q.MCSE))
 	m.define(name, newEstimate(q).tex())
-	m.define(name+"Mean", number(float64(q.Mean), mean))
-	m.define(name+"Sd", number(float64(q.SD), mean))
-	m.define(name+"Median", number(float64(q.Median), mean))
-	m.define(name+"LowSixtyEight", end(q, q.Interval68, q.MCSE68, 0))
-	m.define(name+"HighSixtyEight", end(q, q.Interval68, q.MCSE68, 1))
-	m.define(name+"LowNinetyFive", end(q, q.Interval95, q.MCSE95, 0))
-	m.define(name+"HighNinetyFive", end(q, q.Interval95, q.MCSE95, 1))
+	m.define(name+"Mean", number(float64(q.Mean), place))
+	m.define(name+"Sd", digits.Width(float64(q.SD), place))
+	m.define(name+"Median", number(float64(q.Median), place))
+	ends := func(of string, v, mcse [2]result.Number) {
+		lo, hi := report.Ends(v, mcse, q)
+		m.define(name+"Low"+of, inMath(lo))
+		m.define(name+"High"+of, inMath(hi))
+	}
+	ends("SixtyEight", q.Interval68, q.MCSE68)
+	ends("NinetyFive", q.Interval95, q.MCSE95)
 }
 
 // fates defines every probability, and what the nested universes and times are.
@@ -89,7 +93,7 @@ func (m *macros) fates(s *result.Summary) {
 // when is a time as a median with errors.
 func when(t result.Time) string {
 	up, down := float64(t.Interval68[1]-t.Median), float64(t.Median-t.Interval68[0])
-	e := estimate{float64(t.Median), up, down, false, place(math.Min(up, down), float64(t.MCSE))}
+	e := estimate{float64(t.Median), up, down, false, digits.Place((up+down)/2, float64(t.MCSE))}
 	e.symmetric = digits.Format(up, e.place) == digits.Format(down, e.place)
 	return e.tex()
 }

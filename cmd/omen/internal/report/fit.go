@@ -15,7 +15,7 @@ func fit(b *strings.Builder, s *result.Summary) {
 		float64(f.Chi2), digits.Count(f.Rows, "row"), digits.Count(f.DoF, "degree of freedom"), chance(float64(f.Probability))))
 	var best []string
 	for _, q := range s.Parameters {
-		best = append(best, fmt.Sprintf("%s %s", q.Name, digits.Format(float64(f.Best[q.Name]), fine(q))))
+		best = append(best, q.Name+" "+Best(q, f.Best[q.Name]))
 	}
 	wrap(b, "  ", "at "+strings.Join(best, ", "))
 	if len(f.Tables) > 1 {
@@ -26,9 +26,11 @@ func fit(b *strings.Builder, s *result.Summary) {
 	b.WriteString("\n")
 }
 
-// fine is one digit more than the spread asks for: a best fit comes from an
-// optimiser and has no Monte Carlo error.
-func fine(q result.Quantity) int { return digits.Place(float64(q.SD), 0) - 2 }
+// Best writes a quantity at the best fit with two digits more than its spread asks for:
+// it comes from an optimiser and has no Monte Carlo error.
+func Best(q result.Quantity, at result.Number) string {
+	return digits.Format(float64(at), digits.Place(float64(q.SD), 0)-2)
+}
 
 func chance(p float64) string {
 	switch {

@@ -80,13 +80,17 @@ func MeanSD(q result.Quantity) string {
 	return digits.Value(float64(q.Mean), float64(q.SD), float64(q.MCSE))
 }
 
-// Interval writes the ends of an interval, each with the digits that its own
-// Monte Carlo error leaves it.
+// Interval writes the ends of an interval, both with the digits that their Monte Carlo
+// errors leave them.
 func Interval(ends, mcse [2]result.Number, q result.Quantity) string {
-	end := func(i int) string {
-		return digits.Format(float64(ends[i]), digits.Place(float64(q.SD), float64(mcse[i])))
-	}
-	return end(0) + " … " + end(1)
+	lo, hi := Ends(ends, mcse, q)
+	return lo + " … " + hi
+}
+
+// Ends writes the ends of an interval one by one.
+func Ends(ends, mcse [2]result.Number, q result.Quantity) (lo, hi string) {
+	place := digits.Ends(float64(q.SD), [2]float64{float64(mcse[0]), float64(mcse[1])})
+	return digits.Format(float64(ends[0]), place), digits.Format(float64(ends[1]), place)
 }
 
 // wrap writes words in lines of at most 80 columns, the later ones indented.
