@@ -40,10 +40,7 @@ func fates(b *strings.Builder, title string, own, averaged []result.Fate) {
 			cells[0] = Probability(f)
 		}
 		if counted {
-			cells = append(cells, "")
-			if f.Chain != nil {
-				cells[1] = Probability(*f.Chain)
-			}
+			cells = append(cells, Counted(f))
 		}
 		if len(averaged) > 0 {
 			a, ok := find(averaged, name)
@@ -56,6 +53,42 @@ func fates(b *strings.Builder, title string, own, averaged []result.Fate) {
 		row("  "+name, cells)
 	}
 	b.WriteString("\n")
+}
+
+// Counted writes what the chain says of a probability that was integrated: a dash where
+// the family has no such universe, which no chain could count.
+func Counted(f result.Fate) string {
+	if f.Chain == nil {
+		return "–"
+	}
+	return Probability(*f.Chain)
+}
+
+// explain says below the tables of fates what their last column and a plain 0 are.
+func explain(b *strings.Builder, s *result.Summary) {
+	if s.Averaged == nil {
+		return
+	}
+	wrap(b, "  ", "over nested: averaged over the nested universes below, "+Odds(s.Nested))
+	if slices.ContainsFunc(s.Averaged.Fates, func(f result.Fate) bool { _, here := find(s.Fates, f.Name); return !here }) ||
+		slices.ContainsFunc(s.Averaged.Today, func(f result.Fate) bool { _, here := find(s.Today, f.Name); return !here }) {
+		wrap(b, "  ", "0: such universes are a point or a line in this run's family, and have no share of it")
+	}
+	b.WriteString("\n")
+}
+
+// Odds says in words what the prior odds of the nested universes are.
+func Odds(models []result.Nested) string {
+	var odds []string
+	equal := true
+	for _, m := range models {
+		odds = append(odds, fmt.Sprintf("%g for %s", float64(m.Odds), m.Words))
+		equal = equal && m.Odds == models[0].Odds
+	}
+	if equal {
+		return "at equal prior odds"
+	}
+	return "at prior odds of " + strings.Join(odds, ", ")
 }
 
 // names lists those of the family and then those that only nested universes have.

@@ -54,11 +54,38 @@ func TestFatesTable(t *testing.T) {
 	fates(&b, "Fate", own, averaged)
 	want := `Fate                             probability      from the chain   over nested
   big rip                        0.2500           0.247 ± 0.004    0.5000
-  critical                       0                                 0.5000
+  critical                       0                –                0.5000
 
 `
 	if diff := cmp.Diff(want, b.String()); diff != "" {
 		t.Error(diff)
+	}
+}
+
+// What the averages are over is said once below the tables, with the odds that were taken;
+// a plain 0 is explained where there is one.
+func TestExplain(t *testing.T) {
+	flat, curved := result.Nested{Words: "flat, Λ", Odds: 1}, result.Nested{Words: "curved, Λ", Own: true, Odds: 1}
+	half := curved
+	half.Odds = 0.5
+	rip, critical := result.Fate{Name: "big rip"}, result.Fate{Name: "critical"}
+	for _, c := range []struct {
+		nested   []result.Nested
+		averaged *result.Averaged
+		want     string
+	}{
+		{nil, nil, ""},
+		{[]result.Nested{flat, curved}, &result.Averaged{Fates: []result.Fate{rip}},
+			"  over nested: averaged over the nested universes below, at equal prior odds\n\n"},
+		{[]result.Nested{flat, half}, &result.Averaged{Fates: []result.Fate{rip, critical}},
+			"  over nested: averaged over the nested universes below, at prior odds of 1 for\n    flat, Λ, 0.5 for curved, Λ\n" +
+				"  0: such universes are a point or a line in this run's family, and have no\n    share of it\n\n"},
+	} {
+		var b strings.Builder
+		explain(&b, &result.Summary{Fates: []result.Fate{rip}, Averaged: c.averaged, Nested: c.nested})
+		if diff := cmp.Diff(c.want, b.String()); diff != "" {
+			t.Error(diff)
+		}
 	}
 }
 

@@ -31,6 +31,7 @@ func Text(w io.Writer, s *result.Summary) error {
 	fates(&b, "Fate", s.Fates, averaged.Fates)
 	fates(&b, "Fate, if w stays as today", s.FatesHeldW, averaged.FatesHeldW)
 	fates(&b, "Today", s.Today, averaged.Today)
+	explain(&b, s)
 	nested(&b, s.Nested)
 	priors(&b, s)
 	times(&b, s)
