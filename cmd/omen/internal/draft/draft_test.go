@@ -81,6 +81,15 @@ func TestEscape(t *testing.T) {
 	}
 }
 
+// A quantity in the name of a universe has its symbol.
+func TestNamed(t *testing.T) {
+	for in, want := range map[string]string{"critical (Om = 1)": `critical ($\Omega_{\mathrm m}$ = 1)`, "flat, w0-wa": "flat, $w_0$-$w_a$", "Omega": "Omega"} {
+		if got := named(in); got != want {
+			t.Errorf("named(%q) = %q, expected %q", in, got, want)
+		}
+	}
+}
+
 // Whatever a name is, escaped it has no command but our own, and its braces pair.
 func FuzzEscape(f *testing.F) {
 	f.Add(`\input{x}`)

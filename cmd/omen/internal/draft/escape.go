@@ -1,6 +1,7 @@
 package draft
 
 import (
+	"regexp"
 	"strings"
 	"unicode"
 )
@@ -39,6 +40,13 @@ func Escape(s string) string {
 		}
 	}
 	return b.String()
+}
+
+var quantities = regexp.MustCompile(`\b(Om|OL|Ok|w0|wa|q0)\b`)
+
+// named is a text of our own, such as "critical (Om = 1)", with symbols for its quantities.
+func named(s string) string {
+	return quantities.ReplaceAllStringFunc(Escape(s), func(name string) string { return "$" + symbol(name) + "$" })
 }
 
 // comment is a text that stays on one line of a comment.

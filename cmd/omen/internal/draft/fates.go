@@ -85,10 +85,10 @@ func Nested(r *gather.Run) []byte {
 	b.WriteString("\\begin{tabular}{lcccccc}\n\\toprule\nUniverse & Free & $\\chi^2$ & $\\Delta$AIC & $\\Delta$BIC & $\\ln B$ & Probability \\\\\n\\midrule\n")
 	for _, m := range models {
 		if m.Ruled != "" {
-			fmt.Fprintf(&b, "%s & %d & \\multicolumn{5}{l}{cannot be: %s} \\\\\n", Escape(m.Words), m.Parameters, Escape(m.Ruled))
+			fmt.Fprintf(&b, "%s & %d & \\multicolumn{5}{l}{cannot be: %s} \\\\\n", named(m.Words), m.Parameters, Escape(m.Ruled))
 			continue
 		}
-		fmt.Fprintf(&b, "%s & %d & $%.2f$ & $%.2f$ & $%.2f$ & $%s$ & $%s$ \\\\\n", Escape(m.Words), m.Parameters, float64(m.Chi2),
+		fmt.Fprintf(&b, "%s & %d & $%.2f$ & $%.2f$ & $%.2f$ & $%s$ & $%s$ \\\\\n", named(m.Words), m.Parameters, float64(m.Chi2),
 			float64(m.AIC)-aic, float64(m.BIC)-bic, inMath(report.Bayes(m)), inMath(report.ModelProbability(m)))
 	}
 	b.WriteString("\\bottomrule\n\\end{tabular}\n")

@@ -44,7 +44,7 @@ func fateTables(s *result.Summary) (out []shares, same string) {
 }
 
 func newShares(name, what string, own, averaged []result.Fate) shares {
-	s := shares{Name: name, What: what, Columns: []string{"within the fitted family"}}
+	s := shares{Name: named(name), What: what, Columns: []string{"within the fitted family"}}
 	counted := slices.ContainsFunc(own, func(f result.Fate) bool { return f.Chain != nil })
 	if counted {
 		s.Columns = append(s.Columns, "from the chain alone")
@@ -53,21 +53,17 @@ func newShares(name, what string, own, averaged []result.Fate) shares {
 		s.Columns = append(s.Columns, "averaged over nested universes")
 	}
 	for _, f := range append(slices.Clone(own), averaged...) {
-		if slices.ContainsFunc(s.Rows, func(r share) bool { return r.Name == f.Name }) {
+		if slices.ContainsFunc(s.Rows, func(r share) bool { return r.Name == named(f.Name) }) {
 			continue
 		}
 		in, here := find(own, f.Name)
-		row := share{Name: f.Name, Percent: percent(in)}
+		row := share{Name: named(f.Name), Percent: percent(in)}
 		cell := func(text string) {
 			row.Cells = append(row.Cells, shareCell{s.Columns[len(row.Cells)], probability(text)})
 		}
 		cell(nothing(in, here))
 		if counted {
-			chain := ""
-			if in.Chain != nil {
-				chain = report.Probability(*in.Chain)
-			}
-			cell(chain)
+			cell(report.Counted(in))
 		}
 		if len(averaged) > 0 {
 			cell(nothing(find(averaged, f.Name)))
@@ -121,7 +117,7 @@ func nested(models []result.Nested) []universeRow {
 	}
 	var out []universeRow
 	for _, m := range models {
-		out = append(out, universeRow{Name: m.Words, Ruled: m.Ruled, Own: m.Own, Free: m.Parameters,
+		out = append(out, universeRow{Name: named(m.Words), Ruled: m.Ruled, Own: m.Own, Free: m.Parameters,
 			Chi2: fmt.Sprintf("%.2f", float64(m.Chi2)), AIC: fmt.Sprintf("%.2f", float64(m.AIC)-aic), BIC: fmt.Sprintf("%.2f", float64(m.BIC)-bic),
 			Bayes: text(report.Bayes(m)), Probability: probability(report.ModelProbability(m))})
 	}
@@ -143,7 +139,7 @@ func times(list []result.Time) []when {
 }
 
 // likeliest names the most probable of the nested universes in a sentence.
-func likeliest(models []result.Nested) string {
+func likeliest(models []result.Nested) template.HTML {
 	if len(models) < 2 {
 		return ""
 	}
@@ -153,5 +149,6 @@ func likeliest(models []result.Nested) string {
 			best = m
 		}
 	}
-	return fmt.Sprintf("Of the %d nested universes the most probable is: %s, with probability %s.", len(models), best.Words, report.ModelProbability(best))
+	return template.HTML(fmt.Sprintf("Of the %d nested universes the most probable is: %s, with probability %s.",
+		len(models), named(best.Words), probability(report.ModelProbability(best))))
 }

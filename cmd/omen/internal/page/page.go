@@ -61,14 +61,16 @@ type quantity struct {
 
 // shares is a table of probabilities.
 type shares struct {
-	Name, What string
-	Columns    []string
-	Rows       []share
+	Name    template.HTML
+	What    string
+	Columns []string
+	Rows    []share
 }
 
 type share struct {
-	Name, Percent string
-	Cells         []shareCell
+	Name    template.HTML
+	Percent string
+	Cells   []shareCell
 }
 
 type shareCell struct {
@@ -78,10 +80,10 @@ type shareCell struct {
 
 // universeRow is one of the nested universes.
 type universeRow struct {
-	Name, Ruled, Chi2, AIC, BIC string
-	Own                         bool
-	Free                        int
-	Bayes, Probability          template.HTML
+	Ruled, Chi2, AIC, BIC    string
+	Own                      bool
+	Free                     int
+	Name, Bayes, Probability template.HTML
 }
 
 // when is a time with its intervals, or why it is not known.

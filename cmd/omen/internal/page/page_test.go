@@ -28,8 +28,21 @@ func TestText(t *testing.T) {
 	}
 }
 
-// The shares of a page: what one column lacks is zero there, what no chain said is
-// empty.
+// A quantity in the name of a universe or a statement has its symbol; a word that holds
+// the letters of one has not.
+func TestNamed(t *testing.T) {
+	for in, want := range map[string]string{
+		"closed (Ok < 0)": "closed (Ω<sub>k</sub>\u00a0&lt;\u00a00)", "critical (Om = 1)": "critical (Ω<sub>m</sub> = 1)",
+		"flat in (Om, q0)": "flat in (Ω<sub>m</sub>, <i>q</i><sub>0</sub>)", "Omega, flat w0wa": "Omega, flat w0wa",
+	} {
+		if got := string(named(in)); got != want {
+			t.Errorf("named(%q) = %q, expected %q", in, got, want)
+		}
+	}
+}
+
+// The shares of a page: what one column lacks is zero there, what no chain could
+// count a dash.
 func TestShares(t *testing.T) {
 	chain := result.Fate{Name: "a", Probability: 0.25, Error: 0.01}
 	s := newShares("Fates", "Fate", []result.Fate{{Name: "a", Probability: 0.2468, Exact: true, Chain: &chain}, {Name: "b", Probability: 0.7532, Exact: true}},
@@ -37,8 +50,8 @@ func TestShares(t *testing.T) {
 	got := fmt.Sprint(s.Columns, s.Rows)
 	const want = "[within the fitted family from the chain alone averaged over nested universes] " +
 		"[{a 24.7 [{within the fitted family 0.2468} {from the chain alone 0.25\u00a0±\u00a00.01} {averaged over nested universes 0}]} " +
-		"{b 75.3 [{within the fitted family 0.7532} {from the chain alone } {averaged over nested universes 0}]} " +
-		"{c 0.0 [{within the fitted family 0} {from the chain alone } {averaged over nested universes 0.9000}]}]"
+		"{b 75.3 [{within the fitted family 0.7532} {from the chain alone –} {averaged over nested universes 0}]} " +
+		"{c 0.0 [{within the fitted family 0} {from the chain alone –} {averaged over nested universes 0.9000}]}]"
 	if got != want {
 		t.Errorf("shares:\n%s\nexpected\n%s", got, want)
 	}

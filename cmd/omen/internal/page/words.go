@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"html/template"
 	"math"
+	"regexp"
 	"strings"
 
 	"omen/cmd/omen/internal/digits"
@@ -28,6 +29,13 @@ func symbol(name string) template.HTML {
 	return template.HTML(template.HTMLEscapeString(name))
 }
 
+var quantities = regexp.MustCompile(`\b(Om|OL|Ok|w0|wa|q0)\b`)
+
+// named is a text of our own, such as "closed (Ok < 0)", with symbols for its quantities.
+func named(s string) template.HTML {
+	return template.HTML(quantities.ReplaceAllStringFunc(string(text(s)), func(name string) string { return string(symbol(name)) }))
+}
+
 // text is a plain text as the page shows it: escaped, with a minus that is one,
 // and without a break around ± and signs of order.
 func text(s string) template.HTML {
@@ -49,7 +57,7 @@ func words(r *gather.Run) []template.HTML {
 	s := r.Summary
 	out := []template.HTML{constraints(r), probability(fate(r))}
 	if l := likeliest(s.Nested); l != "" {
-		out = append(out, probability(l))
+		out = append(out, l)
 	}
 	return append(out, today(r), text(fit(s)), text(converged(s)))
 }
@@ -143,10 +151,10 @@ func today(r *gather.Run) template.HTML {
 	var parts []string
 	for _, f := range r.Summary.Today {
 		if f.Probability > 0 {
-			parts = append(parts, f.Name+" with probability "+report.Probability(f))
+			parts = append(parts, string(named(f.Name))+" with probability "+string(probability(report.Probability(f))))
 		}
 	}
-	s := probability("Today it is " + join(parts) + ".")
+	s := template.HTML("Today it is " + join(parts) + ".")
 	if q, ok := gather.Find(r.Summary, "age"); ok {
 		return s + " Its age: " + template.HTML(value(q)) + "."
 	}
