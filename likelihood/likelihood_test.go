@@ -165,8 +165,8 @@ func TestDegreesOfFreedom(t *testing.T) {
 		Bound: []data.Bound{data.LowerBound, data.Measured, data.LowerBound}}, nil))
 	f := Family{Flat: true, Free: []Parameter{param(t, "H0", 50, 90), param(t, "Om", 0, 1)}}
 	p := posterior(t, f, must[*Supernovae](t)(NewSupernovae(sn, nil, Offset{}, Standing{})), ages)
-	if rows, parameters, dof := p.Rows(), p.Parameters(), p.DegreesOfFreedom(); rows != 23 || parameters != 3 || dof != 18 {
-		t.Errorf("%d rows, %d parameters, %d degrees of freedom, want 23, 3, 18", rows, parameters, dof)
+	if rows, n, parameters, dof := p.Rows(), p.Measurements(), p.Parameters(), p.DegreesOfFreedom(); rows != 23 || n != 21 || parameters != 3 || dof != 18 {
+		t.Errorf("%d rows, %d measurements, %d parameters, %d degrees of freedom, want 23, 21, 3, 18", rows, n, parameters, dof)
 	}
 }
 

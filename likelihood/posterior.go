@@ -177,14 +177,17 @@ func (p *Posterior) Parameters() int {
 	return n
 }
 
-// DegreesOfFreedom is the rows less the parameters. A bound is no row here: where it
-// is kept it adds nothing to chi-squared.
-func (p *Posterior) DegreesOfFreedom() int {
-	dof := p.Rows() - p.Parameters()
+// Measurements is the rows without those that are bounds: where a bound is kept it adds
+// nothing to chi-squared.
+func (p *Posterior) Measurements() int {
+	n := p.Rows()
 	for _, t := range p.terms {
 		if b, ok := t.(bounded); ok {
-			dof -= b.bounds()
+			n -= b.bounds()
 		}
 	}
-	return dof
+	return n
 }
+
+// DegreesOfFreedom is the measurements less the parameters.
+func (p *Posterior) DegreesOfFreedom() int { return p.Measurements() - p.Parameters() }

@@ -33,10 +33,15 @@ func (c *clock) set(pos, t float64) {
 	c.lo, c.hi, c.start, c.end, c.width = pos, pos, t, t, clockWidth
 }
 
+// logLargest is the logarithm of a number near the largest: what is beyond is +Inf.
+const logLargest = 700
+
 // seek is the position at time t: that of the last panel, if the clock does not reach so far.
 func (c *clock) seek(t float64) float64 {
 	for range panelBudget {
 		switch {
+		case c.hi > logLargest && t > c.end:
+			return math.Inf(1)
 		case t > c.end:
 			if !c.move(1) {
 				return c.hi

@@ -3,8 +3,8 @@ package model
 import "math"
 
 // ScaleFactor is a at the time t in Gyr since the big bang: through the turnaround to the crunch if there is
-// one, up to the rip if there is one, 0 at the bang and the crunch. NaN outside that span, and for a universe
-// without a big bang.
+// one, up to the rip if there is one, 0 at the bang and the crunch; +Inf beyond 1e304. NaN outside that span, and
+// for a universe without a big bang.
 func (u Universe) ScaleFactor(t float64) float64 {
 	var a [1]float64
 	u.History([]float64{t}, a[:])

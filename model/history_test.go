@@ -176,3 +176,21 @@ func TestTimeBeforeAFarTurnaround(t *testing.T) {
 		near(t, "a", u.ScaleFactor(u.TimeAt(2)), 2, 1e-9)
 	}
 }
+
+// What expands for ever grows past every number and stays there.
+func TestScaleFactorOverflows(t *testing.T) {
+	for _, u := range []Universe{{Om: 0.3, OL: 0.7, W0: -1}, {Om: 0.3, OL: 0.7, W0: -0.98}, {Om: 0.3, OL: 0.6, Or: 1e-4, W0: -1}} {
+		u.H0 = 70
+		last, ended := 0.0, false
+		for _, t0 := range []float64{1, 100, 700, 850, 900, 1e3, 2e3, 1e4, 1e5, 1e9} {
+			a := u.ScaleFactor(t0 * u.HubbleTime())
+			if !(a >= last) || a > 1e305 && !math.IsInf(a, 1) {
+				t.Errorf("%+v: a = %v at %v/H0, after %v", u, a, t0, last)
+			}
+			last, ended = a, math.IsInf(a, 1)
+		}
+		if u.W0 == -1 && !ended {
+			t.Errorf("%+v: a = %v at the end", u, last)
+		}
+	}
+}

@@ -19,6 +19,12 @@
 //     intervals, each with its Monte Carlo standard error, effective sample
 //     size and R-hat; [Proportion] reduces draws of 0 and 1 to a probability.
 //
+// # What it cannot see
+//
+// All ensembles start about one optimum. A second peak that no walker reaches is
+// not found, and R-hat says nothing of it; one that few reach shows as ensembles
+// that disagree, and a run that does not end.
+//
 // # Random numbers
 //
 // The random stream of a step is a pure function of the seed, the ensemble and

@@ -229,25 +229,25 @@ func (r *runner) block(to int) error {
 	first := r.step - r.step%r.chain.every + r.chain.every
 	r.step += n
 	rows := r.rows(first)
+	if err := r.settle(); err != nil { // the observer may look at the chain until then
+		return err
+	}
 	if err := r.append(rows); err != nil {
 		return err
 	}
-	return r.hand(rows)
+	r.hand(rows)
+	return nil
 }
 
 // hand gives the observer what a block recorded, without waiting for it.
-func (r *runner) hand(rows View) error {
+func (r *runner) hand(rows View) {
 	if r.observer == nil {
-		return nil
-	}
-	if err := r.settle(); err != nil {
-		return err
+		return
 	}
 	step, handed := r.step, make(chan error, 1)
 	r.handed = handed
 	r.records, r.spare = r.spare, r.records
 	go func() { handed <- r.observer.Advanced(step, rows) }()
-	return nil
 }
 
 // settle waits for the observer's answer to the last block.

@@ -248,6 +248,28 @@ func TestCancelledRun(t *testing.T) {
 	}
 }
 
+// looker is an observer that looks at the chain.
+type looker struct {
+	t     *testing.T
+	chain *Chain
+}
+
+func (l looker) Advanced(_ int, rows View) error {
+	all := l.chain.View()
+	if n := rows.Steps(); n > 0 && all.Number(all.Steps()-1) != rows.Number(n-1) {
+		l.t.Errorf("the chain is at step %d, the rows end at %d", all.Number(all.Steps()-1), rows.Number(n-1))
+	}
+	return nil
+}
+
+func (l looker) Checked(Check) {}
+
+// While an observer has rows, the chain ends with them.
+func TestObserverMayLookAtTheChain(t *testing.T) {
+	chain, densities := small().newChain(t, 4, 3, 1, DefaultRecord)
+	mustRun(t, context.Background(), densities, chain, quick(), looker{t, chain})
+}
+
 func TestObserverErrorStopsRun(t *testing.T) {
 	chain, densities := small().newChain(t, 4, 3, 1, DefaultRecord)
 	full := errors.New("no space left")

@@ -12,7 +12,7 @@ import (
 // Result is a posterior integrated.
 type Result struct {
 	LogEvidence Estimate   // ln ∫ p over the box, with its absolute error
-	Marginals   []Marginal // of each coordinate
+	Marginals   []Marginal // of each coordinate, or the first Options.Passes of them
 	Classes     []Estimate // the probability of each class; see Problem.Class for what may be missed
 	Nodes       *Nodes     // weighted points, for everything else
 	Mode        []float64  // the most probable point found
@@ -82,12 +82,7 @@ func (r *Result) passes(ctx context.Context, p Problem, o Options, g guess, work
 	var logs []float64
 	for i := range p.Lo {
 		if o.Passes > 0 && i >= o.Passes {
-			m, err := r.Nodes.Marginal(func(x []float64) float64 { return x[i] })
-			if err != nil {
-				return err
-			}
-			r.Marginals = append(r.Marginals, m)
-			continue
+			break
 		}
 		q := newPass(p, i, g)
 		q.relative, q.relativeClass, q.rarest = o.Tolerance, o.ClassTolerance, o.Rarest

@@ -32,7 +32,7 @@ type Options struct {
 	ClassTolerance float64 // of the probability of each class, relative to that probability
 	Rarest         float64 // a class less probable than this is only known to ClassTolerance·Rarest
 	MaxEvaluations int     // of the density in each of the dim passes, about; the errors stay honest
-	Passes         int     // coordinates whose marginal is integrated for itself; those of the others come from the nodes. 0 for all
+	Passes         int     // coordinates whose marginal is integrated; 0 for all. [Nodes.Marginal] has those of the others, less exactly
 	Workers        int     // goroutines; 0 for as many as there are cores. Does not change the result
 }
 

@@ -28,8 +28,7 @@ type Posterior struct {
 	Best        []float64 // the point of highest density
 	LogBest     float64   // ln p there
 	LogEvidence quadrature.Estimate
-	Marginals   []quadrature.Marginal // of the free parameters
-	Nodes       *quadrature.Nodes     // in coordinates of the integral
+	Nodes       *quadrature.Nodes // in coordinates of the integral
 	Evaluations int
 	Seconds     float64
 	Warnings    []string
@@ -39,8 +38,9 @@ type Posterior struct {
 	classes []quadrature.Estimate // their probabilities
 	rare    []rareNodes           // what belongs to no class
 
-	once sync.Once
-	thin *quadrature.Nodes // without the lightest
+	once      sync.Once
+	thin      *quadrature.Nodes            // without the lightest
+	marginals []func() quadrature.Marginal // of the free parameters
 }
 
 type rareNodes struct {
@@ -48,14 +48,18 @@ type rareNodes struct {
 	weight float64
 }
 
-// Options returns how hard to try in so many dimensions: to 1e-6 where that is
-// cheap; in three, to the errors that a print could show.
-func Options(dim, threads int) quadrature.Options {
+// options returns how hard to try in so many dimensions: to 1e-6 where that is
+// cheap; in three, to the errors that a print could show. In a frame no marginal is
+// that of a parameter.
+func options(dim, threads int, framed bool) quadrature.Options {
 	o := quadrature.DefaultOptions()
 	o.Workers = threads
 	if dim == 3 {
-		o.Tolerance, o.ClassTolerance, o.Passes = 1e-4, 3e-3, 1
-		o.MaxEvaluations = 1_000_000
+		o.Tolerance, o.ClassTolerance = 1e-4, 3e-3
+		o.MaxEvaluations = 4_000_000
+	}
+	if framed {
+		o.Passes = 1
 	}
 	return o
 }
@@ -72,11 +76,13 @@ func Integrate(ctx context.Context, p *likelihood.Posterior, start []float64, th
 	if space.Dim() == Most {
 		e.straighten(p, start)
 	}
-	o := Options(space.Dim(), threads)
-	r, err := quadrature.Integrate(ctx, e.problem(p, start), o)
+	integrate := func() (*quadrature.Result, error) {
+		return quadrature.Integrate(ctx, e.problem(p, start), options(space.Dim(), threads, e.frame != nil))
+	}
+	r, err := integrate()
 	for tries := 0; err == nil && e.frame != nil && e.cut(r); tries++ {
 		e.frame = e.frame.wider(tries) // it let something of the posterior out
-		r, err = quadrature.Integrate(ctx, e.problem(p, start), o)
+		r, err = integrate()
 	}
 	if err != nil {
 		return nil, err
@@ -145,30 +151,63 @@ const rough = 2e-3
 
 // take takes a result over, from the frame back to the parameters.
 func (e *Posterior) take(r *quadrature.Result) {
-	e.Best, e.LogBest, e.LogEvidence, e.Marginals = r.Mode, r.LogMode, r.LogEvidence, r.Marginals
+	e.Best, e.LogBest, e.LogEvidence = r.Mode, r.LogMode, r.LogEvidence
 	e.Nodes, e.Evaluations, e.classes = r.Nodes, r.Evaluations, r.Classes
 	if err := r.LogEvidence.Err; err > rough {
 		e.Warnings = append(e.Warnings, fmt.Sprintf("the integral is only known to a relative %.1g after %d evaluations: take no more of its digits, narrow the priors, or rely on the chain", err, r.Evaluations))
 	}
 	if e.frame == nil {
+		for _, m := range r.Marginals {
+			e.marginals = append(e.marginals, func() quadrature.Marginal { return m })
+		}
 		return
 	}
 	e.LogEvidence.Value += e.frame.logVolume()
 	e.Best = e.point(r.Mode)
-	e.Marginals = nil
 	for i := range e.Best {
-		m, err := e.thinned().Marginal(func(u []float64) float64 {
-			x := e.frame.centre[i]
-			for k := range i + 1 {
-				x += e.frame.l.At(i, k) * u[k]
-			}
-			return x
-		})
-		if err != nil {
-			m.Mean, m.SD = math.NaN(), math.NaN()
-		}
-		e.Marginals = append(e.Marginals, m)
+		e.marginals = append(e.marginals, sync.OnceValue(func() quadrature.Marginal { return e.framed(i) }))
 	}
+}
+
+// Marginal is the distribution of the i-th free parameter.
+func (e *Posterior) Marginal(i int) quadrature.Marginal { return e.marginals[i]() }
+
+// framed is the marginal of a parameter by the nodes of a frame.
+func (e *Posterior) framed(i int) quadrature.Marginal {
+	m, err := e.thinned().Marginal(func(u []float64) float64 {
+		x := e.frame.centre[i]
+		for k := range i + 1 {
+			x += e.frame.l.At(i, k) * u[k]
+		}
+		return x
+	})
+	if err != nil {
+		m.Mean, m.SD = math.NaN(), math.NaN()
+	}
+	return m
+}
+
+// Fine reports whether the nodes are fine enough for the distributions of derived
+// quantities, which come from them alone: not where three parameters are integrated
+// without a frame. The ends of intervals are off by up to a tenth of the width there
+// (measured on posteriors that their priors cut), while means and the marginals of
+// the parameters are not.
+func (e *Posterior) Fine() bool { return e.frame != nil || e.Space.Dim() < Most }
+
+// Unresolved is the largest error of the probability of a class that is worse than one
+// could quote; 0 if all are known well enough. It is not where the evaluations that are
+// allowed ended before the borders between the classes were found.
+func (e *Posterior) Unresolved() float64 {
+	worst := 0.0
+	for _, c := range e.classes {
+		switch {
+		case math.IsNaN(c.Err):
+			return math.Inf(1)
+		case c.Err > 2e-4+0.01*math.Min(c.Value, 1-c.Value):
+			worst = math.Max(worst, c.Err)
+		}
+	}
+	return worst
 }
 
 // point is the parameters at coordinates of the integral.
@@ -283,19 +322,21 @@ func (e *Posterior) Probability(holds func(outlook.Label) bool) outlook.Share {
 
 // share takes the error from the rarer side, and 1 - p where that is the exact one.
 // What is possible and yet has no mass at any node is not zero but below what was
-// looked for.
+// looked for. Where the error leaves either side open it is no limit that must be told.
 func share(yes, no quadrature.Estimate, canHold, canFail bool) outlook.Share {
 	s := outlook.Share{P: yes.Value, Err: min(yes.Err, no.Err), Upper: math.NaN(), Lower: math.NaN()}
 	if no.Value < yes.Value {
 		s.P = 1 - no.Value
 	}
-	limit := func(e quadrature.Estimate) float64 { return max(rarest, e.Value+2*e.Err) }
+	limit := func(p float64) float64 { return min(max(rarest, p+2*s.Err), 1) }
+	small := func(p float64) bool { return p < rarest || p < 3*s.Err }
 	switch {
 	case yes.Value == 0 && !canHold, no.Value == 0 && !canFail: // exactly
-	case yes.Value < rarest || yes.Value < 3*yes.Err:
-		s.P, s.Upper = 0, limit(yes)
-	case no.Value < rarest || no.Value < 3*no.Err:
-		s.P, s.Lower = 1, 1-limit(no)
+	case small(yes.Value) && small(no.Value):
+	case small(yes.Value):
+		s.P, s.Upper = 0, limit(yes.Value)
+	case small(no.Value):
+		s.P, s.Lower = 1, 1-limit(no.Value)
 	}
 	return s
 }

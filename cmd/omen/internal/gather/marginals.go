@@ -38,7 +38,7 @@ func (r *Run) marginals() (*Picture, error) {
 		p.Edges, p.Best = edges(free[i].Prior), r.Best[i]
 		p.PriorX, p.PriorP = priorCurve(free[i].Prior, r.Summary.Parameters[i])
 		if r.Chain == nil {
-			m := r.Exact.Marginals[i]
+			m := r.Exact.Marginal(i)
 			c, err := density.NewCurve(m.X, m.Density)
 			if err != nil {
 				return nil, err
@@ -53,12 +53,12 @@ func (r *Run) marginals() (*Picture, error) {
 			in.Parameters = append(in.Parameters, parameter(name, values[i]))
 		}
 	}
-	caption := "Marginal posterior densities: on the diagonal of each quantity, below it of each pair, with regions of highest density that hold 68% and 95%. " +
-		"Grey with a dotted line: the prior. Triangles and crosses: the best fit."
+	caption := "Marginal posterior densities: on the diagonal of each quantity, below it of each pair. Shaded: the intervals and regions of highest density that hold 68% and 95%; " +
+		"the intervals in the tables are central. Grey with a dotted line: the prior. Triangles and crosses: the best fit."
 	if left > 0 {
 		caption += " " + digits.Count(left, "parameter") + " more would not fit."
 	}
-	return &Picture{Caption: caption, Alt: "Marginal posteriors: " + r.Values(names...) + ".", Wide: len(in.Parameters) > 3,
+	return &Picture{Caption: caption, Alt: "Marginal posteriors with intervals and regions of highest density: " + r.Values(names...) + ".", Wide: len(in.Parameters) > 3,
 		draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawMarginals(in, w) }}, nil
 }
 

@@ -23,7 +23,7 @@ type Fitted struct {
 	Model
 	Method      string            // "quadrature", "bridge sampling", or "point" where nothing is free
 	Parameters  int               // free ones, marginalised offsets included
-	Rows        int               // of data
+	Rows        int               // of data, bounds left out
 	Best        []float64         // the point of highest posterior density
 	Chi2        float64           // there
 	Admitted    float64           // fraction of the prior that the family admits, over which the prior is normalised
@@ -130,7 +130,7 @@ func fit(ctx context.Context, p *likelihood.Posterior, m Model, own Own, o Optio
 		}
 		f.space, own = space, Own{}
 	}
-	f.Rows, f.Parameters = p.Rows(), p.Parameters()
+	f.Rows, f.Parameters = p.Measurements(), p.Parameters()
 	volume, err := Volume(ctx, f.space)
 	if err != nil {
 		return nil, err
@@ -183,6 +183,8 @@ func (f *Fitted) integrate(ctx context.Context, p *likelihood.Posterior, o Optio
 		return nil
 	case err != nil:
 		return err
+	case e.Unresolved() > 0:
+		return f.bridge(ctx, p, Own{}, o)
 	}
 	f.integrated(e)
 	return nil

@@ -169,8 +169,8 @@ func TestClosedForms(t *testing.T) {
 	if d := math.Abs(e.LogEvidence.Value - want); !(d < 1e-6) {
 		t.Errorf("ln evidence %.9f, want %.9f", e.LogEvidence.Value, want)
 	}
-	if d := math.Abs(e.Marginals[0].SD - err/math.Sqrt(n)); !(d < 1e-7) {
-		t.Errorf("sd %.9f", e.Marginals[0].SD)
+	if d := math.Abs(e.Marginal(0).SD - err/math.Sqrt(n)); !(d < 1e-7) {
+		t.Errorf("sd %.9f", e.Marginal(0).SD)
 	}
 }
 

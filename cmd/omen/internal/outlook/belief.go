@@ -60,15 +60,19 @@ type Drawn struct {
 
 var _ Belief = Drawn{}
 
-// Probability counts draws; none or all leave a limit.
+// fewSigmas is how many of its errors a probability must be away from 0 and 1 to be
+// told as a number: four effective draws.
+const fewSigmas = 2
+
+// Probability counts draws; next to none or next to all leave a limit.
 func (d Drawn) Probability(holds func(Label) bool) Share {
 	p := sampler.Proportion(d.Codes.Map(func(code float64) float64 { return indicator(holds(Decode(code))) }), d.ESS)
 	s := Share{P: p.P, Err: p.Error, Upper: math.NaN(), Lower: math.NaN()}
-	switch p.P {
-	case 0:
-		s.Upper = p.Upper95
-	case 1:
-		s.Lower = p.Lower95
+	switch {
+	case p.P == 0, p.P < fewSigmas*p.Error && p.P < 0.5:
+		s.P, s.Upper = 0, p.Upper95
+	case p.P == 1, 1-p.P < fewSigmas*p.Error:
+		s.P, s.Lower = 1, p.Lower95
 	}
 	return s
 }

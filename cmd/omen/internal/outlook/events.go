@@ -13,6 +13,7 @@ type Event struct {
 	Given string           // the condition under which it is told
 	Held  bool             // with the equation of state held at today's value
 	Plain bool             // the value is a plain number, not a time
+	Long  bool             // there is no end to how long it can take: its logarithm is what is spread out evenly
 	Holds func(Label) bool // the condition
 
 	// at is the value in units of 1/H0 (or plain), NaN where it does not come to
@@ -36,7 +37,6 @@ func (e Event) At(u model.Universe, gyr bool) float64 {
 // are told for both rules of what the equation of state will be.
 func Events(evolving bool) []Event {
 	past := []Event{
-		{Name: "age", Words: "age today", Given: "there was a big bang", Holds: began, at: age},
 		{Name: "acceleration_onset_z", Words: "acceleration began, z", Given: "it accelerates today", Holds: accelerates, Plain: true, at: onset},
 		{Name: "acceleration_onset", Words: "accelerating for", Given: "it accelerates today", Holds: accelerates, at: onsetTime},
 	}
@@ -46,8 +46,6 @@ func Events(evolving bool) []Event {
 	}
 	return out
 }
-
-func began(l Label) bool { return l.Fate != model.NoBigBang }
 
 func accelerates(l Label) bool { return l.Accelerating }
 
@@ -61,9 +59,9 @@ func future(held bool) []Event {
 	recollapses := func(l Label) bool { return of(l) == model.Recollapse }
 	rips := func(l Label) bool { return of(l) == model.BigRip }
 	return []Event{
-		{Name: "turnaround" + suffix, Words: "time to turnaround" + rule, Given: "it recollapses", Holds: recollapses, Held: held, at: turnaround},
-		{Name: "crunch" + suffix, Words: "time to the big crunch" + rule, Given: "it recollapses", Holds: recollapses, Held: held, at: crunch},
-		{Name: "rip" + suffix, Words: "time to the big rip" + rule, Given: "it rips", Holds: rips, Held: held, at: rip},
+		{Name: "turnaround" + suffix, Words: "time to turnaround" + rule, Given: "it recollapses", Holds: recollapses, Held: held, Long: true, at: turnaround},
+		{Name: "crunch" + suffix, Words: "time to the big crunch" + rule, Given: "it recollapses", Holds: recollapses, Held: held, Long: true, at: crunch},
+		{Name: "rip" + suffix, Words: "time to the big rip" + rule, Given: "it rips", Holds: rips, Held: held, Long: true, at: rip},
 	}
 }
 
@@ -101,5 +99,3 @@ func rip(u model.Universe) float64 {
 	}
 	return u.Rip() / u.HubbleTime()
 }
-
-func age(u model.Universe) float64 { return u.AgeToday() / u.HubbleTime() }

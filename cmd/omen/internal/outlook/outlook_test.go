@@ -8,6 +8,7 @@ import (
 
 	"omen/likelihood"
 	"omen/model"
+	"omen/sampler"
 )
 
 func randomUniverse(r *rand.Rand, energy likelihood.DarkEnergy) model.Universe {
@@ -93,7 +94,7 @@ func TestEvents(t *testing.T) {
 		if gyr {
 			unit = closed.HubbleTime()
 		}
-		for name, want := range map[string]float64{"age": age, "turnaround": crunch/2 - age, "crunch": crunch - age} {
+		for name, want := range map[string]float64{"turnaround": crunch/2 - age, "crunch": crunch - age} {
 			if got := at(name, closed, gyr); math.Abs(got/unit-want) > 1e-9 {
 				t.Errorf("%s at %v, want %v", name, got/unit, want)
 			}
@@ -183,6 +184,32 @@ func TestSpread(t *testing.T) {
 	for i, n := range count {
 		if n < 955 || n > 1045 {
 			t.Errorf("%d of 8000 points in eighth %d", n, i)
+		}
+	}
+}
+
+// One draw in a thousand is no measurement of a probability; ten are.
+func TestFewDrawsAreALimit(t *testing.T) {
+	rng := rand.New(rand.NewPCG(1, 2))
+	for _, c := range []struct {
+		p     float64
+		limit bool
+	}{{0.0005, true}, {0.02, false}, {0.9995, true}, {0.98, false}} {
+		codes := make([]float64, 4000)
+		for n, i := range rng.Perm(len(codes)) {
+			u := model.Universe{Om: 0.3, OL: 0.7, H0: 70, W0: -1}
+			if float64(n)+0.5 > c.p*4000 {
+				u.OL = -0.1
+			}
+			codes[i] = LabelOf(u).Code()
+		}
+		d := Drawn{Codes: sampler.NewDraws(1, codes), ESS: 4000}
+		s := d.Probability(func(l Label) bool { return l.Accelerating })
+		if got := !math.IsNaN(s.Upper) || !math.IsNaN(s.Lower); got != c.limit {
+			t.Errorf("about %v: %+v", c.p, s)
+		}
+		if !math.IsNaN(s.Upper) && !(s.P == 0 && s.Upper > 0.0007 && s.Upper < 0.003) {
+			t.Errorf("about %v: %+v", c.p, s)
 		}
 	}
 }

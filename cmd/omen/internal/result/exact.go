@@ -31,13 +31,17 @@ func (s *Summary) fromExact(r Run, drawn *outlook.Drawn) {
 }
 
 // exactQuantities are parameters and derived quantities by quadrature. A quantity that is
-// the same everywhere is left out.
+// the same everywhere is left out, and so are derived ones that a chain knows better.
 func exactQuantities(r Run) (parameters, derived []Quantity) {
 	e := r.Exact
 	for i, p := range e.Space.Free() {
-		q := exactly(p.Name, &e.Marginals[i])
+		m := e.Marginal(i)
+		q := exactly(p.Name, &m)
 		q.Constrained = constrained(p.Prior, q)
 		parameters = append(parameters, q)
+	}
+	if r.Chain != nil && !e.Fine() {
+		return parameters, nil
 	}
 	names := derivedNames(e.Space)
 	marginals, errs := make([]quadrature.Marginal, len(names)), make([]error, len(names))

@@ -50,6 +50,10 @@ func (r *Run) integrate(ctx context.Context) error {
 	if err != nil {
 		return err
 	}
+	if by := e.Unresolved(); by > 0 && r.Chain != nil {
+		r.givenUp = fmt.Sprintf("quadrature was given up after %d evaluations, with probabilities known to ±%.1g only: all numbers are the chain's", e.Evaluations, by)
+		return nil
+	}
 	r.Exact = e
 	if r.Chain == nil {
 		r.Best = e.Best

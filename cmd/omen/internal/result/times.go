@@ -26,7 +26,7 @@ func (s *Summary) times(r Run, drawn *outlook.Drawn) {
 	space := r.Job.Space
 	events := outlook.Events(space.Family().DarkEnergy == likelihood.W0Wa)
 	switch {
-	case r.Exact != nil:
+	case r.Exact != nil && (r.Exact.Fine() || drawn == nil):
 		out := make([]Time, len(events))
 		var wait sync.WaitGroup
 		for i, e := range events {
@@ -76,12 +76,16 @@ func exactTime(e outlook.Event, p *exact.Posterior, gyr bool) Time {
 	if p.Probability(e.Holds).P < hardlyEver {
 		return t
 	}
-	m, err := p.OfUniverse(func(u model.Universe) float64 { return e.At(u, gyr) })
+	to, back := func(x float64) float64 { return x }, func(x float64) Number { return Number(x) }
+	if e.Long {
+		to, back = math.Log, func(x float64) Number { return Number(math.Exp(x)) }
+	}
+	m, err := p.OfUniverse(func(u model.Universe) float64 { return to(e.At(u, gyr)) })
 	if err != nil {
 		return t
 	}
-	interval := func(lo, hi float64) [2]Number { return [2]Number{Number(lo), Number(hi)} }
-	t.Probability, t.Median = Number(m.Defined), Number(m.Median())
+	interval := func(lo, hi float64) [2]Number { return [2]Number{back(lo), back(hi)} }
+	t.Probability, t.Median = Number(m.Defined), back(m.Median())
 	t.Interval68, t.Interval95 = interval(m.Interval(0.68)), interval(m.Interval(0.95))
 	return t
 }

@@ -60,7 +60,13 @@ func exactWarnings(r Run, s *Summary) []string {
 		out = append(out, fmt.Sprintf("chain and quadrature disagree: %s by %.1f of its Monte Carlo errors (the largest difference is %.2g widths, in %s, %s); run longer, or look for a second peak",
 			d.Of, float64(d.Sigmas), float64(d.Widths), d.Quantity, d.Statistic))
 	}
+	if r.givenUp != "" {
+		out = append(out, r.givenUp)
+	}
 	if r.Exact != nil {
+		if by := r.Exact.Unresolved(); by > 0 {
+			out = append(out, fmt.Sprintf("quadrature: probabilities are only known to ±%.1g; sample with a chain as well (engine = \"both\")", by))
+		}
 		for _, w := range r.Exact.Warnings {
 			out = append(out, "quadrature: "+w)
 		}
@@ -94,7 +100,8 @@ func priorWarnings(r Run, s *Summary, view sampler.View) []string {
 		}
 		var cut []string
 		if r.Exact != nil {
-			cut = edgeWarnings(free.Prior, q, exactEdges(free.Prior, &r.Exact.Marginals[i]))
+			m := r.Exact.Marginal(i)
+			cut = edgeWarnings(free.Prior, q, exactEdges(free.Prior, &m))
 		} else {
 			cut = edgeWarnings(free.Prior, q, drawnEdges(free.Prior, q, view.Coordinate(i)))
 		}
@@ -154,11 +161,20 @@ func edgeWarnings(p likelihood.Prior, q Quantity, density [2]float64) []string {
 		name string
 	}{{lo, "lower"}, {hi, "upper"}} {
 		if density[i] > edgeDensity {
-			out = append(out, fmt.Sprintf("%s runs into the %s end of its prior, %g (density there %.0f%% of a Gaussian's peak): widen the prior, or call the result a limit",
-				q.Name, end.name, end.edge, 100*density[i]))
+			out = append(out, fmt.Sprintf("%s runs into the %s end of its prior, %g (its density there is %.0f%% of the peak of a Gaussian as wide): %s",
+				q.Name, end.name, end.edge, 100*density[i], edgeAdvice(q.Name, end.edge)))
 		}
 	}
 	return out
+}
+
+// edgeAdvice is what to do about a prior that ends at some value. Matter and the Hubble
+// constant have none below zero.
+func edgeAdvice(name string, edge float64) string {
+	if edge == 0 && name != "OL" && name != "wa" {
+		return "quote an upper limit"
+	}
+	return "widen the prior, or call the result a limit"
 }
 
 func fitWarnings(f Fit) []string {

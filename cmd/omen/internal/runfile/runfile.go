@@ -100,7 +100,7 @@ func Default() Run {
 		Universe: Universe{Geometry: "curved", DarkEnergy: "constant", Radiation: "from-temperature",
 			RequireBigBang: true, RequireMatterEra: true},
 		Fates: Fates{Nested: true},
-		Sampling: Sampling{Engine: "both", Seed: 1, Ensembles: 4, EffectiveSamples: 4000, MaxSteps: 1_000_000,
+		Sampling: Sampling{Engine: "both", Seed: 1, Ensembles: 4, EffectiveSamples: 4000, MaxSteps: 200_000,
 			RecordEvery: 1, SyncInterval: Duration(3 * time.Second)},
 	}
 }
