@@ -28,7 +28,11 @@ type Fates struct {
 	Unfinished bool
 }
 
-// DrawFates draws the probabilities as horizontal bars, on a logarithmic axis if some are small.
+// Faintest is the probability below which none has a bar, but an open arrow with its number.
+const Faintest = 1e-6
+
+// DrawFates draws the probabilities as horizontal bars, on a logarithmic axis if some are small but not too small
+// for a bar: bars on a linear axis can be compared by their lengths.
 func DrawFates(in Fates, width Width) (*Figure, error) {
 	if err := in.check(); err != nil {
 		return nil, err
@@ -50,8 +54,10 @@ func DrawFates(in Fates, width Width) (*Figure, error) {
 	if n > 1 {
 		key = 11 * float64(n)
 	}
-	if in.hasLimit() {
-		key += 11
+	for _, has := range []bool{in.has(x, (*Probability).limits), in.has(x, (*Probability).below)} {
+		if has {
+			key += 11
+		}
 	}
 	f := newFigure("Probability of each fate", width, bottom+pitch*float64(len(in.Rows))+key+9)
 	p := &panel{rect{left, bottom, f.w - in.room(), bottom + pitch*float64(len(in.Rows))}, x, axis{lo: 0, hi: 1}}
@@ -98,28 +104,44 @@ func (in *Fates) check() error {
 	return nil
 }
 
-// axis runs from 0 to 1, or over the decades down to the smallest value.
+// rare is the probability below which bars on a linear axis could not be told from nothing.
+const rare = 0.01
+
+// axis runs from 0 to 1, or over the decades if there are rare fates. A limit alone does not ask for decades.
 func (in *Fates) axis(w float64) axis {
-	least := 1.0
+	least, limit := 1.0, 1.0
 	for _, s := range in.Series {
 		for _, v := range s.Values {
-			if v.P > 0 {
+			switch {
+			case !(v.P >= Faintest):
+			case v.Limit:
+				limit = min(limit, v.P)
+			default:
 				least = min(least, v.P)
 			}
 		}
 	}
 	title := Plain("probability")
-	if least > 0.02 {
+	if least >= rare {
 		return axis{lo: 0, hi: 1, ticks: linearTicks(0, 1, 5), title: title}
 	}
-	lo := math.Pow(10, math.Floor(math.Log10(max(least, 1e-12))-0.3))
+	lo := math.Pow(10, math.Floor(math.Log10(min(least, limit))-0.3))
 	return axis{lo: lo, hi: 1, log: true, ticks: logTicks(lo, 1, w), title: title}
 }
 
-func (in *Fates) hasLimit() bool {
+// below tells whether a probability is too small for a bar on an axis.
+func (v *Probability) below(x axis) bool {
+	return v.P > 0 && (x.log && v.P < max(x.lo, Faintest) || !x.log && (v.P < Faintest || v.Limit && v.P < rare))
+}
+
+// limits tells whether it is drawn as an upper limit.
+func (v *Probability) limits(x axis) bool { return v.Limit && v.P > 0 && !v.below(x) }
+
+// has tells whether some probability is of a kind.
+func (in *Fates) has(x axis, kind func(*Probability, axis) bool) bool {
 	for _, s := range in.Series {
-		for _, v := range s.Values {
-			if v.Limit {
+		for i := range s.Values {
+			if kind(&s.Values[i], x) {
 				return true
 			}
 		}
@@ -186,8 +208,14 @@ func scientific(v float64, digits int) Label {
 	return Markup(fmt.Sprintf("%s×10^{−%d}", decimal(v/math.Pow(10, float64(e)), digits-1), -e))
 }
 
-// probability draws one bar: filled with an error, or open with an arrow to the left for a limit.
+// probability draws one bar: filled with an error, dashed with an arrow to the left for a limit; what is too small
+// for a bar is an open arrow at the foot of the axis with its number.
 func (f *Figure) probability(p *panel, v Probability, y, h float64, series int) {
+	if v.below(p.x) {
+		f.openArrow(p.x0+2.5, y, lineInk(series))
+		f.text(v.label(), p.x0+13, y, textStyle{size: tickSize, ink: inkText, v: 0.5, halo: true})
+		return
+	}
 	k := inkText
 	if math.IsNaN(v.P) {
 		k = inkSoft
@@ -196,8 +224,7 @@ func (f *Figure) probability(p *panel, v Probability, y, h float64, series int) 
 	if math.IsNaN(v.P) || v.P <= 0 {
 		return
 	}
-	end := p.at(max(v.P, p.x.lo), 0).x
-	r := rect{p.x0, y - h/2, max(end, p.x0+0.5), y + h/2}
+	r := rect{p.x0, y - h/2, max(p.at(v.P, 0).x, p.x0+0.5), y + h/2}
 	if v.Limit {
 		f.stroke([]line{{pts: []pt{{r.x0, r.y0}, {r.x1, r.y0}, {r.x1, r.y1}, {r.x0, r.y1}}}},
 			pen{ink: lineInk(series), width: 0.6, dash: []float64{1.6, 1.2}})
@@ -212,6 +239,11 @@ func (f *Figure) probability(p *panel, v Probability, y, h float64, series int) 
 	if v.Err > 0 {
 		f.whisker(p, v.P-v.Err, v.P+v.Err, y, h*0.35)
 	}
+}
+
+// openArrow points to the left with its tip at x.
+func (f *Figure) openArrow(x, y float64, k ink) {
+	f.stroke([]line{{pts: []pt{{x, y}, {x + 6, y + 2.6}, {x + 6, y - 2.6}}, closed: true}}, pen{ink: k, width: 0.8})
 }
 
 // whisker is a horizontal error bar, cut at the ends of the axis.
@@ -232,19 +264,37 @@ func (f *Figure) arrow(from, y, to float64, k ink) {
 	f.fill([]line{{pts: []pt{{to, y}, {to + 4, y + 1.8}, {to + 4, y - 1.8}}, closed: true}}, k, 1)
 }
 
-// key names the series and explains limits above the bars.
+// tooSmall says what an open arrow stands for.
+func (in *Fates) tooSmall(x axis) Label {
+	l := Plain("too small for a bar")
+	if in.has(x, func(v *Probability, x axis) bool { return v.Limit && v.below(x) }) {
+		l = append(append(l, Plain("; <: ")...), in.limit()...)
+	}
+	return l
+}
+
+// limit is what upper limits are.
+func (in *Fates) limit() Label {
+	if in.LimitLevel == nil {
+		return Plain("upper limit")
+	}
+	return in.LimitLevel
+}
+
+// key names the series and explains limits and arrows above the bars.
 func (in *Fates) key(f *Figure, p *panel) {
 	y := p.y1 + 8
-	if in.hasLimit() {
-		l := in.LimitLevel
-		if l == nil {
-			l = Plain("upper limit")
-		}
+	if in.has(p.x, (*Probability).below) {
+		f.openArrow(p.x0+4, y, inkSoft)
+		f.text(in.tooSmall(p.x), p.x0+19, y, textStyle{size: noteSize, ink: inkText, v: 0.5})
+		y += 11
+	}
+	if in.has(p.x, (*Probability).limits) {
 		r := rect{p.x0, y - 2.6, p.x0 + 14, y + 2.6}
 		f.stroke([]line{{pts: []pt{{r.x0, r.y0}, {r.x1, r.y0}, {r.x1, r.y1}, {r.x0, r.y1}}}},
 			pen{ink: inkSoft, width: 0.6, dash: []float64{1.6, 1.2}})
 		f.arrow(r.x1, y, r.x0+2, inkSoft)
-		f.text(l, r.x1+5, y, textStyle{size: noteSize, ink: inkText, v: 0.5})
+		f.text(in.limit(), r.x1+5, y, textStyle{size: noteSize, ink: inkText, v: 0.5})
 		y += 11
 	}
 	if len(in.Series) < 2 {

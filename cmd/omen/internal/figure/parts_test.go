@@ -133,6 +133,53 @@ func TestProbabilityInPrint(t *testing.T) {
 	}
 }
 
+// An axis has decades where there are rare fates to show, and none for limits alone; what it has no room for is an
+// arrow with its number and no bar.
+func TestFatesAxis(t *testing.T) {
+	exact := Probability{P: 7.6e-11}
+	bound := Probability{P: 1e-12, Limit: true}
+	count := Probability{P: 2.1e-4, Limit: true}
+	for _, c := range []struct {
+		values       []Probability
+		log          bool
+		lo           float64
+		bars, arrows int // of probabilities other than none
+		limits       int
+		key          string
+	}{
+		{[]Probability{{P: 0.934}, {P: 0.066}}, false, 0, 2, 0, 0, ""},
+		{[]Probability{{P: 0.934}, {P: 0.066}, count}, false, 0, 2, 1, 0, "too small for a bar; <: upper limit"},
+		{[]Probability{{P: 0.934}, {P: 0.03, Limit: true}}, false, 0, 1, 0, 1, ""},
+		{[]Probability{{P: 1}, exact}, false, 0, 1, 1, 0, "too small for a bar"},
+		{[]Probability{{P: 1}, bound}, false, 0, 1, 1, 0, "too small for a bar; <: upper limit"},
+		{[]Probability{{P: 0.998}, {P: 0.002}, exact, count}, true, 1e-4, 2, 1, 1, "too small for a bar"},
+		{[]Probability{{P: 0.998}, {P: 0.002}, bound, {P: math.NaN()}, {P: 0}}, true, 1e-3, 2, 1, 0, "too small for a bar; <: upper limit"},
+		{[]Probability{{P: 1}, {P: 2e-6}}, true, 1e-6, 2, 0, 0, ""},
+	} {
+		in := Fates{Rows: make([]Label, len(c.values)), Series: []FateSeries{{Values: c.values}}}
+		x := in.axis(200)
+		bars, arrows, limits := 0, 0, 0
+		for _, v := range c.values {
+			switch {
+			case v.below(x):
+				arrows++
+			case v.limits(x):
+				limits++
+			case v.P > 0:
+				bars++
+			}
+		}
+		key := ""
+		if arrows > 0 {
+			key = in.tooSmall(x).String()
+		}
+		if x.log != c.log || math.Abs(x.lo-c.lo) > 1e-9 || bars != c.bars || arrows != c.arrows || limits != c.limits || key != c.key {
+			t.Errorf("%v: log %v from %g, %d bars, %d arrows, %d limits, %q; expected %v from %g, %d, %d, %d, %q",
+				c.values, x.log, x.lo, bars, arrows, limits, key, c.log, c.lo, c.bars, c.arrows, c.limits, c.key)
+		}
+	}
+}
+
 func TestClip(t *testing.T) {
 	r := rect{0, 0, 10, 10}
 	big := []line{{pts: []pt{{-5, -5}, {20, -5}, {20, 20}, {-5, 20}}, closed: true}}

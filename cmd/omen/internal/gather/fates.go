@@ -26,17 +26,13 @@ func (r *Run) Series() []FateSeries {
 	return slices.DeleteFunc(all, func(f FateSeries) bool { return len(f.Fates) == 0 })
 }
 
-// smallest is the probability below which a bar says no more, and below which a
-// fate is left out of the figure unless it is one of the usual three.
-const smallest = 1e-6
-
 // fates is the bar chart of probabilities.
 func (r *Run) fates() (*Picture, error) {
 	series := r.Series()
 	if len(series) == 0 {
 		return absent("no fate was determined"), nil
 	}
-	in := figure.Fates{LimitLevel: figure.Plain("95% upper limit"), Unfinished: r.Unfinished()}
+	in := figure.Fates{LimitLevel: figure.Plain(limitLevel(series)), Unfinished: r.Unfinished()}
 	names := fateRows(series)
 	for _, name := range names {
 		in.Rows = append(in.Rows, figure.Plain(name))
@@ -56,7 +52,7 @@ func (r *Run) fates() (*Picture, error) {
 		}
 		words = append(words, s.Name+": "+strings.Join(list, "; "))
 	}
-	caption := "The probability of each fate with its error. An open bar with an arrow is an upper limit."
+	caption := "The probability of each fate with its error. A dashed bar with an arrow is an upper limit; an open arrow stands for what is too small for a bar."
 	if len(series) > 1 && r.Summary.Averaged != nil {
 		caption += " The nested universes are weighted with their own probabilities; an exactly flat, critical or coasting one has none in the continuous posterior of the fitted family."
 	}
@@ -64,14 +60,27 @@ func (r *Run) fates() (*Picture, error) {
 		draw: func(w figure.Width) (*figure.Figure, error) { return figure.DrawFates(in, w) }}, nil
 }
 
-// fateRows are the fates to show: those that have a probability to speak of in
-// one of the series, and what the fitted family could do.
+// limitLevel is what upper limits are: of 95% where they follow from counts alone; the
+// bound of an integral has no level.
+func limitLevel(series []FateSeries) string {
+	for _, s := range series {
+		for _, f := range s.Fates {
+			if f.Exact && f.Upper95 > 0 {
+				return "upper limit"
+			}
+		}
+	}
+	return "95% upper limit"
+}
+
+// fateRows are the fates to show: those that have a probability large enough for a bar
+// in one of the series, and what the fitted family could do.
 func fateRows(series []FateSeries) []string {
 	var names []string
 	for i, s := range series {
 		for _, f := range s.Fates {
 			possible := i == 0 && (f.Probability > 0 || f.Upper95 > 0)
-			if (possible || f.Probability > smallest) && !slices.Contains(names, f.Name) {
+			if (possible || f.Probability > figure.Faintest) && !slices.Contains(names, f.Name) {
 				names = append(names, f.Name)
 			}
 		}
@@ -88,11 +97,8 @@ func bar(fates []result.Fate, name string) figure.Probability {
 	f := fates[i]
 	text := figure.Markup(Scientific(strings.ReplaceAll(strings.TrimSuffix(report.Probability(f), " (95%)"), " - ", " − "), func(m, e string) string { return m + "10^{" + e + "}" }))
 	p, up := float64(f.Probability), float64(f.Upper95)
-	switch {
-	case p == 0 && up > 0:
-		return figure.Probability{P: max(up, smallest), Limit: true, Text: text}
-	case p > 0 && p < smallest:
-		return figure.Probability{P: smallest, Limit: true, Text: text}
+	if p == 0 && up > 0 {
+		return figure.Probability{P: up, Limit: true, Text: text}
 	}
 	out := figure.Probability{P: p, Text: text}
 	if e := float64(f.Error); e > 0 && e > p/1000 {

@@ -188,6 +188,29 @@ func TestScientific(t *testing.T) {
 	}
 }
 
+// A probability is drawn as what it is: no value is made a limit, and the bound of an
+// integral is none of 95%.
+func TestBar(t *testing.T) {
+	nan := result.Number(math.NaN())
+	for _, c := range []struct {
+		f     result.Fate
+		p     float64
+		limit bool
+		text  string
+		level string
+	}{
+		{result.Fate{Probability: 7.6e-11, Error: 1e-14, Upper95: nan, Exact: true}, 7.6e-11, false, "7.6×10^−11", "95% upper limit"},
+		{result.Fate{Probability: 0, Error: nan, Upper95: 1e-12, Exact: true}, 1e-12, true, "< 10^−12", "upper limit"},
+		{result.Fate{Probability: 0, Error: nan, Upper95: 0.00021}, 0.00021, true, "< 0.00021", "95% upper limit"},
+		{result.Fate{Probability: 0.934, Error: 0.002, Upper95: nan}, 0.934, false, "0.934 ± 0.002", "95% upper limit"},
+	} {
+		list := []result.Fate{c.f}
+		if b, level := bar(list, ""), limitLevel([]FateSeries{{Fates: list}}); b.P != c.p || b.Limit != c.limit || b.Text.String() != c.text || level != c.level {
+			t.Errorf("%+v: bar %+v, %s; expected %+v", c.f, b, level, c)
+		}
+	}
+}
+
 // What cannot be drawn says why.
 func TestAbsent(t *testing.T) {
 	r := &Run{Run: &result.Run{Job: committed(t, "bao-flat.toml")}, Summary: &result.Summary{Complete: true}}
