@@ -181,7 +181,10 @@ func (m *matrix) panel(col, row int, x, y axis) *panel {
 	return &panel{rect{x0, y0, x0 + m.w, y0 + m.h}, x, y}
 }
 
-// diagonal draws the one-dimensional marginal: areas of 68% and 95%, the curve and the prior behind it.
+// diagonal draws the one-dimensional marginal: areas of 68% and 95%, the curve and the prior behind it. The areas
+// are those of highest density, as the regions beside them must be: one key serves both, and where a prior cuts a
+// curve they keep its peak, which a central interval would leave out. Tables have central intervals; the key says
+// which these are.
 func (m *matrix) diagonal(i int) {
 	c, p := m.curves[i], &m.in.Parameters[i]
 	top := 0.0
@@ -290,7 +293,7 @@ func (m *matrix) key() {
 	if n == 1 {
 		return
 	}
-	const height = 62. // of all rows and the margin
+	const height = 67. // of all rows and the margin
 	col := min(n-1, int(math.Ceil(height/(m.h+matrixGap))))
 	x := m.panel(col, 0, axis{}, axis{}).x0 + 6
 	y := m.f.h - 14
@@ -301,14 +304,16 @@ func (m *matrix) key() {
 		f.text(Plain(text), x+16, y, note)
 		y -= 11
 	}
+	f.text(Plain("highest density"), x, y, note)
+	y -= 11
+	for i, u := range m.unitsLeft {
+		f.text(u, x+60, y-11*float64(i), note)
+	}
 	swatch("68%", func(r rect) {
 		f.fill([]line{r.outline()}, fillInk(0), 0.28)
 		f.fill([]line{r.outline()}, fillInk(0), 0.42)
 	})
 	swatch("95%", func(r rect) { f.fill([]line{r.outline()}, fillInk(0), 0.28) })
-	for i, u := range m.unitsLeft {
-		f.text(u, x+60, m.f.h-14-11*float64(i), note)
-	}
 	prior, best := false, false
 	for _, p := range m.in.Parameters {
 		prior, best = prior || p.PriorX != nil, best || finite(p.Best)
