@@ -45,6 +45,9 @@ func DrawConvergence(in Convergence, width Width) (*Figure, error) {
 	height := 14 + rows + lowerRows*(lower+below+above) + below
 	f := newFigure("Convergence of the chain", width, height)
 	left := 38.
+	for i := range in.Traces { // its symbol, and the labels of its axis
+		left = max(left, in.Traces[i].Symbol.measure(titleSize)+6+leftOfAxis(in.traceAxis(i)))
+	}
 	top := f.h - 14
 	for i := range in.Traces {
 		r := rect{left, top - trace, f.w - 8, top}
@@ -90,15 +93,7 @@ func (in *Convergence) check() (steps float64, err error) {
 
 // trace draws one parameter, one line per ensemble.
 func (in *Convergence) trace(f *Figure, r rect, i int, steps float64, last bool) {
-	t := in.Traces[i]
-	lo, hi := math.Inf(1), math.Inf(-1)
-	for _, e := range t.Ensembles {
-		for _, v := range e {
-			lo, hi = min(lo, v), max(hi, v)
-		}
-	}
-	y := padded(lo, hi, 0.05)
-	y.ticks = someTicks(y.lo, y.hi, 2, 2)
+	t, y := in.Traces[i], in.traceAxis(i)
 	x := axis{lo: 0, hi: steps, ticks: linearTicks(0, steps, 6), bare: !last}
 	if last {
 		x.title = Plain("step")
@@ -119,11 +114,24 @@ func (in *Convergence) trace(f *Figure, r rect, i int, steps float64, last bool)
 		f.stroke(clipStroke(envelope(p.path(xs, e)), r), pen{ink: lineInk(k), width: 0.4, alpha: 0.85})
 	}
 	f.axes(p)
-	f.text(t.Symbol, r.x1-2, r.y1-2, textStyle{size: titleSize, ink: inkText, h: 1, v: 1, halo: true})
+	f.text(t.Symbol, r.x0-leftOfAxis(y)-4, (r.y0+r.y1)/2, textStyle{size: titleSize, ink: inkText, h: 1, v: 0.5})
 	if i == 0 {
 		f.text(Plain(fmt.Sprintf("mean of the walkers in each of %d ensembles", len(t.Ensembles))), r.x1-2, r.y1+3,
 			textStyle{size: noteSize, ink: inkSoft, h: 1})
 	}
+}
+
+// traceAxis spans all ensembles of a parameter.
+func (in *Convergence) traceAxis(i int) axis {
+	lo, hi := math.Inf(1), math.Inf(-1)
+	for _, e := range in.Traces[i].Ensembles {
+		for _, v := range e {
+			lo, hi = min(lo, v), max(hi, v)
+		}
+	}
+	y := padded(lo, hi, 0.05)
+	y.ticks = someTicks(y.lo, y.hi, 2, 2)
+	return y
 }
 
 // envelope keeps lowest and highest of the points that share a fifth of a point on the page.

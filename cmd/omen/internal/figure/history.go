@@ -50,6 +50,7 @@ func DrawHistory(in History, width Width) (*Figure, error) {
 	f.curve(p, in.Scale.X, in.Scale.Best, pen{ink: lineInk(0), width: 1.2})
 	taken.lines(p.paths(in.Scale.X, in.Scale.Best), 5)
 	in.today(f, p, taken)
+	in.nameCoasting(f, p, taken)
 	f.axes(p)
 	in.key(f, p, taken)
 	in.moments(f, p, taken)
@@ -82,13 +83,23 @@ func (in *History) coasting(f *Figure, p *panel, taken *occupied) {
 	if in.Coasting == 0 {
 		return
 	}
-	x := []float64{p.x.lo, p.x.hi}
-	y := []float64{1 + in.Coasting*p.x.lo, 1 + in.Coasting*p.x.hi}
+	x, y := in.coastingLine(p)
 	f.curve(p, x, y, pen{ink: inkSoft, width: 0.7, dash: []float64{4, 2}})
-	l := []line{p.path(x, y)}
-	taken.lines(l, 5)
+	taken.lines([]line{p.path(x, y)}, 5)
+}
+
+func (in *History) coastingLine(p *panel) (x, y []float64) {
+	x = []float64{p.x.lo, p.x.hi}
+	return x, []float64{1 + in.Coasting*x[0], 1 + in.Coasting*x[1]}
+}
+
+// nameCoasting writes its name along the line where it crosses nothing else.
+func (in *History) nameCoasting(f *Figure, p *panel, taken *occupied) {
+	if in.Coasting == 0 {
+		return
+	}
 	name := Plain("coasting")
-	l = clipStroke(l, p.rect)
+	l := clipStroke([]line{p.path(in.coastingLine(p))}, p.rect)
 	spots := append(alongLine(l, -1, name.measure(noteSize)), alongLine(l, 1, name.measure(noteSize))...)
 	f.put(taken, name, spots, 0.5)
 }

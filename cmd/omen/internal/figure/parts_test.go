@@ -180,6 +180,68 @@ func TestFatesAxis(t *testing.T) {
 	}
 }
 
+// The symbol of a trace stands left of it, where no trace runs.
+func TestTraceSymbols(t *testing.T) {
+	for _, w := range []Width{Column, Page} {
+		in := convergence()
+		in.Traces[0].Ensembles[0][5] = 1234.56 // a wide label on its axis
+		f, err := DrawConvergence(in, w)
+		if err != nil {
+			t.Fatal(err)
+		}
+		first := math.Inf(1) // of the points of all curves
+		for _, o := range f.ops {
+			if len(o.text) > 0 || len(o.path) == 0 {
+				continue
+			}
+			for _, l := range o.path {
+				if len(l.pts) > 20 {
+					for _, p := range l.pts {
+						first = min(first, p.x)
+					}
+				}
+			}
+		}
+		n := 0
+		for _, o := range f.ops {
+			if len(o.text) == 0 || o.text[0].size != titleSize || o.text[0].text != "Ω" && o.text[0].text != "H" {
+				continue
+			}
+			if b := bounds(o); b.x1 > first || b.x0 < 0 {
+				t.Errorf("%s from %.1f to %.1f, traces begin at %.1f", o.text[0].text, b.x0, b.x1, first)
+			}
+			n++
+		}
+		if n != len(in.Traces) {
+			t.Errorf("%d symbols for %d traces", n, len(in.Traces))
+		}
+	}
+}
+
+// The name of the coasting line keeps clear of today, wherever that is.
+func TestCoastingCrossesNothing(t *testing.T) {
+	for _, end := range []float64{8, 14.2, 22} {
+		x := span(-14.2, end, 100)
+		in := History{Scale: Band{X: x, Best: apply(x, func(float64) float64 { return 2.2 })}, Unit: Plain("Gyr"), Coasting: 1 / 14.2}
+		f, err := DrawHistory(in, Column)
+		if err != nil {
+			t.Fatal(err)
+		}
+		p, err := in.panel(f)
+		if err != nil {
+			t.Fatal(err)
+		}
+		at := p.at(0, 1).x
+		for _, o := range f.ops {
+			if len(o.text) > 0 && o.text[0].text == "coasting" {
+				if b := bounds(o); b.x0 < at && at < b.x1 {
+					t.Errorf("up to %g: the name runs from %.1f to %.1f across today at %.1f", end, b.x0, b.x1, at)
+				}
+			}
+		}
+	}
+}
+
 func TestClip(t *testing.T) {
 	r := rect{0, 0, 10, 10}
 	big := []line{{pts: []pt{{-5, -5}, {20, -5}, {20, 20}, {-5, 20}}, closed: true}}
