@@ -186,8 +186,8 @@ func engine(e result.Engine) string {
 	}
 	s := fmt.Sprintf(" Quadrature beside it: %d evaluations, ln evidence %.2f.", e.Evaluations, float64(e.LogEvidence))
 	if d := e.Largest; d != nil {
-		s += fmt.Sprintf(" The chain differs from it by %.3f of the posterior's width at most (%s of %s), its Monte Carlo error there being %.3f.",
-			float64(d.Widths), d.Statistic, d.Quantity, float64(d.MonteCarlo))
+		s += fmt.Sprintf(" The chain differs from it by %.3f of the posterior's width at most (%s of %s)%s.",
+			float64(d.Widths), d.Statistic, d.Quantity, d.Allowance())
 	}
 	return s
 }

@@ -59,8 +59,8 @@ func engine(b *strings.Builder, s *result.Summary) {
 		fmt.Fprintf(b, "Quadrature: %d evaluations in %.1f s, ln evidence %.2f ± %.0g\n", e.Evaluations, e.Seconds, float64(e.LogEvidence), float64(e.Error))
 	}
 	if d := e.Largest; d != nil {
-		wrap(b, "  ", fmt.Sprintf("the chain differs by %.3f of the width at most (%s, %s), its Monte Carlo error there being %.3f",
-			float64(d.Widths), d.Quantity, d.Statistic, float64(d.MonteCarlo)))
+		wrap(b, "  ", fmt.Sprintf("the chain differs by %.3f of the width at most (%s, %s)%s",
+			float64(d.Widths), d.Quantity, d.Statistic, d.Allowance()))
 	}
 	if s.Sampling.Steps > 0 || e.Evaluations > 0 {
 		b.WriteString("\n")

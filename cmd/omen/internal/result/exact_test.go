@@ -26,6 +26,12 @@ func TestDisagreement(t *testing.T) {
 	if d.Of != "Om, mean" || math.Abs(float64(d.Sigmas)-6) > 1e-6 {
 		t.Errorf("in its own errors %+v", d)
 	}
+	if got := d.Allowance(); got != ", its Monte Carlo error there being 0.020" {
+		t.Errorf("allowance %q", got)
+	}
+	if got := (&Disagreement{MonteCarlo: Number(math.NaN())}).Allowance(); got != "" {
+		t.Errorf("allowance %q of an error that is not known", got)
+	}
 	r := Run{Job: &job.Job{Run: &runfile.Run{}}}
 	w := exactWarnings(r, &Summary{Engine: Engine{Largest: d}})
 	if len(w) != 1 || !strings.Contains(w[0], "chain and quadrature disagree: Om, mean by 6.0") {

@@ -5,6 +5,7 @@ package result
 
 import (
 	"encoding/json"
+	"fmt"
 	"math"
 )
 
@@ -170,6 +171,14 @@ type Disagreement struct {
 	MonteCarlo Number `json:"monte_carlo"` // the chain's standard error of that statistic, likewise
 	Sigmas     Number `json:"sigmas"`      // the largest difference in units of its own standard error, of any statistic
 	Of         string `json:"sigmas_of"`
+}
+
+// Allowance is what a text says of the chain's own error, nothing if that is not known.
+func (d *Disagreement) Allowance() string {
+	if v := float64(d.MonteCarlo); v-v == 0 {
+		return fmt.Sprintf(", its Monte Carlo error there being %.3f", v)
+	}
+	return ""
 }
 
 // Fit is the point of highest posterior density and how good it is.

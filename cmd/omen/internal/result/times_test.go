@@ -4,6 +4,7 @@ import (
 	"math"
 	"os"
 	"path/filepath"
+	"strings"
 	"testing"
 
 	"omen/cmd/omen/internal/exact"
@@ -11,17 +12,18 @@ import (
 	"omen/cmd/omen/internal/outlook"
 	"omen/cmd/omen/internal/runfile"
 	"omen/model"
+	"omen/sampler"
 )
 
-// In a family of w alone the time to a rip is a function of w that grows towards -1, and
-// so its quantiles are those of w, however long its tail.
-func TestTimeWithLongTail(t *testing.T) {
-	file := filepath.Join("..", "..", "..", "..", "testdata", "runs", "bao-flat.toml")
+// committed reads a committed run with settings on top.
+func committed(t *testing.T, name string, sets ...string) *job.Job {
+	t.Helper()
+	file := filepath.Join("..", "..", "..", "..", "testdata", "runs", name)
 	text, err := os.ReadFile(file)
 	if err != nil {
 		t.Fatal(err)
 	}
-	run, err := runfile.Parse(file, text, []string{"universe.dark-energy=w", "prior.w0={ flat = [-3, 0] }", "prior.Om=0.3", "prior.hrd=101.5"})
+	run, err := runfile.Parse(file, text, sets)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -29,6 +31,13 @@ func TestTimeWithLongTail(t *testing.T) {
 	if err != nil {
 		t.Fatal(err)
 	}
+	return j
+}
+
+// In a family of w alone the time to a rip is a function of w that grows towards -1, and
+// so its quantiles are those of w, however long its tail.
+func TestTimeWithLongTail(t *testing.T) {
+	j := committed(t, "bao-flat.toml", "universe.dark-energy=w", "prior.w0={ flat = [-3, 0] }", "prior.Om=0.3", "prior.hrd=101.5")
 	e, err := exact.Integrate(t.Context(), j.Posterior, nil, 0)
 	if err != nil {
 		t.Fatal(err)
@@ -57,5 +66,24 @@ func TestTimeWithLongTail(t *testing.T) {
 		if want := at(q.p); math.Abs(float64(q.got)/want-1) > q.within {
 			t.Errorf("quantile %v: %.4f, want %.4f", q.p, float64(q.got), want)
 		}
+	}
+}
+
+// Ensembles that disagree are told of once, with what they disagree about.
+func TestWarningOfStuckWalkers(t *testing.T) {
+	r := Run{Job: committed(t, "bao-flat.toml")}
+	good := sampler.Convergence{ESS: 5000, RHat: 1.001, Tau: 10}
+	check := &r.Outcome.Check
+	check.Times, check.Parameters = 500, []sampler.Convergence{good, good}
+	if w := chainWarnings(r); len(w) != 0 {
+		t.Errorf("warnings %q", w)
+	}
+	check.Times, check.Parameters[1].ESS = 0, 0
+	if w := chainWarnings(r); len(w) != 1 || !strings.Contains(w[0], "see hrd; most likely there is a second region") {
+		t.Errorf("warnings %q", w)
+	}
+	check.Times, check.Parameters[1].ESS = 350, 3000
+	if w := chainWarnings(r); len(w) != 2 || !strings.Contains(w[0], "below the goal of 4000") || !strings.Contains(w[1], "350 autocorrelation times long, below 400") {
+		t.Errorf("warnings %q", w)
 	}
 }

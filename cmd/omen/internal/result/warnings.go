@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"sort"
+	"strings"
 
 	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/runfile"
@@ -35,6 +36,10 @@ func chainWarnings(r Run) []string {
 	if rhat := check.RHat(); !(rhat < 1.01) {
 		add("R-hat is %.3f, above 1.01: the ensembles disagree; run longer, or look for a second peak", rhat)
 	}
+	if check.ESS() == 0 || check.Times == 0 {
+		add("the ensembles have not seen the same posterior, so that no error can be told: %s; most likely there is a second region that walkers seldom reach or leave, which more steps do not mend: look at the figure of convergence, narrow a prior, or take the integral's numbers if there is one", blame(r))
+		return out
+	}
 	switch goal := float64(r.Job.Run.Sampling.EffectiveSamples); {
 	case math.IsNaN(check.ESS()):
 		add("the effective samples cannot be told from so short a chain: intervals are uncertain; run longer")
@@ -45,6 +50,20 @@ func chainWarnings(r Run) []string {
 		add("the chain is %.0f autocorrelation times long, below %d: Monte Carlo errors may be too small; run longer", math.Floor(check.Times), sampler.Trust)
 	}
 	return out
+}
+
+// blame names the parameters of which no effective samples are known.
+func blame(r Run) string {
+	var names []string
+	for i, p := range r.Outcome.Check.Parameters {
+		if p.ESS == 0 {
+			names = append(names, r.Job.Space.Free()[i].Name)
+		}
+	}
+	if names == nil {
+		return "walkers stay where they are for the whole run"
+	}
+	return "see " + strings.Join(names, ", ")
 }
 
 // tooManySigmas is how many of its standard errors a statistic of the chain may differ
