@@ -165,7 +165,7 @@ func recognise(kind, path, dir string) (*newTable, error) {
 		}
 	}
 	if kind == "supernovae" && found["mu"] == "" && found["mag"] == "" {
-		t.Missing = append(t.Missing, "mag")
+		t.Missing = append(t.Missing, "mu (or mag)")
 	}
 	if kind == "supernovae" && found["z"] != "" {
 		t.Keep = found["z"] + " > 0.01"
@@ -236,10 +236,14 @@ func (run *newRun) write(dir string, survey []byte, stdout io.Writer) error {
 		return err
 	}
 	var said strings.Builder
-	fmt.Fprintf(&said, "%s is ready.\n", report.Printable(run.File))
+	is := "ready"
+	if slices.ContainsFunc(run.Tables, func(t newTable) bool { return t.Missing != nil }) {
+		is = "written, but not complete"
+	}
+	fmt.Fprintf(&said, "%s is %s.\n", report.Printable(run.File), is)
 	for _, t := range run.Tables {
 		for _, m := range t.Missing {
-			fmt.Fprintf(&said, "No column of %s was recognised as %s: fill it in first.\n", t.Path, m)
+			fmt.Fprintf(&said, "No column of %s was recognised as %s: fill it in first (it has %s).\n", t.Path, m, t.Header)
 		}
 	}
 	fmt.Fprintf(&said, "\n  omen inspect %s    what it reads\n  omen fit %s        constraints and fates\n", run.Shown, run.Shown)
