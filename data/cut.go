@@ -37,7 +37,7 @@ func newCut(text string, h headings) (*cut, error) {
 		i := h.index(name)
 		if i < 0 {
 			return nil, &Error{h.file, h.line, name, message("no such column", "a column of this file in the cut "+quoted(text),
-				fmt.Sprintf("did you mean %q?", Nearest(name, h.names)))}
+				meant(name, h.names))}
 		}
 		if !slices.Contains(c.columns, i) {
 			c.columns = append(c.columns, i)

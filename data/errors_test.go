@@ -121,6 +121,8 @@ func TestTableErrors(t *testing.T) {
 			`t.csv: found no row left of 2 by the cut "z > 0.15 && mag > 99", expected at least one; loosen "z > 0.15", which removed 1`},
 		{supernovae, header + "a,0.1,20,0.1\n", Options{Cut: "Z > 0.15"},
 			`t.csv:1: column "Z": found no such column, expected a column of this file in the cut "Z > 0.15"; did you mean "z"?`},
+		{supernovae, header + "a,0.1,20,0.1\n", Options{Cut: "redshift > 0.15"},
+			`t.csv:1: column "redshift": found no such column, expected a column of this file in the cut "redshift > 0.15"; its columns are name, z, mag, mag_err`},
 		{supernovae, header + "a,0.1,20,0.1\n", Options{Cut: `$env["mag-err"] > 0`},
 			`t.csv:1: column "mag-err": found no such column, expected a column of this file in the cut "$env[\"mag-err\"] > 0"; did you mean "mag_err"?`},
 		{supernovae, header + "a,0.1,20,0.1\n", Options{Cut: "z >"},

@@ -2,6 +2,7 @@ package data
 
 import (
 	"cmp"
+	"fmt"
 	"slices"
 	"strings"
 )
@@ -15,6 +16,22 @@ func Nearest(name string, candidates []string) string {
 		return near[0]
 	}
 	return ""
+}
+
+// meant proposes the candidate that resembles a name, or some of them if none does.
+func meant(name string, candidates []string) string {
+	near := byDistance(name, slices.DeleteFunc(slices.Clone(candidates), func(c string) bool { return c == "" }))
+	switch {
+	case len(near) == 0:
+		return "it has none with a name"
+	case distance(name, near[0]) <= farthest:
+		return fmt.Sprintf("did you mean %q?", near[0])
+	}
+	const few = 12
+	if len(near) > few {
+		return fmt.Sprintf("its columns are %s and %d more", strings.Join(near[:few], ", "), len(near)-few)
+	}
+	return "its columns are " + strings.Join(near, ", ")
 }
 
 // byDistance sorts the candidates by their likeness to name.
