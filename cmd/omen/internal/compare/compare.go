@@ -41,6 +41,7 @@ func (r Run) Amiss() []string {
 type Quantity struct {
 	Name, Unit string
 	Values     []*result.Quantity // one for each run
+	Instead    []string           // what a run without a value says: "0, fixed", "not constrained" or nothing
 }
 
 // Comparison is several runs side by side.
@@ -110,18 +111,39 @@ func (c *Comparison) collect() {
 		}
 	}
 	for _, name := range names {
-		q := Quantity{Name: name, Values: make([]*result.Quantity, len(c.Runs))}
+		q := Quantity{Name: name, Values: make([]*result.Quantity, len(c.Runs)), Instead: make([]string, len(c.Runs))}
 		n := 0
 		for i, r := range c.Runs {
 			if v, ok := gather.Find(r.Summary, name); ok && v.Constrained {
 				q.Unit, q.Values[i] = v.Unit, &v
 				n++
+				continue
 			}
+			q.Instead[i] = r.instead(name)
 		}
 		if n > 0 {
 			c.Quantities = append(c.Quantities, q)
 		}
 	}
+}
+
+// instead is what a run says of a quantity that it has no constraint on.
+func (r Run) instead(name string) string {
+	if _, ok := gather.Find(r.Summary, name); ok {
+		return "not constrained"
+	}
+	f := r.Job.Space.Family()
+	v, fixed := f.Fixed[name]
+	switch {
+	case fixed:
+	case name == "Ok" && f.Flat, name == "wa" && f.DarkEnergy != likelihood.W0Wa:
+		v = 0
+	case name == "w0" && f.DarkEnergy == likelihood.Constant:
+		v = -1
+	default:
+		return ""
+	}
+	return fmt.Sprintf("%g, fixed", v)
 }
 
 // Unfinished reports whether a run stopped before its goal.

@@ -61,6 +61,64 @@ func TestShift(t *testing.T) {
 	}
 }
 
+// space is that of a family with flat priors on the named parameters.
+func space(t *testing.T, f likelihood.Family, names ...string) *likelihood.Space {
+	t.Helper()
+	for _, name := range names {
+		prior, err := likelihood.Flat(0, 1)
+		if err == nil && name == "w0" {
+			prior, err = likelihood.Flat(-2, 0)
+		}
+		if err != nil {
+			t.Fatal(err)
+		}
+		f.Free = append(f.Free, likelihood.Parameter{Name: name, Prior: prior})
+	}
+	s, err := likelihood.NewSpace(f)
+	if err != nil {
+		t.Fatal(err)
+	}
+	return s
+}
+
+// A run says what it has in place of a constraint: what it holds fixed, and at which
+// value, what its data do not know, and nothing of what is not in it.
+func TestInstead(t *testing.T) {
+	curved, flat := fake(t, "curved", false, 0.3, 0.03, 4000, "x"), fake(t, "flat", true, 0.31, 0.03, 4000, "x")
+	curved.Job.Space = space(t, likelihood.Family{DarkEnergy: likelihood.W}, "Om", "OL", "w0")
+	for _, name := range []string{"OL", "Ok", "w0", "H0"} {
+		curved.Summary.Parameters = append(curved.Summary.Parameters, result.Quantity{Name: name, Mean: 0.1, SD: 0.02, Median: 0.1,
+			Interval68: [2]result.Number{0.08, 0.12}, Interval95: [2]result.Number{0.06, 0.14}, Constrained: true, CutByPrior: name == "w0"})
+	}
+	flat.Summary.Derived = []result.Quantity{{Name: "OL"}}
+	c := New([]*gather.Run{curved, flat})
+	for i, want := range []string{"", "not constrained", "0, fixed", "-1, fixed", ""} {
+		if q := c.Quantities[i]; q.Instead[1] != want || q.Instead[0] != "" {
+			t.Errorf("%s: %q, expected only the second run to say %q", q.Name, q.Instead, want)
+		}
+	}
+	var text strings.Builder
+	if err := c.Text(&text); err != nil {
+		t.Fatal(err)
+	}
+	for _, want := range []string{"Ok\n  curved  0.100 ± 0.020       0.080 … 0.120       0.060 … 0.140\n  flat    0, fixed\n", "\n  flat    -1, fixed\n"} {
+		if !strings.Contains(text.String(), want) {
+			t.Errorf("the text lacks %q:\n%s", want, text.String())
+		}
+	}
+	for _, want := range []string{`$w_0$ & $0.100 \pm 0.020{}^{*}$ & $-1$, fixed \\`, `\multicolumn{3}{l}{\footnotesize $^{*}$ cut by its prior}\\`} {
+		if tex := string(c.TeX()); !strings.Contains(tex, want) {
+			t.Errorf("the table lacks %q:\n%s", want, tex)
+		}
+	}
+	if got := c.having([2]string{"Om", "OL"}); !slices.Equal(got, []int{0, 1}) {
+		t.Errorf("in the plane of Om and OL are runs %v, expected both, the flat one on its line", got)
+	}
+	if got := New([]*gather.Run{flat, flat}).having([2]string{"Om", "OL"}); got != nil {
+		t.Errorf("flat runs alone have a plane of Om and OL: %v", got)
+	}
+}
+
 func TestShortNames(t *testing.T) {
 	for _, c := range [][2][]string{
 		{{"runs/a", "runs/b"}, {"a", "b"}},

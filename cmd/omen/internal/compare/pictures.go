@@ -28,17 +28,13 @@ func (c *Comparison) Pictures() []*gather.Picture {
 var pairs = [][2]string{{"Om", "OL"}, {"w0", "wa"}, {"Om", "w0"}, {"Om", "H0"}, {"Om", "hrd"}, {"H0", "hrd"}, {"Om", "M"}}
 
 // plane is the regions of all runs that have both of two parameters, the pair
-// that most runs have. It returns the runs in it, too.
+// that most runs have, and the lines of those that are flat. It returns the runs in
+// it, too: in that order.
 func (c *Comparison) plane() (*gather.Picture, []int) {
 	var best [2]string
 	var in []int
 	for _, pair := range pairs {
-		var have []int
-		for i, r := range c.Runs {
-			if r.Has(pair[0]) && r.Has(pair[1]) && len(have) < mostRegions {
-				have = append(have, i)
-			}
-		}
+		have := c.having(pair)
 		if len(have) > max(1, len(in)) {
 			best, in = pair, have
 		}
@@ -48,19 +44,45 @@ func (c *Comparison) plane() (*gather.Picture, []int) {
 	}
 	var runs []*gather.Run
 	var names, values, left []string
+	lines := false
+	for _, i := range in {
+		r := c.Runs[i]
+		runs, names = append(runs, r.Run), append(names, r.Name)
+		values = append(values, r.Name+": "+r.Values(best[0], best[1]))
+		lines = lines || !r.Has(best[1])
+	}
 	for i, r := range c.Runs {
 		if !slices.Contains(in, i) {
 			left = append(left, r.Name)
-			continue
 		}
-		runs, names = append(runs, r.Run), append(names, r.Name)
-		values = append(values, r.Name+": "+r.Values(best[0], best[1]))
 	}
 	caption := fmt.Sprintf("Regions of highest density that hold 68%% and 95%% of the posterior of %s and %s in each run.", best[0], best[1])
+	if lines {
+		caption += " A run in flat space is a line, thick over 68% and thin over 95%."
+	}
 	if len(left) > 0 {
 		caption += " Not shown: " + strings.Join(left, ", ") + "."
 	}
 	return gather.PlaneOf(runs, names, best, caption, "Regions of each run. "+strings.Join(values, "; ")+"."), in
+}
+
+// having are the runs that a plane can show: first those that have both parameters, then,
+// beside such, those whose universes lie on a line of it.
+func (c *Comparison) having(pair [2]string) []int {
+	var both, flat []int
+	for i, r := range c.Runs {
+		switch {
+		case r.Has(pair[0]) && r.Has(pair[1]):
+			both = append(both, i)
+		case r.OnLine(pair):
+			flat = append(flat, i)
+		}
+	}
+	if len(both) == 0 {
+		return nil
+	}
+	in := append(both, flat...)
+	return in[:min(len(in), mostRegions)]
 }
 
 // whiskers is the constraints of all runs side by side, those of the plane first,
@@ -81,7 +103,7 @@ func (c *Comparison) whiskers(first []int) *gather.Picture {
 		symbol, unit := gather.Symbol(q.Name)
 		f := figure.Quantity{Symbol: symbol, Unit: unit}
 		for _, i := range order {
-			v, w := q.Values[i], figure.Constraint{Median: math.NaN()}
+			v, w := q.Values[i], figure.Constraint{Median: math.NaN(), Note: figure.Plain(instead(q.Instead[i]))}
 			if v != nil {
 				w = figure.Constraint{Median: float64(v.Median), Lo68: float64(v.Interval68[0]), Hi68: float64(v.Interval68[1]),
 					Lo95: float64(v.Interval95[0]), Hi95: float64(v.Interval95[1])}
@@ -95,6 +117,14 @@ func (c *Comparison) whiskers(first []int) *gather.Picture {
 		"Median, central 68% interval (thick) and central 95% interval (thin) of each run.",
 		strings.Join(parts, "; ")+".", len(in.Quantities) > 2,
 		func(w figure.Width) (*figure.Figure, error) { return figure.DrawWhiskers(in, w) })
+}
+
+// instead is what stands in place of a bar.
+func instead(said string) string {
+	if said == "" {
+		return "–"
+	}
+	return strings.Replace(said, "-", "−", 1)
 }
 
 // chosen are the quantities to draw: those that several runs have come first.

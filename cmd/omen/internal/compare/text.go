@@ -12,6 +12,7 @@ import (
 	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/draft"
 	"omen/cmd/omen/internal/report"
+	"omen/cmd/omen/internal/result"
 )
 
 // Text writes the comparison for a terminal, at most 80 columns wide.
@@ -36,9 +37,13 @@ func (c *Comparison) Text(w io.Writer) error {
 		}
 		b.WriteString(name + "\n")
 		for i, v := range q.Values {
-			if v != nil {
-				fmt.Fprintf(&b, "  %s  %s %s %s\n", pad(shorten(c.Runs[i].Name, width), width), pad(report.MeanSD(*v), 19),
+			name := pad(shorten(c.Runs[i].Name, width), width)
+			switch {
+			case v != nil:
+				fmt.Fprintf(&b, "  %s  %s %s %s\n", name, pad(report.MeanSD(*v), 19),
 					pad(report.Interval(v.Interval68, v.MCSE68, *v), 19), report.Interval(v.Interval95, v.MCSE95, *v))
+			case q.Instead[i] != "":
+				fmt.Fprintf(&b, "  %s  %s\n", name, q.Instead[i])
 			}
 		}
 	}
@@ -172,16 +177,22 @@ func (c *Comparison) TeX() []byte {
 		b.WriteString(" & " + name)
 	}
 	b.WriteString(" \\\\\n\\midrule\n")
+	var all []result.Quantity
 	for _, q := range c.Quantities {
 		b.WriteString(draft.Name(q.Name, q.Unit))
-		for _, v := range q.Values {
+		for i, v := range q.Values {
 			b.WriteString(" & ")
 			if v != nil {
 				b.WriteString(draft.Estimate(*v))
+				all = append(all, *v)
+			} else if at, ok := strings.CutSuffix(q.Instead[i], ", fixed"); ok {
+				b.WriteString("$" + at + "$, fixed")
+			} else {
+				b.WriteString(q.Instead[i])
 			}
 		}
 		b.WriteString(" \\\\\n")
 	}
-	b.WriteString("\\bottomrule\n\\end{tabular}\n")
+	b.WriteString("\\bottomrule\n" + draft.Notes(all, len(c.Runs)+1) + "\\end{tabular}\n")
 	return b.Bytes()
 }

@@ -180,6 +180,34 @@ func TestFatesAxis(t *testing.T) {
 	}
 }
 
+// Draws on a line become its stretches of highest density: of a Gaussian, one and two standard deviations.
+func TestSetOnLine(t *testing.T) {
+	r := random(40)
+	s := Set{Name: Plain("flat"), Line: true}
+	for range 20000 {
+		x := 0.3 + 0.01*r.NormFloat64()
+		s.X, s.Y = append(s.X, x), append(s.Y, 0.99-x)
+	}
+	o, err := s.outlines(density.NoEdges(), density.NoEdges())
+	if err != nil || len(o.s68) != 1 || len(o.s95) != 1 || o.r68 != nil {
+		t.Fatalf("%+v, %v", o, err)
+	}
+	for _, c := range []struct {
+		got  stretchOf
+		half float64
+	}{{o.s68[0], 0.00994}, {o.s95[0], 0.0196}} {
+		for k, sign := range []float64{-1, 1} {
+			if x, y := c.got.x[k], c.got.y[k]; math.Abs(x-0.3-sign*c.half) > 8e-4 || math.Abs(x+y-0.99) > 1e-12 {
+				t.Errorf("an end at (%g, %g), expected x = %g on x + y = 0.99", x, y, 0.3+sign*c.half)
+			}
+		}
+	}
+	s.Y = s.Y[1:]
+	if _, err := s.outlines(density.NoEdges(), density.NoEdges()); err == nil {
+		t.Error("draws of x and y that are not as many: no error")
+	}
+}
+
 // The symbol of a trace stands left of it, where no trace runs.
 func TestTraceSymbols(t *testing.T) {
 	for _, w := range []Width{Column, Page} {

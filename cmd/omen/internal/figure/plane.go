@@ -16,6 +16,7 @@ type Set struct {
 	ESS     float64          // how many independent draws they are worth; zero if they are independent
 	Density *density.Surface // instead of draws, a density from quadrature
 	Best    *[2]float64      // the best fit, marked by a cross; nil for none
+	Line    bool             // the draws lie on a straight line, which is drawn thick over 68% and thin over 95%
 }
 
 // Divider is a line between two kinds of universe. Walking along it, Left and Right are what lies on either side.
@@ -40,7 +41,12 @@ type outlines struct {
 	name     Label
 	r68, r95 []density.Loop
 	best     *[2]float64
+	// of a set on a line, in place of regions
+	s68, s95 []stretchOf
 }
+
+// stretchOf is a part of a straight line.
+type stretchOf struct{ x, y [2]float64 }
 
 // DrawPlane draws the regions of highest density that hold 68% and 95% of each set.
 func DrawPlane(in Plane, width Width) (*Figure, error) {
@@ -76,13 +82,60 @@ func edges(e density.Edges) density.Edges {
 
 func (s *Set) outlines(ex, ey density.Edges) (outlines, error) {
 	d := s.Density
+	if s.Line {
+		return s.onLine()
+	}
 	if d == nil {
 		var err error
 		if d, err = density.Estimate2(s.X, s.Y, s.Weights, s.ESS, ex, ey); err != nil {
 			return outlines{}, err
 		}
 	}
-	return outlines{s.Name.shorten(100, titleSize), d.Region(0.68), d.Region(0.95), s.Best}, nil
+	return outlines{name: s.Name.shorten(100, titleSize), r68: d.Region(0.68), r95: d.Region(0.95), best: s.Best}, nil
+}
+
+// onLine finds the stretches of highest density of draws on a straight line.
+func (s *Set) onLine() (outlines, error) {
+	c, err := density.Estimate(s.X, s.Weights, s.ESS, density.NoEdges())
+	if err != nil {
+		return outlines{}, err
+	}
+	if len(s.Y) != len(s.X) {
+		return outlines{}, fmt.Errorf("figure: %d draws of x and %d of y", len(s.X), len(s.Y))
+	}
+	lo, hi := 0, 0
+	for i, x := range s.X {
+		if x < s.X[lo] {
+			lo = i
+		}
+		if x > s.X[hi] {
+			hi = i
+		}
+	}
+	y := func(x float64) float64 {
+		return s.Y[lo] + (x-s.X[lo])/(s.X[hi]-s.X[lo])*(s.Y[hi]-s.Y[lo])
+	}
+	stretches := func(mass float64) (out []stretchOf) {
+		for _, v := range c.Intervals(mass) {
+			out = append(out, stretchOf{[2]float64{v.Lo, v.Hi}, [2]float64{y(v.Lo), y(v.Hi)}})
+		}
+		return out
+	}
+	return outlines{name: s.Name.shorten(100, titleSize), best: s.Best, s68: stretches(0.68), s95: stretches(0.95)}, nil
+}
+
+// rim is the points of all outlines of 95%, or of the line.
+func (o *outlines) rim(p *panel) []line {
+	out := loops(p, o.r95)
+	for _, v := range o.s95 {
+		l := line{}
+		for k := range 21 {
+			t := float64(k) / 20
+			l.pts = append(l.pts, p.at(v.x[0]+t*(v.x[1]-v.x[0]), v.y[0]+t*(v.y[1]-v.y[0])))
+		}
+		out = append(out, l)
+	}
+	return out
 }
 
 // panel lays the axes out around the regions.
@@ -108,6 +161,9 @@ func (in *Plane) frame(sets []outlines) (x, y axis) {
 			for _, p := range l {
 				box = rect{min(box.x0, p.X), min(box.y0, p.Y), max(box.x1, p.X), max(box.y1, p.Y)}
 			}
+		}
+		for _, v := range s.s95 {
+			box = rect{min(box.x0, v.x[0]), min(box.y0, v.y[0], v.y[1]), max(box.x1, v.x[1]), max(box.y1, v.y[0], v.y[1])}
 		}
 	}
 	return cutAxis(padded(box.x0, box.x1, 0.18), edges(in.XEdges)), cutAxis(padded(box.y0, box.y1, 0.18), edges(in.YEdges))
@@ -139,11 +195,17 @@ func (in *Plane) draw(f *Figure, p *panel, sets []outlines) {
 			taken.lines([]line{l.closedUp()}, 3)
 		}
 	}
+	key := "regions of 68% and 95%"
 	for i, s := range sets {
 		f.regionLines(p, s, i)
+		if len(s.s95) > 0 {
+			f.stretches(p, s, i)
+			taken.lines(s.rim(p), 5)
+			key = "68% and 95%: regions, lines thick and thin"
+		}
 	}
 	f.axes(p)
-	f.text(Plain("regions of 68% and 95%"), p.x1, p.y1+4, textStyle{size: noteSize, ink: inkSoft, h: 1})
+	f.text(Plain(key), p.x1, p.y1+4, textStyle{size: noteSize, ink: inkSoft, h: 1})
 	in.nameSets(f, p, sets, taken)
 	for _, d := range in.Dividers {
 		f.nameSides(p, d, taken)
@@ -177,6 +239,19 @@ func (f *Figure) regionLines(p *panel, s outlines, series int) {
 	}
 }
 
+// stretches draws a set on a line, on white so that it shows across regions.
+func (f *Figure) stretches(p *panel, s outlines, series int) {
+	draw := func(of []stretchOf, k pen) {
+		for _, v := range of {
+			f.stroke(clipStroke([]line{p.path(v.x[:], v.y[:])}, p.rect), k)
+		}
+	}
+	draw(s.s95, pen{ink: inkPaper, width: 2.4})
+	draw(s.s95, pen{ink: lineInk(series), width: 1.2})
+	draw(s.s68, pen{ink: inkPaper, width: 4.2})
+	draw(s.s68, pen{ink: lineInk(series), width: 3})
+}
+
 // leftSide is the part of the plane to the left of a divider: the line closed around the frame, at a distance.
 func (d *Divider) leftSide(p *panel) line {
 	l := p.path(d.X, d.Y)
@@ -195,7 +270,7 @@ func (d *Divider) leftSide(p *panel) line {
 func (in *Plane) nameSets(f *Figure, p *panel, sets []outlines, taken *occupied) {
 	for i, s := range sets {
 		var spots []spot
-		for _, l := range loops(p, s.r95) {
+		for _, l := range s.rim(p) {
 			for k := 0; k < len(l.pts); k += max(1, len(l.pts)/60) {
 				spots = append(spots, around(l.pts[k], lineInk(i))...)
 			}

@@ -341,7 +341,7 @@ func whiskers() Whiskers {
 			m := []float64{0.31, 0.69, 68}[i]
 			d := m * (0.04 + 0.05*r.Float64())
 			m += d * r.NormFloat64()
-			c := Constraint{m, m - d, m + 1.1*d, m - 2*d, m + 2.3*d}
+			c := Constraint{Median: m, Lo68: m - d, Hi68: m + 1.1*d, Lo95: m - 2*d, Hi95: m + 2.3*d}
 			if name == "H0" && k < 2 {
 				c.Median = math.NaN()
 			}
@@ -357,6 +357,7 @@ func stress() []drawing {
 	long := "a run with a rather long name, cut at z > 0.023 and without the survey"
 	wide := whiskers()
 	wide.Runs[1] = Plain(long)
+	wide.Quantities[2].Runs[0].Note, wide.Quantities[2].Runs[1].Note = Plain("−1, fixed"), Plain("–")
 	for i := range 3 {
 		wide.Quantities = append(wide.Quantities, wide.Quantities[i])
 	}
@@ -374,7 +375,14 @@ func stress() []drawing {
 	fates.Series[0].Values[1] = Probability{P: 1}
 	fates.Series[0].Values[2] = Probability{P: 0}
 	fates.Series[1].Name = Plain(long)
+	line := planeOne()
+	flat := Set{Name: Plain("flat"), Line: true}
+	for _, x := range cloud("", 4000, 0.3, 0.7, 0.02, 0.1, 0.5, 41).X {
+		flat.X, flat.Y = append(flat.X, x), append(flat.Y, 1-x)
+	}
+	line.Sets = append(line.Sets, flat)
 	out := []drawing{
+		{"plane-line", func() (*Figure, error) { return DrawPlane(line, Column) }},
 		{"whiskers-wide", func() (*Figure, error) { return DrawWhiskers(wide, Column) }},
 		{"plane-six", func() (*Figure, error) { return DrawPlane(six, Column) }},
 		{"hubble-bao", func() (*Figure, error) { return DrawHubble(bao, Column) }},

@@ -11,6 +11,7 @@ type Constraint struct {
 	Median     float64
 	Lo68, Hi68 float64
 	Lo95, Hi95 float64
+	Note       Label // in place of a median; nil to say "not constrained"
 }
 
 // Quantity is one column of the comparison: a parameter and what each run says about it.
@@ -142,7 +143,10 @@ func (q *Quantity) draw(f *Figure, r rect, pitch float64) {
 // constraint draws one row.
 func (f *Figure) constraint(p *panel, c Constraint, y float64, run int) {
 	if !finite(c.Median) {
-		none := Plain("not constrained")
+		none := c.Note
+		if none == nil {
+			none = Plain("not constrained")
+		}
 		if none.measure(noteSize) > p.w()+whiskerGap-4 {
 			none = Plain("none")
 		}

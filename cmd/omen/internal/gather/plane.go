@@ -97,18 +97,42 @@ func (r *Run) set(name string, pair [2]string, best []float64) figure.Set {
 // Has reports whether a parameter is free in a run.
 func (r *Run) Has(name string) bool { return index(r.Job.Space, name) >= 0 }
 
-// PlaneOf is several runs in the plane of two parameters that all of them have.
-// The edges of a prior that all of them share are respected.
+// OnLine reports whether the universes of a run lie on a line of the plane of two
+// parameters: those of flat space do in that of Om and OL.
+func (r *Run) OnLine(pair [2]string) bool {
+	return pair == [2]string{"Om", "OL"} && r.Job.Space.Family().Flat && r.Has("Om")
+}
+
+// line is the draws of a run in flat space, on the line that they lie on.
+func (r *Run) line(name string) figure.Set {
+	columns, ess := r.draws(planeDraws)
+	out := figure.Set{Name: figure.Plain(name), X: columns[index(r.Job.Space, "Om")], ESS: ess, Line: true}
+	x := make([]float64, len(columns))
+	for i := range out.X {
+		for k := range x {
+			x[k] = columns[k][i]
+		}
+		out.Y = append(out.Y, r.universe(x).OL)
+	}
+	return out
+}
+
+// PlaneOf is several runs in the plane of two parameters that all of them have, or on a
+// line of which they lie. The edges of a prior that all of them share are respected.
 func PlaneOf(runs []*Run, names []string, pair [2]string, caption, alt string) *Picture {
 	in := figure.Plane{X: axis(pair[0]), Y: axis(pair[1])}
 	var x, y []density.Edges
 	same := true
 	for i, r := range runs {
 		s := r.Job.Space
-		in.Sets = append(in.Sets, r.set(names[i], pair, nil))
 		in.Unfinished = in.Unfinished || r.Unfinished()
+		if r.OnLine(pair) {
+			in.Sets = append(in.Sets, r.line(names[i]))
+			continue
+		}
+		in.Sets = append(in.Sets, r.set(names[i], pair, nil))
 		x, y = append(x, edges(s.Free()[index(s, pair[0])].Prior)), append(y, edges(s.Free()[index(s, pair[1])].Prior))
-		same = same && x[i] == x[0] && y[i] == y[0]
+		same = same && x[len(x)-1] == x[0] && y[len(y)-1] == y[0]
 	}
 	if same {
 		in.XEdges, in.YEdges = x[0], y[0]
@@ -116,7 +140,7 @@ func PlaneOf(runs []*Run, names []string, pair [2]string, caption, alt string) *
 	if pair == [2]string{"Om", "OL"} {
 		of := runs[0]
 		for _, r := range runs {
-			if r.Job.Space.Family().DarkEnergy != likelihood.Constant { // the lines that hold for all
+			if r.Has("OL") && r.Job.Space.Family().DarkEnergy != likelihood.Constant { // the lines that hold for all
 				of = r
 			}
 		}

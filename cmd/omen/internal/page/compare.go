@@ -40,8 +40,8 @@ type inRuns struct {
 }
 
 type inRun struct {
-	Run               string
-	Value, In68, In95 template.HTML
+	Run                        string
+	Instead, Value, In68, In95 template.HTML
 }
 
 type pair struct {
@@ -68,9 +68,12 @@ func Comparison(w io.Writer, c *compare.Comparison, pictures []*gather.Picture, 
 	for _, q := range c.Quantities {
 		rows := inRuns{Symbol: symbol(q.Name), Unit: q.Unit}
 		for i, u := range q.Values {
-			if u != nil {
-				rows.Rows = append(rows.Rows, inRun{c.Runs[i].Name, text(report.MeanSD(*u)),
-					text(report.Interval(u.Interval68, u.MCSE68, *u)), text(report.Interval(u.Interval95, u.MCSE95, *u))})
+			switch {
+			case u != nil:
+				rows.Rows = append(rows.Rows, inRun{Run: c.Runs[i].Name, Value: text(report.MeanSD(*u)),
+					In68: text(report.Interval(u.Interval68, u.MCSE68, *u)), In95: text(report.Interval(u.Interval95, u.MCSE95, *u))})
+			case q.Instead[i] != "":
+				rows.Rows = append(rows.Rows, inRun{Run: c.Runs[i].Name, Instead: text(q.Instead[i])})
 			}
 		}
 		v.Quantities = append(v.Quantities, rows)
