@@ -29,6 +29,9 @@ func Methods(r *gather.Run) []byte {
 	if r.Job.Space.Family().DarkEnergy == likelihood.Constant {
 		b.WriteString("; Carroll, Press & Turner 1992, ARA&A 30, 499, and Felten & Isaacman 1986, RMP 58, 689 (fates)")
 	}
+	if bridged(r.Summary) {
+		b.WriteString("; Meng & Wong 1996, Stat. Sinica 6, 831 (bridge sampling)")
+	}
 	b.WriteString(".\n")
 	if len(r.Summary.Warnings) > 0 {
 		b.WriteString("\nNot for the paper, but before it is sent:\n\n")
@@ -206,6 +209,19 @@ func percent(x float64) string {
 	return digits.Format(math.Ceil(100*x/unit)*unit, int(math.Floor(math.Log10(unit)+0.5))) + "%"
 }
 
+// bridged tells whether an evidence comes from bridge sampling.
+func bridged(s *result.Summary) bool {
+	return slices.ContainsFunc(s.Nested, func(n result.Nested) bool { return n.Method == "bridge sampling" })
+}
+
+// evidences is how they were had.
+func evidences(s *result.Summary) string {
+	if bridged(s) {
+		return ", by quadrature up to three parameters and by bridge sampling beyond or where quadrature is not to be had (Meng & Wong 1996)"
+	}
+	return ", by quadrature"
+}
+
 // fates is how their probabilities were found.
 func fates(s *result.Summary) string {
 	text := "where no sample does, the 95% upper limit is 3 over the effective sample size. "
@@ -221,7 +237,8 @@ func fates(s *result.Summary) string {
 	}
 	if len(s.Nested) > 1 {
 		text += fmt.Sprintf("Exactly flat, critical and empty universes have no volume in the posterior; "+
-			"the %d nested universes are compared by their evidences under the priors above, with the prior odds stated beside the result. ", len(s.Nested))
+			"the %d nested universes are compared by their evidences%s, under the priors above normalised over the universes that are admitted, "+
+			"with the prior odds stated beside the result. ", len(s.Nested), evidences(s))
 	}
 	return text
 }
