@@ -7,6 +7,7 @@ import (
 	"strings"
 
 	"omen/cmd/omen/internal/digits"
+	"omen/cmd/omen/internal/job"
 	"omen/cmd/omen/internal/runfile"
 	"omen/likelihood"
 	"omen/sampler"
@@ -24,6 +25,7 @@ func warnings(r Run, s *Summary, view sampler.View) []string {
 	if r.Chain != nil {
 		out = append(out, chainWarnings(r)...)
 	}
+	out = append(out, condensedWarnings(r.Job)...)
 	out = append(out, exactWarnings(r, s)...)
 	out = append(out, priorWarnings(r, s, view)...)
 	return append(out, fitWarnings(s.Fit)...)
@@ -48,6 +50,18 @@ func chainWarnings(r Run) []string {
 	}
 	if !(check.Times >= sampler.Trust) {
 		add("the chain is %.0f autocorrelation times long, below %d: Monte Carlo errors may be too small; run longer", math.Floor(check.Times), sampler.Trust)
+	}
+	return out
+}
+
+// condensedWarnings are about tables that stand for others: few numbers hold what a
+// family with few parameters takes from many rows, and no more.
+func condensedWarnings(j *job.Job) []string {
+	var out []string
+	for _, t := range j.Tables {
+		if t.Spec.StandsFor != nil && j.Space.Family().DarkEnergy != likelihood.Constant {
+			out = append(out, fmt.Sprintf("%s stands for %d rows: with w free that is good only if it was condensed for it; use the whole table", t.Name, t.Spec.StandsFor.Rows))
+		}
 	}
 	return out
 }

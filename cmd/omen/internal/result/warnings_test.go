@@ -87,3 +87,14 @@ func TestWarningOfStuckWalkers(t *testing.T) {
 		t.Errorf("warnings %q", w)
 	}
 }
+
+// A table condensed for Λ is no table for w.
+func TestWarningOfCondensedTables(t *testing.T) {
+	if w := condensedWarnings(committed(t, "fate.toml")); len(w) != 0 {
+		t.Errorf("warnings %q", w)
+	}
+	w := condensedWarnings(committed(t, "fate.toml", "universe.dark-energy=w", "prior.w0={ flat = [-2, 0] }"))
+	if len(w) != 1 || !strings.Contains(w[0], "Pantheon+ stands for 1590 rows") {
+		t.Errorf("warnings %q", w)
+	}
+}
