@@ -59,21 +59,21 @@ type part struct {
 
 // words is what stands beside a bar, in the order it is read.
 func (u Update) words() []part {
-	parts := []part{{count(float64(u.Steps)) + " steps", count(float64(u.Steps)) + " steps", 4}}
+	parts := []part{{count(float64(u.Steps)) + " steps", count(float64(u.Steps)) + " steps", 5}}
 	add := func(known bool, rank int, long, short string) {
 		if known {
 			parts = append(parts, part{long, short, rank})
 		}
 	}
 	add(known(u.Effective), 1, u.share(" of ")+" effective"+u.slowest(" (%s)"), u.slowest("%s ")+u.share("/"))
-	add(known(u.RHat), 3, fmt.Sprintf("R-hat %.3f", u.RHat), fmt.Sprintf("R %.3f", u.RHat))
+	add(known(u.RHat), 4, fmt.Sprintf("R-hat %.3f", u.RHat), fmt.Sprintf("R %.3f", u.RHat))
 	acc := fmt.Sprintf("%.0f%%", 100*u.Acceptance)
-	add(known(u.Acceptance), 5, acc+" accepted", "acc "+acc)
+	add(known(u.Acceptance), 6, acc+" accepted", "acc "+acc)
 	rate := count(u.EvaluationsPerSecond)
-	add(known(u.EvaluationsPerSecond), 6, rate+" evaluations/s", rate+"/s")
+	add(known(u.EvaluationsPerSecond), 7, rate+" evaluations/s", rate+"/s")
 	left := span(u.Left) + " left"
-	add(u.Left > 0, 2, left, left)
-	add(u.Note != "", 7, u.Note, u.Note)
+	add(u.Left > 0, 3, left, left)
+	add(u.Note != "", 2, u.Note, u.Note)
 	return parts
 }
 
