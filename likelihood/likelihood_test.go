@@ -179,7 +179,7 @@ func TestPriorsAreNormalised(t *testing.T) {
 		must[Prior](t)(Truncated(70, 5, 72, 90)),
 		must[Prior](t)(Truncated(0, 1, 4, 9)),
 	} {
-		lo, hi := p.Box()
+		lo, hi := p.Range()
 		got := quad.Fixed(func(x float64) float64 { return math.Exp(p.LogDensity(x)) }, lo, hi, 400, nil, 0)
 		if math.Abs(got-1) > 1e-6 {
 			t.Errorf("%s integrates to %v", p.String(), got)

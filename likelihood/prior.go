@@ -16,15 +16,19 @@ const (
 	logFlatPrior
 )
 
-// Prior is a normalised one-dimensional prior density on [Lo, Hi]; the normal
-// ones may be unbounded. The zero Prior is not usable; see [Flat], [Normal],
-// [Truncated] and [LogFlat].
+// Prior is a normalised one-dimensional prior density on a finite range. The zero
+// Prior is not usable; see [Flat], [Normal], [Truncated] and [LogFlat].
 type Prior struct {
 	kind     priorKind
 	lo, hi   float64
 	mean, sd float64
 	logNorm  float64 // added to the shape so that the density integrates to one
+	within   string  // the cut of a truncated prior, for String
 }
+
+// normalReach is where normal priors end, in standard deviations: 1e-15 lies beyond.
+// Data that want more contradict the prior, and that shows at its end.
+const normalReach = 8
 
 // Flat is uniform on [lo, hi].
 func Flat(lo, hi float64) (Prior, error) {
@@ -45,7 +49,8 @@ func LogFlat(lo, hi float64) (Prior, error) {
 	return Prior{kind: logFlatPrior, lo: lo, hi: hi, logNorm: -math.Log(math.Log(hi / lo))}, nil
 }
 
-// Normal is Gaussian with the given mean and standard deviation, unbounded.
+// Normal is Gaussian with the given mean and standard deviation, out to eight of
+// these on either side.
 func Normal(mean, sd float64) (Prior, error) {
 	return Truncated(mean, sd, math.Inf(-1), math.Inf(1))
 }
@@ -59,6 +64,10 @@ func Truncated(mean, sd, lo, hi float64) (Prior, error) {
 	if math.IsNaN(lo) || math.IsNaN(hi) || !(lo < hi) {
 		return Prior{}, fmt.Errorf("a prior needs its lower end below its upper end, found [%g, %g]", lo, hi)
 	}
+	within := ""
+	if !math.IsInf(lo, -1) || !math.IsInf(hi, 1) {
+		within = fmt.Sprintf(", within [%g, %g]", lo, hi)
+	}
 	g := distuv.Normal{Mu: mean, Sigma: sd}
 	mass := g.CDF(hi) - g.CDF(lo)
 	if lo > mean { // the other tail keeps its digits
@@ -67,8 +76,9 @@ func Truncated(mean, sd, lo, hi float64) (Prior, error) {
 	if mass < 1e-12 {
 		return Prior{}, fmt.Errorf("the range [%g, %g] lies %.1f standard deviations from the mean of the normal prior [%g, %g]", lo, hi, gap(mean, lo, hi)/sd, mean, sd)
 	}
+	lo, hi = math.Max(lo, mean-normalReach*sd), math.Min(hi, mean+normalReach*sd)
 	norm := -math.Log(sd*math.Sqrt(2*math.Pi)) - math.Log(mass)
-	return Prior{kind: normalPrior, lo: lo, hi: hi, mean: mean, sd: sd, logNorm: norm}, nil
+	return Prior{kind: normalPrior, lo: lo, hi: hi, mean: mean, sd: sd, logNorm: norm, within: within}, nil
 }
 
 func gap(x, lo, hi float64) float64 { return math.Max(lo-x, x-hi) }
@@ -103,17 +113,8 @@ func (p *Prior) LogDensity(x float64) float64 {
 	}
 }
 
-// Range is the support of the prior; its ends may be infinite.
+// Range is the support of the prior.
 func (p *Prior) Range() (lo, hi float64) { return p.lo, p.hi }
-
-// Box is a finite range that holds all of the prior's mass but at most 1e-15:
-// its support, with unbounded normal tails cut at eight standard deviations.
-func (p *Prior) Box() (lo, hi float64) {
-	if p.kind != normalPrior {
-		return p.lo, p.hi
-	}
-	return math.Max(p.lo, p.mean-8*p.sd), math.Min(p.hi, p.mean+8*p.sd)
-}
 
 // Quantile is the inverse of the cumulative distribution, for probabilities in
 // [0, 1]; NaN outside.
@@ -144,11 +145,7 @@ func (p *Prior) String() string {
 	case logFlatPrior:
 		return fmt.Sprintf("flat in the logarithm on [%g, %g]", p.lo, p.hi)
 	}
-	s := fmt.Sprintf("normal, %g ± %g", p.mean, p.sd)
-	if !math.IsInf(p.lo, -1) || !math.IsInf(p.hi, 1) {
-		s += fmt.Sprintf(", within [%g, %g]", p.lo, p.hi)
-	}
-	return s
+	return fmt.Sprintf("normal, %g ± %g", p.mean, p.sd) + p.within
 }
 
 // SD is the standard deviation of the prior. That of a truncated normal prior is

@@ -263,7 +263,7 @@ func (s *Space) logPrior(x []float64) float64 {
 // Box is a finite box that holds the priors' support; see [Prior.Box].
 func (s *Space) Box() (lo, hi []float64) {
 	for i := range s.family.Free {
-		a, b := s.family.Free[i].Prior.Box()
+		a, b := s.family.Free[i].Prior.Range()
 		lo, hi = append(lo, a), append(hi, b)
 	}
 	return lo, hi

@@ -194,16 +194,16 @@ func (e *Posterior) framed(i int) quadrature.Marginal {
 // the parameters are not.
 func (e *Posterior) Fine() bool { return e.frame != nil || e.Space.Dim() < Most }
 
-// Unresolved is the largest error of the probability of a class that is worse than one
-// could quote; 0 if all are known well enough. It is not where the evaluations that are
-// allowed ended before the borders between the classes were found.
+// Unresolved is the largest error of the probability of a class that is no better than
+// that of a chain; 0 if all are known well enough. They are not where the evaluations
+// that are allowed ended before the borders between the classes were found.
 func (e *Posterior) Unresolved() float64 {
 	worst := 0.0
 	for _, c := range e.classes {
 		switch {
 		case math.IsNaN(c.Err):
 			return math.Inf(1)
-		case c.Err > 2e-4+0.01*math.Min(c.Value, 1-c.Value):
+		case c.Err > 2e-3+0.01*math.Min(c.Value, 1-c.Value):
 			worst = math.Max(worst, c.Err)
 		}
 	}

@@ -92,7 +92,7 @@ func worthShowing(d sampler.Draws, shown []sampler.Draws) bool {
 
 // priorCurve tabulates a prior about the posterior.
 func priorCurve(p likelihood.Prior, q result.Quantity) (x, y []float64) {
-	lo, hi := p.Box()
+	lo, hi := p.Range()
 	lo, hi = max(lo, float64(q.Mean-10*q.SD)), min(hi, float64(q.Mean+10*q.SD))
 	x = grid(lo, hi, 200, false)
 	y = make([]float64, len(x))

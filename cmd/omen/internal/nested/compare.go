@@ -101,6 +101,16 @@ func threads(o Options) int {
 	return runtime.GOMAXPROCS(0)
 }
 
+// OddsError says that the odds which were given leave no model that the data allow.
+type OddsError struct{ Err error }
+
+func (e *OddsError) Error() string {
+	return fmt.Sprintf("fates.odds: %v; give a model that the data allow odds above 0", e.Err)
+}
+
+// Unwrap is the cause.
+func (e *OddsError) Unwrap() error { return e.Err }
+
 // weigh turns evidences and odds into probabilities.
 func (c *Comparison) weigh() error {
 	logs, odds := make([]evidence.Estimate, len(c.Models)), make([]float64, len(c.Models))
@@ -109,7 +119,7 @@ func (c *Comparison) weigh() error {
 	}
 	p, err := evidence.Probabilities(logs, odds)
 	if err != nil {
-		return fmt.Errorf("fates.odds: %w; give a model that the data allow odds above 0", err)
+		return &OddsError{err}
 	}
 	for i := range p {
 		c.Models[i].Probability = p[i]

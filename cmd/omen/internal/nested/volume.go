@@ -27,7 +27,7 @@ func Volume(ctx context.Context, space *likelihood.Space) (quadrature.Estimate, 
 	}
 	v := volume{space: space}
 	for i, p := range space.Free() {
-		_, lo := p.Prior.Box()
+		_, lo := p.Prior.Range()
 		v.middle = append(v.middle, p.Prior.Quantile(0.5))
 		if slices.Contains(shape, p.Name) && !math.IsNaN(lo) {
 			v.at = append(v.at, i)
@@ -63,7 +63,7 @@ func (v *volume) integral(ctx context.Context) (quadrature.Estimate, error) {
 	free := v.space.Free()
 	var lo, hi []float64
 	for _, k := range v.at {
-		a, b := free[k].Prior.Box()
+		a, b := free[k].Prior.Range()
 		lo, hi = append(lo, a), append(hi, b)
 	}
 	density := func() quadrature.Density {

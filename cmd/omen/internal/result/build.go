@@ -29,7 +29,8 @@ type Run struct {
 	Exact  *exact.Posterior   // the posterior integrated, if it was; see [Run.Investigate]
 	Nested *nested.Comparison // the nested universes, if they were compared
 
-	givenUp string // why the chain is not accompanied by an integral, though it was asked for
+	givenUp     string // why the chain is not accompanied by an integral, though it was asked for
+	notCompared string // why the nested universes were not, though it was asked for
 }
 
 // Ended says in a word or two why a run is unfinished, nothing if it is not.

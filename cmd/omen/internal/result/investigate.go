@@ -2,6 +2,7 @@ package result
 
 import (
 	"context"
+	"errors"
 	"fmt"
 
 	"omen/cmd/omen/internal/exact"
@@ -34,10 +35,16 @@ func (r *Run) Investigate(ctx context.Context, begin func(what string) (end func
 	}
 	o := nested.Options{Seed: r.Job.Run.Sampling.Seed, Threads: r.Threads, Odds: r.Job.Run.Fates.Odds}
 	c, err := nested.Compare(ctx, r.Job.Posterior, own, o)
-	if err != nil {
-		return quiet(ctx, fmt.Errorf("the nested universes: %w", err))
+	var odds *nested.OddsError
+	switch {
+	case ctx.Err() != nil:
+	case errors.As(err, &odds):
+		return fmt.Errorf("the nested universes: %w", err)
+	case err != nil: // the run itself is as good as without them
+		r.notCompared = fmt.Sprintf("the nested universes were not compared: %v", err)
+	default:
+		r.Nested = c
 	}
-	r.Nested = c
 	return nil
 }
 

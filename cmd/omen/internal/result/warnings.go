@@ -93,8 +93,10 @@ func exactWarnings(r Run, s *Summary) []string {
 		out = append(out, fmt.Sprintf("chain and quadrature disagree: %s by %.1f of its Monte Carlo errors (the largest difference is %.2g widths, in %s, %s); run longer, or look for a second peak",
 			d.Of, float64(d.Sigmas), float64(d.Widths), d.Quantity, d.Statistic))
 	}
-	if r.givenUp != "" {
-		out = append(out, r.givenUp)
+	for _, why := range []string{r.givenUp, r.notCompared} {
+		if why != "" {
+			out = append(out, why)
+		}
 	}
 	if r.Exact != nil {
 		if by := r.Exact.Unresolved(); by > 0 {
@@ -123,7 +125,11 @@ func priorWarnings(r Run, s *Summary, view sampler.View) []string {
 	var out []string
 	for i, free := range r.Job.Space.Free() {
 		q := s.Parameters[i]
+		away := pull(free.Prior, q)
 		switch {
+		case away > contradiction:
+			out = append(out, fmt.Sprintf("%s lies %.1f standard deviations from the mean of its normal prior: data and prior contradict each other, and what both together say means nothing", q.Name, away))
+			continue
 		case !q.Constrained:
 			out = append(out, fmt.Sprintf("%s is not constrained by these data: its 68%% interval is as wide as the prior's; quote no value for it", q.Name))
 			continue
@@ -142,6 +148,19 @@ func priorWarnings(r Run, s *Summary, view sampler.View) []string {
 		out = append(out, cut...)
 	}
 	return out
+}
+
+// contradiction is how many standard deviations of a normal prior the data may pull
+// before they are said to contradict it.
+const contradiction = 4
+
+// pull is how many standard deviations of a normal prior the posterior lies from its
+// mean; 0 of other priors.
+func pull(p likelihood.Prior, q Quantity) float64 {
+	if !p.Informative() {
+		return 0
+	}
+	return math.Abs(float64(q.Mean)-p.Quantile(0.5)) / p.SD()
 }
 
 // edgeDensity is the density at a prior's edge, relative to the peak of a

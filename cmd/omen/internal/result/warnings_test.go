@@ -59,3 +59,21 @@ func TestWarningOfCondensedTables(t *testing.T) {
 		t.Errorf("warnings %q", w)
 	}
 }
+
+// Data that lie far out in a normal prior contradict it.
+func TestWarningOfContradiction(t *testing.T) {
+	r := Run{Job: committed(t, "bao-flat.toml", "prior.Om={ normal = [0.3, 0.001] }", "prior.hrd=101.5", "sampling.engine=quadrature")}
+	if err := r.Investigate(t.Context(), nil); err != nil {
+		t.Fatal(err)
+	}
+	if w := Build(r).Warnings; len(w) != 1 || !strings.Contains(w[0], "decided by its prior") {
+		t.Errorf("in agreement: warnings %q", w)
+	}
+	r = Run{Job: committed(t, "bao-flat.toml", "prior.Om={ normal = [0.4, 0.01] }", "prior.hrd={ flat = [60, 140] }", "sampling.engine=quadrature")}
+	if err := r.Investigate(t.Context(), nil); err != nil {
+		t.Fatal(err)
+	}
+	if w := strings.Join(Build(r).Warnings, "; "); !strings.Contains(w, "standard deviations from the mean of its normal prior: data and prior contradict each other") {
+		t.Errorf("in contradiction: warnings %q", w)
+	}
+}

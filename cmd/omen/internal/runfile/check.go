@@ -240,7 +240,7 @@ func (r *Run) parameter(f *likelihood.Family, name string) error {
 		return err
 	}
 	f.Free = append(f.Free, likelihood.Parameter{Name: name, Prior: prior})
-	lo, hi := prior.Box()
+	lo, hi := prior.Range()
 	if err := r.checkScale(name, hi); err != nil {
 		return err
 	}
