@@ -20,8 +20,9 @@ func (s *Surface) Region(mass float64) []Loop {
 	return s.Contour(level)
 }
 
-// Contour traces where the bilinear surface crosses level, by marching squares (Lorensen & Cline 1987, Comput.
-// Graphics 21, 163, in two dimensions). A ring of cells of no width around the grid, below any level, closes
+// Contour traces where the surface crosses level, by marching squares (Lorensen & Cline 1987, Comput. Graphics 21,
+// 163, in two dimensions). Along the lines of the grid the surface is taken as cubic where four nodes allow it: on a
+// straight line between two a narrow ridge across the grid has steps. A ring of cells of no width around the grid, below any level, closes
 // the outlines along the edges of the domain.
 func (s *Surface) Contour(level float64) []Loop {
 	t := tracer{s: s, level: level, nx: len(s.X) + 2, ny: len(s.Y) + 2}
@@ -147,9 +148,49 @@ func (t *tracer) crossing(e int) Point {
 	if i1 == t.nx-1 || j1 == t.ny-1 {
 		return a
 	}
-	va, vb := t.value(i, j), t.value(i1, j1)
-	f := (t.level - va) / (vb - va)
+	f := t.fraction(i, j, i1-i, j1-j)
 	return Point{a.X + f*(b.X-a.X), a.Y + f*(b.Y-a.Y)}
+}
+
+// fraction is how far along the edge from node (i, j) in direction (di, dj) the level is crossed.
+func (t *tracer) fraction(i, j, di, dj int) float64 {
+	va, vb := t.value(i, j)-t.level, t.value(i+di, j+dj)-t.level
+	linear := va / (va - vb)
+	if i-di < 1 || j-dj < 1 || i+2*di > t.nx-2 || j+2*dj > t.ny-2 {
+		return linear
+	}
+	var at, v [4]float64 // along the edge, which runs from 0 to 1
+	origin, end := t.node(i, j), t.node(i+di, j+dj)
+	for k := range v {
+		p := t.node(i+(k-1)*di, j+(k-1)*dj)
+		at[k] = (p.X - origin.X + p.Y - origin.Y) / (end.X - origin.X + end.Y - origin.Y)
+		v[k] = t.value(i+(k-1)*di, j+(k-1)*dj) - t.level
+	}
+	lo, hi := 0., 1.
+	for range 30 {
+		f := (lo + hi) / 2
+		if (cubic(at, v, f) >= 0) == (va >= 0) {
+			lo = f
+		} else {
+			hi = f
+		}
+	}
+	return (lo + hi) / 2
+}
+
+// cubic is the value at x of the polynomial through four points (Lagrange).
+func cubic(at, v [4]float64, x float64) float64 {
+	sum := 0.0
+	for k := range v {
+		w := v[k]
+		for m := range at {
+			if m != k {
+				w *= (x - at[m]) / (at[k] - at[m])
+			}
+		}
+		sum += w
+	}
+	return sum
 }
 
 func (t *tracer) node(i, j int) Point {

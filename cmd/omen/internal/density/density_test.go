@@ -232,6 +232,13 @@ var planes = []plane{
 		x := r.NormFloat64()
 		return x, 0.5*x*x + 0.3*r.NormFloat64()
 	}, 10000},
+	{"tailed", NoEdges(), NoEdges(), tailed, 10000},
+}
+
+// tailed has a long tail that is narrow. Its logarithm is concave, and so all its regions are convex.
+func tailed(r *rand.Rand) (x, y float64) {
+	x = r.ExpFloat64() + r.ExpFloat64() + r.ExpFloat64()
+	return x, x + 0.3*r.NormFloat64()
 }
 
 // The mass of a region is measured with fresh draws, through the contour itself.
@@ -286,6 +293,46 @@ func TestRegionShape(t *testing.T) {
 			t.Errorf("%d outlines of area %g at %g, want one of %g", len(loops), got, m, want)
 		}
 	}
+}
+
+// Outlines of convex regions turn once; those of draws fray where these are few.
+func TestSmoothOutlines(t *testing.T) {
+	const sets, n = 4, 14000
+	for mass, most := range map[float64]float64{0.68: 1.2, 0.95: 1.4} {
+		turns := 0.0
+		for seed := range sets {
+			r := rand.New(rand.NewPCG(uint64(seed), 6))
+			x, y := make([]float64, n), make([]float64, n)
+			for i := range x {
+				x[i], y[i] = tailed(r)
+			}
+			s, err := Estimate2(x, y, nil, 0, NoEdges(), NoEdges())
+			if err != nil {
+				t.Fatal(err)
+			}
+			for _, l := range s.Region(mass) {
+				turns += turning(l) / sets
+			}
+		}
+		if turns > most {
+			t.Errorf("outlines of %g turn %.2f times, at most %g allowed", mass, turns, most)
+		}
+	}
+}
+
+// turning is how often an outline turns around, either way, along and across the narrow direction of tailed.
+func turning(l Loop) float64 {
+	sum, last := 0.0, math.NaN()
+	for i := range len(l) + 1 {
+		p, q := l[i%len(l)], l[(i+1)%len(l)]
+		dx, dy := q.X-p.X, q.Y-p.Y
+		angle := math.Atan2((dy-dx)/0.3, (dx+dy)/4)
+		if !math.IsNaN(last) {
+			sum += math.Abs(math.Remainder(angle-last, 2*math.Pi))
+		}
+		last = angle
+	}
+	return sum / (2 * math.Pi)
 }
 
 func area(loops []Loop) float64 {

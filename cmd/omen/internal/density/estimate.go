@@ -86,8 +86,9 @@ func estimate2(x, y, w []float64, wsum, ess float64, ax, ay axis, shape sym2) (*
 		if size < finestNodes && kernel.inUnits(ax.dx, ay.dx).narrow() < 1.2*1.2 {
 			continue
 		}
+		wide := max(h, min(2*h, 2*reach))
 		// Below about one node per standard deviation the sampled kernel would ring.
-		p, self := f.smooth(kernel.atLeast(0.9*ax.dx, 0.9*ay.dx), ess)
+		p, self := f.adapted(kernel.atLeast(0.9*ax.dx, 0.9*ay.dx), shape.scaled(wide*wide).atLeast(0.9*ax.dx, 0.9*ay.dx), ess)
 		return &Surface{X: ax.nodes(), Y: ay.nodes(), P: p}, self
 	}
 }

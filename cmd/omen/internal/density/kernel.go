@@ -187,6 +187,35 @@ func transpose(z []complex128, n int) {
 // fewer the estimate goes over to the plain one, or noise would fray the outlines where they meet an edge.
 const fewDraws = 10
 
+// manyDraws is how many draws under a kernel draw the outlines steadily. A kernel that suits the whole density has
+// fewer in the tails: with 14,000 draws of a Gaussian 900 at the peak, but 45 at the outline of 95%, which then frays.
+const manyDraws = 150
+
+// adapted smooths with the kernel k where it has many draws and goes over to a wider one where it has few, as their
+// own density says. The wider one would put more than is there into the tails; it is scaled so that they keep what k
+// gives them. Regions hold what they should in any case, for levels are calibrated on the draws.
+func (f *field) adapted(k, wide sym2, ess float64) (p, self []float64) {
+	p, self = f.smooth(k, ess)
+	wideP, wideSelf := f.smooth(wide, ess)
+	under := ess * 4 * math.Pi * math.Sqrt(k.det())
+	trust := make([]float64, len(p)) // in k
+	few, fewWide := 0., 0.
+	for i := range p {
+		trust[i] = 1 / (1 + math.Pow(manyDraws/max(under*wideP[i], 1e-9), 4))
+		few += (1 - trust[i]) * p[i]
+		fewWide += (1 - trust[i]) * wideP[i]
+	}
+	scale := 1.
+	if fewWide > 0 {
+		scale = few / fewWide
+	}
+	for i, t := range trust {
+		p[i] = t*p[i] + (1-t)*scale*wideP[i]
+		self[i] = t*self[i] + (1-t)*scale*wideSelf[i]
+	}
+	return p, self
+}
+
 // smooth convolves with the Gaussian of covariance k the draws worth ess independent ones; see smooth1 for the
 // results.
 func (f *field) smooth(k sym2, ess float64) (p, self []float64) {
