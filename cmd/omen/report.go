@@ -19,6 +19,7 @@ import (
 	"omen/cmd/omen/internal/figure"
 	"omen/cmd/omen/internal/gather"
 	"omen/cmd/omen/internal/page"
+	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
 	"omen/data"
 
@@ -159,7 +160,7 @@ func writeReport(r *gather.Run, o reportOptions) (string, error) {
 	b.WriteString(told(r.Dir, files))
 	for _, p := range pictures {
 		if p.Why != "" && o.wants(p.Name) {
-			fmt.Fprintf(&b, "  no figure %s: %s\n", p.Name, p.Why)
+			report.Wrap(&b, "  ", "no figure "+p.Name+": "+p.Why)
 		}
 	}
 	return b.String(), nil
@@ -204,14 +205,14 @@ func told(dir string, files []file) string {
 			formats = append(formats, ext[1:])
 		}
 	}
-	s := ""
+	var b strings.Builder
 	if len(texts) > 0 {
-		s += fmt.Sprintf("In %s: %s\n", dir, strings.Join(texts, ", "))
+		wrap(&b, "In "+dir+":", strings.Join(texts, ", "))
 	}
 	if len(figures) > 0 {
-		s += fmt.Sprintf("In %s: %s (%s)\n", filepath.Join(dir, "figures"), strings.Join(figures, ", "), strings.Join(formats, ", "))
+		wrap(&b, "In "+filepath.Join(dir, "figures")+":", strings.Join(figures, ", ")+" ("+strings.Join(formats, ", ")+")")
 	}
-	return s
+	return b.String()
 }
 
 // render makes all files in memory, several at a time.

@@ -10,6 +10,7 @@ import (
 	"path/filepath"
 	"strings"
 	"time"
+	"unicode/utf8"
 
 	"omen/cmd/omen/internal/chainfile"
 	"omen/cmd/omen/internal/explore"
@@ -74,16 +75,17 @@ func describe(dir string, state chainfile.State) (string, error) {
 	u.Note = ""
 	var b strings.Builder
 	fmt.Fprintf(&b, "%s: %s\n", dir, how)
-	wrap(&b, u.String())
+	wrap(&b, " ", u.String())
 	fmt.Fprintf(&b, "  last made safe: step %d, %s\n", state.Step, synced(dir))
 	return b.String(), nil
 }
 
-// wrap writes a list, broken after its commas, in lines of at most 80 columns.
-func wrap(b *strings.Builder, text string) {
-	line := " "
+// wrap writes a list behind a beginning, broken after its commas, in lines of at most
+// 80 columns.
+func wrap(b *strings.Builder, beginning, text string) {
+	line := beginning
 	for _, item := range strings.SplitAfter(text, ", ") {
-		if len(line)+len(strings.TrimSpace(item)) > 79 && line != " " {
+		if utf8.RuneCountInString(line+strings.TrimSpace(item)) > 79 && line != beginning {
 			fmt.Fprintf(b, "%s\n", strings.TrimRight(line, " "))
 			line = "   "
 		}

@@ -189,7 +189,7 @@ func (f *Fitted) integrate(ctx context.Context, p *likelihood.Posterior, o Optio
 	e, err := exact.Integrate(ctx, p, nil, o.Threads)
 	switch {
 	case exact.NoSupport(err):
-		f.rule("no universe within the priors makes a prediction for these data")
+		f.rule("within the priors it makes no prediction")
 		return nil
 	case err != nil:
 		return err
@@ -212,7 +212,7 @@ func (f *Fitted) bridge(ctx context.Context, p *likelihood.Posterior, own Own, o
 	if drawn == nil {
 		if drawn, f.Best, err = explore(ctx, p, o); err != nil {
 			if errors.Is(err, errNowhere) {
-				f.rule("no universe within the priors makes a prediction for these data")
+				f.rule("within the priors it makes no prediction")
 				return nil
 			}
 			return err

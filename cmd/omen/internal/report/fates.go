@@ -69,10 +69,10 @@ func explain(b *strings.Builder, s *result.Summary) {
 	if s.Averaged == nil {
 		return
 	}
-	wrap(b, "  ", "over nested: averaged over the nested universes below, "+Odds(s.Nested))
+	Wrap(b, "  ", "over nested: averaged over the nested universes below, "+Odds(s.Nested))
 	if slices.ContainsFunc(s.Averaged.Fates, func(f result.Fate) bool { _, here := find(s.Fates, f.Name); return !here }) ||
 		slices.ContainsFunc(s.Averaged.Today, func(f result.Fate) bool { _, here := find(s.Today, f.Name); return !here }) {
-		wrap(b, "  ", "0: such universes are a point or a line in this run's family, and have no share of it")
+		Wrap(b, "  ", "0: such universes are a point or a line in this run's family, and have no share of it")
 	}
 	b.WriteString("\n")
 }
@@ -173,7 +173,7 @@ func nested(b *strings.Builder, models []result.Nested) {
 			aic, bic = math.Min(aic, float64(m.AIC)), math.Min(bic, float64(m.BIC))
 		}
 	}
-	fmt.Fprintf(b, "%-19s %5s %9s %8s %8s %13s  %s\n", "Nested universes", "free", "chi²", "ΔAIC", "ΔBIC", "ln Bayes", "probability")
+	fmt.Fprintf(b, "%-19s %5s %9s %8s %8s %14s  %s\n", "Nested universes", "free", "chi²", "ΔAIC", "ΔBIC", "ln Bayes", "probability")
 	for _, m := range models {
 		name := m.Words
 		if m.Own {
@@ -183,7 +183,7 @@ func nested(b *strings.Builder, models []result.Nested) {
 			line(b, fmt.Sprintf("  %s %5d  %s", pad(name, 17), m.Parameters, "cannot be: "+m.Ruled))
 			continue
 		}
-		line(b, fmt.Sprintf("  %s %5d %9.2f %8.2f %8.2f %13s  %s", pad(name, 17), m.Parameters, float64(m.Chi2),
+		line(b, fmt.Sprintf("  %s %5d %9.2f %8.2f %8.2f %14s  %s", pad(name, 17), m.Parameters, float64(m.Chi2),
 			float64(m.AIC)-aic, float64(m.BIC)-bic, bayes(m), modelProbability(m)))
 	}
 	b.WriteString("  * this run's family; ln Bayes is against the best\n\n")
@@ -205,7 +205,11 @@ func modelProbability(m result.Nested) string {
 	if m.Odds == 0 {
 		return "– (odds 0)"
 	}
-	return Probability(result.Fate{Probability: max(m.Probability, math.SmallestNonzeroFloat64), Error: m.ProbabilityErr, Upper95: result.Number(math.NaN())})
+	f := result.Fate{Probability: max(m.Probability, math.SmallestNonzeroFloat64), Error: m.ProbabilityErr, Upper95: result.Number(math.NaN())}
+	if p, err := float64(f.Probability), float64(f.Error); err > 0 && err < 0.05*p { // there is no room for both
+		return digits.Format(p, digits.MonteCarlo(err))
+	}
+	return Probability(f)
 }
 
 // priors writes what other priors would change.
@@ -223,7 +227,7 @@ func priors(b *strings.Builder, s *result.Summary) {
 	}
 	if len(same) > 0 {
 		b.WriteString("Other priors\n")
-		wrap(b, "  ", strings.Join(same, " or ")+": the same density as this prior, for the map is linear; only where the ranges end could differ")
+		Wrap(b, "  ", strings.Join(same, " or ")+": the same density as this prior, for the map is linear; only where the ranges end could differ")
 		b.WriteString("\n")
 	}
 }
@@ -240,7 +244,7 @@ func changed(b *strings.Builder, s *result.Summary, p result.Prior) {
 	fates(b, title, join(p.Fates, p.Today), join(p.Averaged.Fates, p.Averaged.Today))
 	fates(b, title+", w held", p.Held, p.Averaged.FatesHeldW)
 	if p.Effective < 0.2 {
-		wrap(b, "  ", fmt.Sprintf("the reweighting leaves %.0f%% of the sample effective: take these as rough", 100*float64(p.Effective)))
+		Wrap(b, "  ", fmt.Sprintf("the reweighting leaves %.0f%% of the sample effective: take these as rough", 100*float64(p.Effective)))
 		b.WriteString("\n")
 	}
 }

@@ -11,13 +11,13 @@ import (
 
 func fit(b *strings.Builder, s *result.Summary) {
 	f := s.Fit
-	wrap(b, "", fmt.Sprintf("Best fit: chi² %.2f, %s, %s, probability %s",
+	Wrap(b, "", fmt.Sprintf("Best fit: chi² %.2f, %s, %s, probability %s",
 		float64(f.Chi2), digits.Count(f.Rows, "row"), digits.Count(f.DoF, "degree of freedom"), chance(float64(f.Probability))))
 	var best []string
 	for _, q := range s.Parameters {
 		best = append(best, q.Name+" "+Best(q, f.Best[q.Name]))
 	}
-	wrap(b, "  ", "at "+strings.Join(best, ", "))
+	Wrap(b, "  ", "at "+strings.Join(best, ", "))
 	if len(f.Tables) > 1 {
 		for _, t := range f.Tables {
 			fmt.Fprintf(b, "  %s chi² %8.2f for %s\n", pad(Printable(t.Name), 30), float64(t.Chi2), digits.Count(t.Rows, "row"))
@@ -59,7 +59,7 @@ func engine(b *strings.Builder, s *result.Summary) {
 		fmt.Fprintf(b, "Quadrature: %d evaluations in %.1f s, ln evidence %.2f ± %.0g\n", e.Evaluations, e.Seconds, float64(e.LogEvidence), float64(e.Error))
 	}
 	if d := e.Largest; d != nil {
-		wrap(b, "  ", fmt.Sprintf("the chain differs by %.3f of the width at most (%s, %s)%s",
+		Wrap(b, "  ", fmt.Sprintf("the chain differs by %.3f of the width at most (%s, %s)%s",
 			float64(d.Widths), d.Quantity, d.Statistic, d.Allowance()))
 	}
 	if s.Sampling.Steps > 0 || e.Evaluations > 0 {

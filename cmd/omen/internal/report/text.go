@@ -94,8 +94,8 @@ func Ends(ends, mcse [2]result.Number, q result.Quantity) (lo, hi string) {
 	return digits.Format(float64(ends[0]), place), digits.Format(float64(ends[1]), place)
 }
 
-// wrap writes words in lines of at most 80 columns, the later ones indented.
-func wrap(b *strings.Builder, indent, text string) {
+// Wrap writes words in lines of at most 80 columns, the later ones indented.
+func Wrap(b *strings.Builder, indent, text string) {
 	line := indent
 	for i, word := range strings.Fields(text) {
 		switch {
@@ -122,7 +122,7 @@ func list(b *strings.Builder, title string, items []string) {
 	}
 	b.WriteString(title + "\n")
 	for _, item := range items {
-		wrap(b, "  ", Printable(item))
+		Wrap(b, "  ", Printable(item))
 	}
 	b.WriteString("\n")
 }
