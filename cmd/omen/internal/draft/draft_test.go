@@ -48,6 +48,22 @@ func TestEstimate(t *testing.T) {
 	}
 }
 
+// A time is a median, with one error where those on the two sides are alike.
+func TestWhen(t *testing.T) {
+	for _, c := range []struct {
+		median, lo, hi, mcse result.Number
+		want                 string
+	}{
+		{0.95571, 0.94802, 0.96331, 1e-5, `0.9557 \pm 0.0076`},
+		{0.741, 0.666, 0.79, 1e-4, `0.741^{+0.049}_{-0.075}`},
+		{11.2, 5.1, 45.3, 0.4, `11^{+34}_{-6}`},
+	} {
+		if got := when(result.Time{Median: c.median, Interval68: [2]result.Number{c.lo, c.hi}, MCSE: c.mcse}); got != c.want {
+			t.Errorf("%g in [%g, %g]: %s, expected %s", c.median, c.lo, c.hi, got, c.want)
+		}
+	}
+}
+
 // A table says which of its values are medians, and what its mark means, if it has such.
 func TestNotes(t *testing.T) {
 	even, uneven := quantity(0.3, 0.011, 0.011, 0.011, 1e-4), quantity(-0.431, 0.27, 0.32, 0.23, 0.004)

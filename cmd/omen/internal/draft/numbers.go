@@ -93,8 +93,11 @@ func (m *macros) fates(s *result.Summary) {
 // when is a time as a median with errors.
 func when(t result.Time) string {
 	up, down := float64(t.Interval68[1]-t.Median), float64(t.Median-t.Interval68[0])
-	e := estimate{float64(t.Median), up, down, false, digits.Place((up+down)/2, float64(t.MCSE))}
-	e.symmetric = digits.Format(up, e.place) == digits.Format(down, e.place)
+	half := (up + down) / 2
+	e := estimate{float64(t.Median), up, down, false, digits.Place(half, float64(t.MCSE))}
+	if math.Abs(up-down) <= lopsided*half || digits.Format(up, e.place) == digits.Format(down, e.place) {
+		e.symmetric, e.up = true, half
+	}
 	return e.tex()
 }
 

@@ -6,6 +6,7 @@ import (
 	"slices"
 	"strconv"
 	"strings"
+	"unicode/utf8"
 
 	"omen/cmd/omen/internal/digits"
 	"omen/cmd/omen/internal/result"
@@ -184,7 +185,7 @@ func nested(b *strings.Builder, models []result.Nested) {
 			continue
 		}
 		line(b, fmt.Sprintf("  %s %5d %9.2f %8.2f %8.2f %14s  %s", pad(name, 17), m.Parameters, float64(m.Chi2),
-			float64(m.AIC)-aic, float64(m.BIC)-bic, bayes(m), modelProbability(m)))
+			float64(m.AIC)-aic, float64(m.BIC)-bic, bayes(m), inRoom(modelProbability(m))))
 	}
 	b.WriteString("  * this run's family; ln Bayes is against the best\n\n")
 }
@@ -205,11 +206,16 @@ func modelProbability(m result.Nested) string {
 	if m.Odds == 0 {
 		return "– (odds 0)"
 	}
-	f := result.Fate{Probability: max(m.Probability, math.SmallestNonzeroFloat64), Error: m.ProbabilityErr, Upper95: result.Number(math.NaN())}
-	if p, err := float64(f.Probability), float64(f.Error); err > 0 && err < 0.05*p { // there is no room for both
-		return digits.Format(p, digits.MonteCarlo(err))
+	return Probability(result.Fate{Probability: max(m.Probability, math.SmallestNonzeroFloat64), Error: m.ProbabilityErr, Upper95: result.Number(math.NaN())})
+}
+
+// inRoom is a probability in at most ten columns: with the digits that its error leaves it,
+// and the error itself where there is room.
+func inRoom(text string) string {
+	if p, _, ok := strings.Cut(text, " ± "); ok && utf8.RuneCountInString(text) > 10 {
+		return p
 	}
-	return Probability(f)
+	return text
 }
 
 // priors writes what other priors would change.

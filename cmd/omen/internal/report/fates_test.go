@@ -4,6 +4,7 @@ import (
 	"math"
 	"strings"
 	"testing"
+	"unicode/utf8"
 
 	"omen/cmd/omen/internal/outlook"
 	"omen/cmd/omen/internal/result"
@@ -106,6 +107,30 @@ func TestNestedTable(t *testing.T) {
 `
 	if diff := cmp.Diff(want, b.String()); diff != "" {
 		t.Error(diff)
+	}
+}
+
+// Probabilities of nested universes keep their digits, however small they are, and give up
+// their error where a line would pass 80 columns. On the page and in LaTeX it stands.
+func TestNestedProbability(t *testing.T) {
+	for _, c := range []struct {
+		p, e          result.Number
+		want, inTable string
+	}{
+		{6.6e-69, 1e-72, "< 1e-12", "< 1e-12"},
+		{0.91056, 1e-6, "0.9106", "0.9106"},
+		{0.0654, 0.0002, "0.0654 ± 0.0002", "0.0654"},
+		{0.5, 0.2, "0.5 ± 0.2", "0.5 ± 0.2"},
+		{1 - 1.1e-8, 1e-11, "1 - 1.1e-8", "1 - 1.1e-8"},
+	} {
+		m := result.Nested{Words: "flat, w0-wa", Own: true, Parameters: 4, Odds: 1, Probability: c.p, ProbabilityErr: c.e, Chi2: 91416.45, AIC: 91424.45,
+			BIC: 91434.45, LogBayesFactor: -1.393, BayesError: 0.012}
+		var b strings.Builder
+		nested(&b, []result.Nested{m, m})
+		line := strings.Split(b.String(), "\n")[1]
+		if ModelProbability(m) != c.want || !strings.HasSuffix(line, "  "+c.inTable) || utf8.RuneCountInString(line) > 80 {
+			t.Errorf("%v ± %v: %q, in the table\n%s\nexpected %q and %q", c.p, c.e, ModelProbability(m), line, c.want, c.inTable)
+		}
 	}
 }
 

@@ -26,10 +26,10 @@ func fit(b *strings.Builder, s *result.Summary) {
 	b.WriteString("\n")
 }
 
-// Best writes a quantity at the best fit with two digits more than its spread asks for:
-// it comes from an optimiser and has no Monte Carlo error.
+// Best writes a quantity at the best fit with one digit more than its spread asks for: it
+// comes from an optimiser and has no Monte Carlo error.
 func Best(q result.Quantity, at result.Number) string {
-	return digits.Format(float64(at), digits.Place(float64(q.SD), 0)-2)
+	return digits.Format(float64(at), digits.Place(float64(q.SD), 0)-1)
 }
 
 func chance(p float64) string {
