@@ -73,7 +73,7 @@ func explain(b *strings.Builder, s *result.Summary) {
 	Wrap(b, "  ", "over nested: averaged over the nested universes below, "+Odds(s.Nested))
 	if slices.ContainsFunc(s.Averaged.Fates, func(f result.Fate) bool { _, here := find(s.Fates, f.Name); return !here }) ||
 		slices.ContainsFunc(s.Averaged.Today, func(f result.Fate) bool { _, here := find(s.Today, f.Name); return !here }) {
-		Wrap(b, "  ", "0: such universes are a point or a line in this run's family, and have no share of it")
+		Wrap(b, "  ", "0: such universes have no volume in this run's family")
 	}
 	b.WriteString("\n")
 }

@@ -80,7 +80,7 @@ func TestExplain(t *testing.T) {
 			"  over nested: averaged over the nested universes below, at equal prior odds\n\n"},
 		{[]result.Nested{flat, half}, &result.Averaged{Fates: []result.Fate{rip, critical}},
 			"  over nested: averaged over the nested universes below, at prior odds of 1 for\n    flat, Λ, 0.5 for curved, Λ\n" +
-				"  0: such universes are a point or a line in this run's family, and have no\n    share of it\n\n"},
+				"  0: such universes have no volume in this run's family\n\n"},
 	} {
 		var b strings.Builder
 		explain(&b, &result.Summary{Fates: []result.Fate{rip}, Averaged: c.averaged, Nested: c.nested})
