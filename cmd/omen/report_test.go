@@ -125,7 +125,7 @@ func TestReportOfAFolderIsThatOfTheRun(t *testing.T) {
 		t.Errorf("report printed %q, fit ended with\n%s", out, said)
 	}
 	for _, want := range []string{"report.html, constraints.tex, fates.tex, numbers.tex, methods.md, constraints.csv", "hubble, plane, marginals, history, fates, convergence (pdf, svg)"} {
-		if !strings.Contains(out, want) {
+		if !strings.Contains(unwrapped(out), want) {
 			t.Errorf("report printed %q, without %q", out, want)
 		}
 	}
@@ -447,7 +447,7 @@ func TestReportWithoutChain(t *testing.T) {
 	}
 	out, _ := must(t, 0, "", "report", dir)
 	for _, want := range []string{"hubble, marginals, history, fates (pdf, svg)", "no figure convergence: the posterior was integrated"} {
-		if !strings.Contains(out, want) {
+		if !strings.Contains(unwrapped(out), want) {
 			t.Errorf("report printed %q, without %q", out, want)
 		}
 	}
@@ -496,3 +496,6 @@ func TestReportCompiles(t *testing.T) {
 		t.Fatalf("pdflatex: %v\n%s", err, out)
 	}
 }
+
+// unwrapped is text without its line breaks.
+func unwrapped(text string) string { return strings.Join(strings.Fields(text), " ") }

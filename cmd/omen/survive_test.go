@@ -462,7 +462,7 @@ func TestReportsAreTheSame(t *testing.T) {
 	dir, want := filepath.Join(base, "run"), filepath.Join(base, "undisturbed")
 	must(t, 0, "", fitting(want, "--effective-samples", "1500")...)
 	must(t, 3, "", fitting(dir, "--effective-samples", "1500", "--max-steps", "500")...)
-	must(t, 0, "", "resume", dir, "--max-steps", "1000000")
+	must(t, 0, "", "resume", dir, "--max-steps", "200000")
 	files := map[string]string{}
 	for _, root := range []string{want, dir} {
 		err := filepath.WalkDir(root, func(path string, d fs.DirEntry, err error) error {

@@ -174,7 +174,7 @@ func nested(b *strings.Builder, models []result.Nested) {
 			aic, bic = math.Min(aic, float64(m.AIC)), math.Min(bic, float64(m.BIC))
 		}
 	}
-	fmt.Fprintf(b, "%-19s %5s %9s %8s %8s %14s  %s\n", "Nested universes", "free", "chi²", "ΔAIC", "ΔBIC", "ln Bayes", "probability")
+	fmt.Fprintf(b, "%-19s %5s %8s %8s %8s %14s  %s\n", "Nested universes", "free", "chi²", "ΔAIC", "ΔBIC", "ln Bayes", "probability")
 	for _, m := range models {
 		name := m.Words
 		if m.Own {
@@ -184,7 +184,7 @@ func nested(b *strings.Builder, models []result.Nested) {
 			line(b, fmt.Sprintf("  %s %5d  %s", pad(name, 17), m.Parameters, "cannot be: "+m.Ruled))
 			continue
 		}
-		line(b, fmt.Sprintf("  %s %5d %9.2f %8.2f %8.2f %14s  %s", pad(name, 17), m.Parameters, float64(m.Chi2),
+		line(b, fmt.Sprintf("  %s %5d %8.2f %8.2f %8.2f %14s  %s", pad(name, 17), m.Parameters, float64(m.Chi2),
 			float64(m.AIC)-aic, float64(m.BIC)-bic, bayes(m), inRoom(modelProbability(m))))
 	}
 	b.WriteString("  * this run's family; ln Bayes is against the best\n\n")

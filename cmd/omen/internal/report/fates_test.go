@@ -98,10 +98,10 @@ func TestNestedTable(t *testing.T) {
 		{Words: "flat, Λ", Parameters: 2, Chi2: 10.539, AIC: 14.539, BIC: 15.669, Probability: 0.95, Odds: 1},
 		{Words: "curved, Λ", Own: true, Parameters: 3, Chi2: 10.23, AIC: 16.23, BIC: 17.925, LogBayesFactor: -2.9496, BayesError: 0.031, Probability: 0, Odds: 0},
 	})
-	want := `Nested universes     free      chi²     ΔAIC     ΔBIC       ln Bayes  probability
+	want := `Nested universes     free     chi²     ΔAIC     ΔBIC       ln Bayes  probability
   empty (coasting)      1  cannot be: it makes no prediction for these data
-  flat, Λ               2     10.54     0.00     0.00              0  0.9500
-  curved, Λ *           3     10.23     1.69     2.26   -2.95 ± 0.03  – (odds 0)
+  flat, Λ               2    10.54     0.00     0.00              0  0.9500
+  curved, Λ *           3    10.23     1.69     2.26   -2.95 ± 0.03  – (odds 0)
   * this run's family; ln Bayes is against the best
 
 `
