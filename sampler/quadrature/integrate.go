@@ -105,6 +105,9 @@ func (r *Result) passes(ctx context.Context, p Problem, o Options, g guess, work
 		logs = append(logs, q.ref+math.Log(out.val[0]))
 		r.Marginals = append(r.Marginals, marginalOf(out.curve, relative))
 		r.check(i, &out, o, relative)
+		if i == 0 && o.Enough != nil && !o.Enough(r.Classes) {
+			break
+		}
 	}
 	for _, l := range logs {
 		r.LogEvidence.Err = math.Max(r.LogEvidence.Err, math.Abs(l-r.LogEvidence.Value))

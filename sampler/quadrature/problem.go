@@ -33,7 +33,10 @@ type Options struct {
 	Rarest         float64 // a class less probable than this is only known to ClassTolerance·Rarest
 	MaxEvaluations int     // of the density in each of the dim passes, about; the errors stay honest
 	Passes         int     // coordinates whose marginal is integrated; 0 for all. [Nodes.Marginal] has those of the others, less exactly
-	Workers        int     // goroutines; 0 for as many as there are cores. Does not change the result
+	// Enough, if set, looks at the probabilities of the classes after the first pass; the others are left out if
+	// it says no, and the result has but the first marginal.
+	Enough  func(classes []Estimate) bool
+	Workers int // goroutines; 0 for as many as there are cores. Does not change the result
 }
 
 // DefaultOptions returns options good for publication.

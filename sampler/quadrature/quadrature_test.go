@@ -329,3 +329,30 @@ func BenchmarkClasses2(b *testing.B) {
 		}
 	}
 }
+
+// Probabilities that are not good enough end the work after the first pass.
+func TestEnough(t *testing.T) {
+	g := randomGaussian(rand.New(rand.NewPCG(3, 2)), 2)
+	lo, hi := g.box()
+	for _, enough := range []bool{false, true} {
+		o := DefaultOptions()
+		var seen []Estimate
+		o.Enough = func(classes []Estimate) bool {
+			seen = classes
+			return enough
+		}
+		p := Problem{Density: g.density, Lo: lo, Hi: hi, Classes: 2, Class: func(x []float64) int {
+			if x[0] < (lo[0]+hi[0])/2 {
+				return 0
+			}
+			return 1
+		}}
+		r := integrate(t, p, o)
+		if want := map[bool]int{false: 1, true: 2}[enough]; len(r.Marginals) != want {
+			t.Errorf("enough %t: %d marginals, want %d", enough, len(r.Marginals), want)
+		}
+		if diff := cmp.Diff(r.Classes, seen); diff != "" {
+			t.Error(diff)
+		}
+	}
+}

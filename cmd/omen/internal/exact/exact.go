@@ -67,6 +67,16 @@ func options(dim, threads int, framed bool) quadrature.Options {
 // Integrate integrates a posterior of one to three free parameters. start is a good
 // point, nil if none is known.
 func Integrate(ctx context.Context, p *likelihood.Posterior, start []float64, threads int) (*Posterior, error) {
+	return attempt(ctx, p, start, threads, nil)
+}
+
+// Try is Integrate for who has another way: it ends early where some probability is
+// [Posterior.Unresolved], and the result then is good for nothing else.
+func Try(ctx context.Context, p *likelihood.Posterior, start []float64, threads int) (*Posterior, error) {
+	return attempt(ctx, p, start, threads, func(classes []quadrature.Estimate) bool { return unresolved(classes) == 0 })
+}
+
+func attempt(ctx context.Context, p *likelihood.Posterior, start []float64, threads int, enough func([]quadrature.Estimate) bool) (*Posterior, error) {
 	begun := time.Now()
 	space := p.Space()
 	if d := space.Dim(); d < 1 || d > Most {
@@ -76,13 +86,15 @@ func Integrate(ctx context.Context, p *likelihood.Posterior, start []float64, th
 	if space.Dim() == Most {
 		e.straighten(p, start)
 	}
-	integrate := func() (*quadrature.Result, error) {
-		return quadrature.Integrate(ctx, e.problem(p, start), options(space.Dim(), threads, e.frame != nil))
+	once := func() (*quadrature.Result, error) {
+		o := options(space.Dim(), threads, e.frame != nil)
+		o.Enough = enough
+		return quadrature.Integrate(ctx, e.problem(p, start), o)
 	}
-	r, err := integrate()
+	r, err := once()
 	for tries := 0; err == nil && e.frame != nil && e.cut(r); tries++ {
 		e.frame = e.frame.wider(tries) // it let something of the posterior out
-		r, err = integrate()
+		r, err = once()
 	}
 	if err != nil {
 		return nil, err
@@ -197,9 +209,11 @@ func (e *Posterior) Fine() bool { return e.frame != nil || e.Space.Dim() < Most 
 // Unresolved is the largest error of the probability of a class that is no better than
 // that of a chain; 0 if all are known well enough. They are not where the evaluations
 // that are allowed ended before the borders between the classes were found.
-func (e *Posterior) Unresolved() float64 {
+func (e *Posterior) Unresolved() float64 { return unresolved(e.classes) }
+
+func unresolved(classes []quadrature.Estimate) float64 {
 	worst := 0.0
-	for _, c := range e.classes {
+	for _, c := range classes {
 		switch {
 		case math.IsNaN(c.Err):
 			return math.Inf(1)

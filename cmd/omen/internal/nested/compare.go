@@ -186,7 +186,7 @@ func (f *Fitted) rule(why string) {
 }
 
 func (f *Fitted) integrate(ctx context.Context, p *likelihood.Posterior, o Options) error {
-	e, err := exact.Integrate(ctx, p, nil, o.Threads)
+	e, err := exact.Try(ctx, p, nil, o.Threads)
 	switch {
 	case exact.NoSupport(err):
 		f.rule("within the priors it makes no prediction")

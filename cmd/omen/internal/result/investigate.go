@@ -53,7 +53,11 @@ func (r *Run) integrate(ctx context.Context) error {
 	if engine == "chain" || r.Job.Space.Dim() > exact.Most {
 		return nil
 	}
-	e, err := exact.Integrate(ctx, r.Job.Posterior, r.Best, r.Threads)
+	integrate := exact.Integrate
+	if r.Chain != nil {
+		integrate = exact.Try
+	}
+	e, err := integrate(ctx, r.Job.Posterior, r.Best, r.Threads)
 	if err != nil {
 		return err
 	}
