@@ -169,9 +169,12 @@ func conclude(ctx context.Context, run *result.Run, dir string, l limits, stdout
 	}
 	fmt.Fprintf(stdout, "\nIn %s: %ssummary.json, history.csv, run.toml\n", dir, chain)
 	end := tasks.Begin("drawing figures and writing the report")
-	err := concludeReport(run, s, dir, l.noReport, stdout)
-	end()
+	said, err := concludeReport(run, s, dir, l.noReport)
+	end() // before anything else comes to the terminal
 	if err != nil {
+		return err
+	}
+	if _, err := io.WriteString(stdout, said); err != nil {
 		return err
 	}
 	if why := run.Ended(); why != "" {

@@ -166,21 +166,21 @@ func writeReport(r *gather.Run, o reportOptions) (string, error) {
 	return b.String(), nil
 }
 
-// concludeReport writes the report of a run that has just ended.
-func concludeReport(run *result.Run, s *result.Summary, dir string, none bool, stdout io.Writer) error {
+// concludeReport writes the report of a run that has just ended, and returns what is to
+// be said of it.
+func concludeReport(run *result.Run, s *result.Summary, dir string, none bool) (string, error) {
 	if none {
-		return nil
+		return "", nil
 	}
 	r, err := gather.Of(run, s, dir)
 	if err != nil {
-		return err
+		return "", err
 	}
 	text, err := writeReport(r, defaultReport())
 	if err != nil {
-		return fmt.Errorf("%w; the result is safe, omen report %s writes the rest again", err, dir)
+		return "", fmt.Errorf("%w; the result is safe, omen report %s writes the rest again", err, dir)
 	}
-	_, err = io.WriteString(stdout, text)
-	return err
+	return text, nil
 }
 
 // file is a file of a report, by its path in the folder of the run.
