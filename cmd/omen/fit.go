@@ -122,8 +122,8 @@ func load(file string, sets []string) (*job.Job, error) {
 // parseRun reads a run file and nothing that it names.
 func parseRun(file string, sets []string) (*runfile.Run, error) {
 	text, err := os.ReadFile(file)
-	if kept := filepath.Join(file, explore.RunFileName); errors.Is(err, syscall.EISDIR) && exists(kept) {
-		return nil, usagef("%s is the folder of a run; omen resume %s goes on with it, omen fit %s fits the same anew", file, file, kept)
+	if errors.Is(err, syscall.EISDIR) {
+		return nil, folderFor(file)
 	}
 	if err != nil {
 		return nil, usagef("cannot read %s: %v; omen new makes a run file", file, err.(*os.PathError).Err)
@@ -131,9 +131,16 @@ func parseRun(file string, sets []string) (*runfile.Run, error) {
 	return runfile.Parse(file, text, sets)
 }
 
-func exists(path string) bool {
-	_, err := os.Stat(path)
-	return err == nil
+// folderFor says what to do with a folder in place of a run file.
+func folderFor(dir string) error {
+	kept := filepath.Join(dir, explore.RunFileName)
+	if _, err := os.Stat(kept); err == nil {
+		return usagef("%s is the folder of a run; omen resume %s goes on with it, omen fit %s fits the same anew", dir, dir, kept)
+	}
+	if files, err := filepath.Glob(filepath.Join(dir, "*.toml")); err == nil && len(files) > 0 {
+		return usagef("%s is a folder; name the run file in it, such as %s", dir, files[0])
+	}
+	return usagef("%s is a folder without a run file; omen new makes one", dir)
 }
 
 // freeFolder is the run file's name with the first number that is not taken.

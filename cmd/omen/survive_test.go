@@ -270,6 +270,8 @@ func TestRefusals(t *testing.T) {
 		write(t, was, path)
 	}
 	must(t, 2, "omen resume "+dir+" goes on with it", "fit", dir)
+	must(t, 2, base+" is a folder; name the run file in it, such as "+filepath.Join(base, "bao-flat.toml"), "fit", base)
+	must(t, 2, "is a folder without a run file", "fit", t.TempDir())
 	must(t, 2, "found a file, expected the folder of a run", "resume", filepath.Join(dir, "run.toml"))
 	for _, name := range []string{chainfile.ChainName, chainfile.SumsName} {
 		path := filepath.Join(dir, name)
