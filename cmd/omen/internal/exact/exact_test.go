@@ -4,13 +4,11 @@ import (
 	"context"
 	"errors"
 	"math"
-	"os"
-	"path/filepath"
 	"testing"
 
 	"omen/cmd/omen/internal/job"
+	"omen/cmd/omen/internal/job/jobtest"
 	"omen/cmd/omen/internal/outlook"
-	"omen/cmd/omen/internal/runfile"
 	"omen/data"
 	"omen/likelihood"
 	"omen/model"
@@ -21,25 +19,6 @@ import (
 	"github.com/google/go-cmp/cmp"
 	"github.com/google/go-cmp/cmp/cmpopts"
 )
-
-// load reads a committed run with settings on top.
-func load(t *testing.T, name string, sets ...string) *job.Job {
-	t.Helper()
-	file := filepath.Join("..", "..", "..", "..", "testdata", "runs", name)
-	text, err := os.ReadFile(file)
-	if err != nil {
-		t.Fatal(err)
-	}
-	run, err := runfile.Parse(file, text, sets)
-	if err != nil {
-		t.Fatal(err)
-	}
-	j, err := job.Load(run)
-	if err != nil {
-		t.Fatal(err)
-	}
-	return j
-}
 
 func integrate(t *testing.T, j *job.Job) *Posterior {
 	t.Helper()
@@ -110,7 +89,7 @@ func TestCurvedRunsAgainstGrid(t *testing.T) {
 		{"fate.toml", [3]float64{0.22, 0.37, 0.0025}, [3]float64{-0.24, 0.336, 0.006}, [3]float64{95.5, 106, 0.25}},
 		{"bao.toml", [3]float64{0.21, 0.38, 0.0025}, [3]float64{-0.3, 0.36, 0.006}, [3]float64{94, 109, 0.3}},
 	} {
-		j := load(t, c.name)
+		j := jobtest.Committed(t, c.name)
 		e := integrate(t, j)
 		logZ, want := grid(j, c.om, c.ok, c.hrd)
 		got := e.Probability(closed)
@@ -129,7 +108,7 @@ func TestCurvedRunsAgainstGrid(t *testing.T) {
 
 // Labels that have no class of their own are found at the nodes.
 func TestLabelsWithoutClass(t *testing.T) {
-	j := load(t, "supernovae.toml")
+	j := jobtest.Committed(t, "supernovae.toml")
 	want := integrate(t, j).Probability(closed)
 	e := &Posterior{Space: j.Space}
 	for _, l := range labels(j.Space) {
@@ -151,7 +130,7 @@ func TestLabelsWithoutClass(t *testing.T) {
 // A posterior of three parameters that a prior cuts has no frame: the borders between
 // its fates must be found nevertheless, and no error left open can become a limit.
 func TestCutByPrior(t *testing.T) {
-	e := integrate(t, load(t, "fate.toml", "data.2.keep=z < 0.4"))
+	e := integrate(t, jobtest.Committed(t, "fate.toml", "data.2.keep=z < 0.4"))
 	if e.frame != nil || e.Fine() {
 		t.Fatal("the prior no longer cuts this posterior")
 	}
@@ -291,7 +270,7 @@ func TestFrame(t *testing.T) {
 // ratio one changes nothing.
 func TestSampleAndReweight(t *testing.T) {
 	for _, name := range []string{"supernovae.toml", "fate.toml"} {
-		e := integrate(t, load(t, name))
+		e := integrate(t, jobtest.Committed(t, name))
 		var mean, square float64
 		points := e.Sample(4000)
 		for _, x := range points {

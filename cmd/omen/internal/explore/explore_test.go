@@ -12,45 +12,25 @@ import (
 	"time"
 
 	"omen/cmd/omen/internal/chainfile"
-	"omen/cmd/omen/internal/job"
+	"omen/cmd/omen/internal/job/jobtest"
 	"omen/cmd/omen/internal/report"
 	"omen/cmd/omen/internal/result"
-	"omen/cmd/omen/internal/runfile"
 	"omen/sampler"
 
 	"github.com/google/go-cmp/cmp"
 )
-
-// load is a run of the repository with settings.
-func load(t *testing.T, name string, sets ...string) *job.Job {
-	t.Helper()
-	file := filepath.Join("..", "..", "..", "..", "testdata", "runs", name)
-	text, err := os.ReadFile(file)
-	if err != nil {
-		t.Fatal(err)
-	}
-	run, err := runfile.Parse(file, text, sets)
-	if err != nil {
-		t.Fatal(err)
-	}
-	j, err := job.Load(run)
-	if err != nil {
-		t.Fatal(err)
-	}
-	return j
-}
 
 func quiet() Options { return Options{Quiet: true, Version: "test"} }
 
 // A run that is started, out of time, interrupted and resumed says the same as one
 // that is not, but for the time it took.
 func TestSessionsAddUp(t *testing.T) {
-	whole, err := Start(t.Context(), load(t, "bao-flat.toml"), filepath.Join(t.TempDir(), "run"), quiet(), io.Discard)
+	whole, err := Start(t.Context(), jobtest.Committed(t, "bao-flat.toml"), filepath.Join(t.TempDir(), "run"), quiet(), io.Discard)
 	if err != nil {
 		t.Fatal(err)
 	}
 	dir := filepath.Join(t.TempDir(), "run")
-	part, err := Start(t.Context(), load(t, "bao-flat.toml", "sampling.max-time=20ms", "sampling.effective-samples=100000"), dir, quiet(), io.Discard)
+	part, err := Start(t.Context(), jobtest.Committed(t, "bao-flat.toml", "sampling.max-time=20ms", "sampling.effective-samples=100000"), dir, quiet(), io.Discard)
 	if err != nil || !part.OutOfTime || part.Ended() != "time limit" {
 		t.Fatalf("%+v, %v", part, err)
 	}
@@ -86,7 +66,7 @@ func TestInterruptedBeforeTheFirstStep(t *testing.T) {
 	ctx, cancel := context.WithCancel(t.Context())
 	cancel()
 	dir := filepath.Join(t.TempDir(), "run")
-	if _, err := Start(ctx, load(t, "bao-flat.toml"), dir, quiet(), io.Discard); !errors.Is(err, ErrTooEarly) {
+	if _, err := Start(ctx, jobtest.Committed(t, "bao-flat.toml"), dir, quiet(), io.Discard); !errors.Is(err, ErrTooEarly) {
 		t.Error(err)
 	}
 	if _, err := os.Stat(dir); !errors.Is(err, os.ErrNotExist) {
@@ -113,7 +93,7 @@ func TestFoldersThatAreTaken(t *testing.T) {
 				t.Fatal(err)
 			}
 		}
-		_, err := Start(t.Context(), load(t, "bao-flat.toml", "sampling.max-steps=10"), dir, quiet(), io.Discard)
+		_, err := Start(t.Context(), jobtest.Committed(t, "bao-flat.toml", "sampling.max-steps=10"), dir, quiet(), io.Discard)
 		var refused *Refused
 		if (c.want == "") != (err == nil) || err != nil && (!errors.As(err, &refused) || !strings.Contains(err.Error(), c.want)) {
 			t.Errorf("%s: %v", c.name, err)
@@ -129,7 +109,7 @@ func TestFoldersThatAreTaken(t *testing.T) {
 // A new goal is the run's own from then on; its identity stays.
 func TestNewGoalIsKept(t *testing.T) {
 	dir := filepath.Join(t.TempDir(), "run")
-	if _, err := Start(t.Context(), load(t, "bao-flat.toml", "sampling.max-steps=20"), dir, quiet(), io.Discard); err != nil {
+	if _, err := Start(t.Context(), jobtest.Committed(t, "bao-flat.toml", "sampling.max-steps=20"), dir, quiet(), io.Discard); err != nil {
 		t.Fatal(err)
 	}
 	for _, sets := range [][]string{{"sampling.max-steps=40"}, nil} {
@@ -149,7 +129,7 @@ func TestNewGoalIsKept(t *testing.T) {
 
 // The clock of the forecast and of the rate, in a first and in a later session.
 func TestProgressOfSessions(t *testing.T) {
-	j := load(t, "bao-flat.toml", "sampling.max-time=1h")
+	j := jobtest.Committed(t, "bao-flat.toml", "sampling.max-time=1h")
 	dir := filepath.Join(t.TempDir(), "run")
 	if err := os.Mkdir(dir, 0o755); err != nil {
 		t.Fatal(err)
@@ -188,7 +168,7 @@ func TestProgressOfSessions(t *testing.T) {
 // Enough sees what the parameters do not show: that derived quantities or fates
 // are not known well enough.
 func TestEnough(t *testing.T) {
-	j := load(t, "bao.toml", "sampling.effective-samples=2000", "sampling.engine=chain")
+	j := jobtest.Committed(t, "bao.toml", "sampling.effective-samples=2000", "sampling.engine=chain")
 	done, err := Start(t.Context(), j, filepath.Join(t.TempDir(), "run"), quiet(), io.Discard)
 	if err != nil || done.Outcome.Stop != sampler.Converged {
 		t.Fatal(done, err)

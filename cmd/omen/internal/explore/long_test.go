@@ -10,6 +10,7 @@ import (
 	"testing"
 	"time"
 
+	"omen/cmd/omen/internal/job/jobtest"
 	"omen/cmd/omen/internal/result"
 )
 
@@ -42,7 +43,7 @@ func TestLongRunKeepsItsMemory(t *testing.T) {
 	if err := os.Mkdir(dir, 0o755); err != nil {
 		t.Fatal(err)
 	}
-	j := load(t, "fate.toml", "sampling.record-every=100", "sampling.max-steps=10000000", "sampling.effective-samples=100000", "sampling.walkers=8")
+	j := jobtest.Committed(t, "fate.toml", "sampling.record-every=100", "sampling.max-steps=10000000", "sampling.effective-samples=100000", "sampling.walkers=8")
 	stop := peak()
 	s, err := newSession(j, dir, quiet(), io.Discard)
 	if err != nil {

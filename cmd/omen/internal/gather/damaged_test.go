@@ -9,12 +9,13 @@ import (
 
 	"omen/cmd/omen/internal/chainfile"
 	"omen/cmd/omen/internal/explore"
+	"omen/cmd/omen/internal/job/jobtest"
 )
 
 // A chain that is cut in the middle of a row is shown as far as it goes, and the
 // reader is told.
 func TestDamagedChain(t *testing.T) {
-	j, dir := committed(t, "bao-flat.toml"), filepath.Join(t.TempDir(), "run")
+	j, dir := jobtest.Committed(t, "bao-flat.toml"), filepath.Join(t.TempDir(), "run")
 	j.Run.Sampling.MaxSteps = 200
 	if _, err := explore.Start(t.Context(), j, dir, explore.Options{Quiet: true}, io.Discard); err != nil {
 		t.Fatal(err)
@@ -45,7 +46,7 @@ func TestDamagedChain(t *testing.T) {
 
 // A run that had been finished and lost most of its chain since is unfinished again.
 func TestDamagedAfterTheGoal(t *testing.T) {
-	j, dir := committed(t, "bao-flat.toml"), filepath.Join(t.TempDir(), "run")
+	j, dir := jobtest.Committed(t, "bao-flat.toml"), filepath.Join(t.TempDir(), "run")
 	j.Run.Sampling.EffectiveSamples = 1000
 	if _, err := explore.Start(t.Context(), j, dir, explore.Options{Quiet: true}, io.Discard); err != nil {
 		t.Fatal(err)

@@ -3,34 +3,13 @@ package gather
 import (
 	"math"
 	"math/rand/v2"
-	"os"
-	"path/filepath"
 	"slices"
 	"testing"
 
-	"omen/cmd/omen/internal/job"
+	"omen/cmd/omen/internal/job/jobtest"
 	"omen/cmd/omen/internal/result"
-	"omen/cmd/omen/internal/runfile"
 	"omen/likelihood"
 )
-
-func committed(t *testing.T, name string) *job.Job {
-	t.Helper()
-	path := filepath.Join("..", "..", "..", "..", "testdata", "runs", name)
-	text, err := os.ReadFile(path)
-	if err != nil {
-		t.Fatal(err)
-	}
-	run, err := runfile.Parse(path, text, nil)
-	if err != nil {
-		t.Fatal(err)
-	}
-	j, err := job.Load(run)
-	if err != nil {
-		t.Fatal(err)
-	}
-	return j
-}
 
 // The lines of the plane are the published boundaries (Carroll, Press & Turner
 // 1992, ARA&A 30, 499, eq. 12 and 14; their closed forms evaluated to 10 digits).
@@ -90,7 +69,7 @@ func TestDividersOfW(t *testing.T) {
 // A table by itself is fitted with the parameters that it needs, and agrees with
 // its own published constraint.
 func TestAlone(t *testing.T) {
-	r := &Run{Run: &result.Run{Job: committed(t, "fate.toml"), Threads: 2}}
+	r := &Run{Run: &result.Run{Job: jobtest.Committed(t, "fate.toml"), Threads: 2}}
 	for i, c := range []struct {
 		free         []string
 		om, sd, olIs float64
@@ -213,7 +192,7 @@ func TestBar(t *testing.T) {
 
 // What cannot be drawn says why.
 func TestAbsent(t *testing.T) {
-	r := &Run{Run: &result.Run{Job: committed(t, "bao-flat.toml")}, Summary: &result.Summary{Complete: true}}
+	r := &Run{Run: &result.Run{Job: jobtest.Committed(t, "bao-flat.toml")}, Summary: &result.Summary{Complete: true}}
 	p, err := r.plane()
 	if err != nil || p.Why == "" {
 		t.Errorf("the plane of a flat run: %+v, %v", p, err)

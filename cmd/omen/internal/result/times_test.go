@@ -5,6 +5,7 @@ import (
 	"testing"
 
 	"omen/cmd/omen/internal/exact"
+	"omen/cmd/omen/internal/job/jobtest"
 	"omen/cmd/omen/internal/outlook"
 	"omen/model"
 )
@@ -12,7 +13,7 @@ import (
 // In a family of w alone the time to a rip is a function of w that grows towards -1, and
 // so its quantiles are those of w, however long its tail.
 func TestTimeWithLongTail(t *testing.T) {
-	j := committed(t, "bao-flat.toml", "universe.dark-energy=w", "prior.w0={ flat = [-3, 0] }", "prior.Om=0.3", "prior.hrd=101.5")
+	j := jobtest.Committed(t, "bao-flat.toml", "universe.dark-energy=w", "prior.w0={ flat = [-3, 0] }", "prior.Om=0.3", "prior.hrd=101.5")
 	e, err := exact.Integrate(t.Context(), j.Posterior, nil, 0)
 	if err != nil {
 		t.Fatal(err)

@@ -1,38 +1,16 @@
 package result
 
 import (
-	"os"
-	"path/filepath"
 	"strings"
 	"testing"
 
-	"omen/cmd/omen/internal/job"
-	"omen/cmd/omen/internal/runfile"
+	"omen/cmd/omen/internal/job/jobtest"
 	"omen/sampler"
 )
 
-// committed reads a committed run with settings on top.
-func committed(t *testing.T, name string, sets ...string) *job.Job {
-	t.Helper()
-	file := filepath.Join("..", "..", "..", "..", "testdata", "runs", name)
-	text, err := os.ReadFile(file)
-	if err != nil {
-		t.Fatal(err)
-	}
-	run, err := runfile.Parse(file, text, sets)
-	if err != nil {
-		t.Fatal(err)
-	}
-	j, err := job.Load(run)
-	if err != nil {
-		t.Fatal(err)
-	}
-	return j
-}
-
 // Ensembles that disagree are told of once, with what they disagree about.
 func TestWarningOfStuckWalkers(t *testing.T) {
-	r := Run{Job: committed(t, "bao-flat.toml")}
+	r := Run{Job: jobtest.Committed(t, "bao-flat.toml")}
 	good := sampler.Convergence{ESS: 5000, RHat: 1.001, Tau: 10}
 	check := &r.Outcome.Check
 	check.Times, check.Parameters = 500, []sampler.Convergence{good, good}
@@ -51,10 +29,10 @@ func TestWarningOfStuckWalkers(t *testing.T) {
 
 // A table condensed for Λ is no table for w.
 func TestWarningOfCondensedTables(t *testing.T) {
-	if w := condensedWarnings(committed(t, "fate.toml")); len(w) != 0 {
+	if w := condensedWarnings(jobtest.Committed(t, "fate.toml")); len(w) != 0 {
 		t.Errorf("warnings %q", w)
 	}
-	w := condensedWarnings(committed(t, "fate.toml", "universe.dark-energy=w", "prior.w0={ flat = [-2, 0] }"))
+	w := condensedWarnings(jobtest.Committed(t, "fate.toml", "universe.dark-energy=w", "prior.w0={ flat = [-2, 0] }"))
 	if len(w) != 1 || !strings.Contains(w[0], "Pantheon+ stands for 1590 rows") {
 		t.Errorf("warnings %q", w)
 	}
@@ -62,14 +40,14 @@ func TestWarningOfCondensedTables(t *testing.T) {
 
 // Data that lie far out in a normal prior contradict it.
 func TestWarningOfContradiction(t *testing.T) {
-	r := Run{Job: committed(t, "bao-flat.toml", "prior.Om={ normal = [0.3, 0.001] }", "prior.hrd=101.5", "sampling.engine=quadrature")}
+	r := Run{Job: jobtest.Committed(t, "bao-flat.toml", "prior.Om={ normal = [0.3, 0.001] }", "prior.hrd=101.5", "sampling.engine=quadrature")}
 	if err := r.Investigate(t.Context(), nil); err != nil {
 		t.Fatal(err)
 	}
 	if w := Build(r).Warnings; len(w) != 1 || !strings.Contains(w[0], "decided by its prior") {
 		t.Errorf("in agreement: warnings %q", w)
 	}
-	r = Run{Job: committed(t, "bao-flat.toml", "prior.Om={ normal = [0.4, 0.01] }", "prior.hrd={ flat = [60, 140] }", "sampling.engine=quadrature")}
+	r = Run{Job: jobtest.Committed(t, "bao-flat.toml", "prior.Om={ normal = [0.4, 0.01] }", "prior.hrd={ flat = [60, 140] }", "sampling.engine=quadrature")}
 	if err := r.Investigate(t.Context(), nil); err != nil {
 		t.Fatal(err)
 	}
