@@ -47,6 +47,8 @@ func (r Run) Ended() string {
 // Build makes the summary of a run.
 func Build(r Run) *Summary {
 	s := &Summary{Schema: Schema, Title: r.Job.Run.Title, Version: r.Version, Complete: r.Ended() == ""}
+	best := make(chan Fit, 1)
+	go func() { best <- fit(r) }() // sums over all rows, for which a factor may have to be unpacked
 	var view sampler.View
 	var drawn *outlook.Drawn
 	if r.Chain != nil {
@@ -58,7 +60,7 @@ func Build(r Run) *Summary {
 	}
 	s.times(r, drawn)
 	s.nested(r)
-	s.Fit = fit(r)
+	s.Fit = <-best
 	s.Assumptions = assumptions(r)
 	for _, in := range r.Job.Inputs {
 		s.Inputs = append(s.Inputs, InputFile(in))
