@@ -493,7 +493,7 @@ func TestReportsAreTheSame(t *testing.T) {
 // A chain too short for an evidence costs the comparison, not the result.
 func TestTooShortForEvidence(t *testing.T) {
 	dir := filepath.Join(t.TempDir(), "run")
-	text, _ := must(t, 3, "unfinished (step limit) after 20 steps", "fit", runFile("bao-flat.toml"), "-o", dir,
-		"--max-steps", "20", "--no-report", "--quiet", "--set", "sampling.engine=chain")
+	text, _ := must(t, 3, "unfinished (step limit) after 6 steps", "fit", runFile("bao-flat.toml"), "-o", dir,
+		"--max-steps", "6", "--no-report", "--quiet", "--set", "sampling.engine=chain")
 	has(t, "fit", unwrapped(text), "the nested universes were not compared: ", "are too few for the evidence")
 }

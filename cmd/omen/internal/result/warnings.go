@@ -38,7 +38,11 @@ func chainWarnings(r Run) []string {
 	if rhat := check.RHat(); !(rhat < 1.01) {
 		add("R-hat is %.3f, above 1.01: the ensembles disagree; run longer, or look for a second peak", rhat)
 	}
-	if check.ESS() == 0 || check.Times == 0 {
+	switch unknown := check.ESS() == 0 || check.Times == 0; {
+	case unknown && check.Sample.Steps()*check.Sample.Spacing() < longEnough:
+		add("the chain is too short for its autocorrelation to be known: intervals and errors are uncertain; run longer")
+		return out
+	case unknown:
 		add("the ensembles have not seen the same posterior, so that no error can be told: %s; most likely there is a second region that walkers seldom reach or leave, which more steps do not mend: look at the figure of convergence, narrow a prior, or take the integral's numbers if there is one", blame(r))
 		return out
 	}
@@ -65,6 +69,10 @@ func condensedWarnings(j *job.Job) []string {
 	}
 	return out
 }
+
+// longEnough is the number of steps from which on a chain whose autocorrelation is
+// still not known is more likely to be stuck than short.
+const longEnough = 5000
 
 // blame names the parameters of which no effective samples are known.
 func blame(r Run) string {

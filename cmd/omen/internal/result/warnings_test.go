@@ -18,8 +18,12 @@ func TestWarningOfStuckWalkers(t *testing.T) {
 		t.Errorf("warnings %q", w)
 	}
 	check.Times, check.Parameters[1].ESS = 0, 0
+	if w := chainWarnings(r); len(w) != 1 || !strings.Contains(w[0], "too short for its autocorrelation to be known") {
+		t.Errorf("short: warnings %q", w)
+	}
+	check.Sample = long(t, 6000)
 	if w := chainWarnings(r); len(w) != 1 || !strings.Contains(w[0], "see hrd; most likely there is a second region") {
-		t.Errorf("warnings %q", w)
+		t.Errorf("long: warnings %q", w)
 	}
 	check.Times, check.Parameters[1].ESS = 350, 3000
 	if w := chainWarnings(r); len(w) != 2 || !strings.Contains(w[0], "below the goal of 4000") || !strings.Contains(w[1], "350 autocorrelation times long, below 400") {
@@ -54,4 +58,20 @@ func TestWarningOfContradiction(t *testing.T) {
 	if w := strings.Join(Build(r).Warnings, "; "); !strings.Contains(w, "standard deviations from the mean of its normal prior: data and prior contradict each other") {
 		t.Errorf("in contradiction: warnings %q", w)
 	}
+}
+
+// long is a view of so many steps.
+func long(t *testing.T, steps int) sampler.View {
+	t.Helper()
+	start := [][]float64{{0, 1, 2, 3}}
+	c, err := sampler.NewChain(1, start, 1, sampler.DefaultRecord)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for i := range steps {
+		if err := c.Append(i+1, start, start, 0); err != nil {
+			t.Fatal(err)
+		}
+	}
+	return c.View()
 }
