@@ -162,7 +162,7 @@ func inMath(s string) string {
 	s = gather.Scientific(strings.TrimSuffix(s, " (95%)"), func(times, exponent string) string {
 		return strings.Replace(times, "×", ` \times `, 1) + "10^{" + strings.Replace(exponent, "−", "-", 1) + "}"
 	})
-	return strings.NewReplacer("±", `\pm`, "–", `\text{--}`).Replace(s)
+	return strings.NewReplacer("±", `\pm`, "–", `\text{--}`, "not known", `\text{not known}`).Replace(s)
 }
 
 // event is the name of a fate or statement without its explanation.

@@ -1,6 +1,7 @@
 package gather
 
 import (
+	"math"
 	"regexp"
 	"slices"
 	"strings"
@@ -101,7 +102,7 @@ func bar(fates []result.Fate, name string) figure.Probability {
 		return figure.Probability{P: up, Limit: true, Text: text}
 	}
 	out := figure.Probability{P: p, Text: text}
-	if e := float64(f.Error); e > 0 && e > p/1000 {
+	if e := float64(f.Error); e > 0 && e > p/1000 && !math.IsInf(e, 1) {
 		out.Err = e
 	}
 	return out

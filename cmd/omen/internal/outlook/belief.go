@@ -64,15 +64,24 @@ var _ Belief = Drawn{}
 // told as a number: four effective draws.
 const fewSigmas = 2
 
-// Probability counts draws; next to none or next to all leave a limit.
+// Probability counts draws; next to none or next to all leave a limit, unless there are
+// so few that both would.
 func (d Drawn) Probability(holds func(Label) bool) Share {
 	p := sampler.Proportion(d.Codes.Map(func(code float64) float64 { return indicator(holds(Decode(code))) }), d.ESS)
 	s := Share{P: p.P, Err: p.Error, Upper: math.NaN(), Lower: math.NaN()}
+	none, all := p.P == 0 || p.P < fewSigmas*p.Error, p.P == 1 || 1-p.P < fewSigmas*p.Error
 	switch {
-	case p.P == 0, p.P < fewSigmas*p.Error && p.P < 0.5:
+	case none && all:
+	case none:
 		s.P, s.Upper = 0, p.Upper95
-	case p.P == 1, 1-p.P < fewSigmas*p.Error:
+		if math.IsNaN(s.Upper) {
+			s.Upper = 1
+		}
+	case all:
 		s.P, s.Lower = 1, p.Lower95
+		if math.IsNaN(s.Lower) {
+			s.Lower = 0
+		}
 	}
 	return s
 }

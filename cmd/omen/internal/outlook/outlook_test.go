@@ -212,4 +212,17 @@ func TestFewDrawsAreALimit(t *testing.T) {
 			t.Errorf("about %v: %+v", c.p, s)
 		}
 	}
+	// A sample that alternates in two long halves is worth next to nothing either way.
+	codes := make([]float64, 40)
+	for i := range codes {
+		u := model.Universe{Om: 0.3, OL: 0.7, H0: 70, W0: -1}
+		if i >= 20 {
+			u.OL = -0.1
+		}
+		codes[i] = LabelOf(u).Code()
+	}
+	s := Drawn{Codes: sampler.NewDraws(1, codes), ESS: 2}.Probability(func(l Label) bool { return l.Accelerating })
+	if s.P != 0.5 || !(s.Err > 0.25) || !math.IsNaN(s.Upper) || !math.IsNaN(s.Lower) {
+		t.Errorf("two draws: %+v", s)
+	}
 }

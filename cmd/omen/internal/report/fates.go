@@ -124,8 +124,12 @@ func Probability(f result.Fate) string {
 		level = ""
 	}
 	switch rest := 1 - p; {
+	case math.IsInf(e, 1):
+		return "not known"
 	case p == 0 && up > 0:
 		return "< " + small(max(up, tiniest)) + level
+	case p == 1 && up >= 1:
+		return "> 0" + level
 	case p == 1 && up > 1e-4:
 		return "> " + digits.Format(1-up, min(limitPlace(up), limitPlace(1-up))) + level
 	case p == 1 && up > 0:

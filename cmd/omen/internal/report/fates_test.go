@@ -22,6 +22,9 @@ func TestProbability(t *testing.T) {
 		want     string
 	}{
 		{0, none, 0.00063, false, "< 0.00063 (95%)"},
+		{0.3, result.Number(math.Inf(1)), none, false, "not known"},
+		{0, none, 1, false, "< 1.0 (95%)"},
+		{1, none, 1, false, "> 0 (95%)"},
 		{1, none, 0.00063, false, "> 0.9994 (95%)"},
 		{1, none, 0.96, false, "> 0.04 (95%)"},
 		{1, none, 0.28, false, "> 0.72 (95%)"},
