@@ -8,7 +8,7 @@ import (
 	"unicode/utf8"
 
 	"omen/cmd/omen/internal/job"
-	"omen/cmd/omen/internal/runfile"
+	"omen/cmd/omen/internal/job/jobtest"
 )
 
 // load puts files into a folder and reads the run file among them.
@@ -20,15 +20,7 @@ func load(t *testing.T, files map[string]string) *job.Job {
 			t.Fatal(err)
 		}
 	}
-	run, err := runfile.Parse(filepath.Join(dir, "run.toml"), []byte(files["run.toml"]), nil)
-	if err != nil {
-		t.Fatal(err)
-	}
-	j, err := job.Load(run)
-	if err != nil {
-		t.Fatal(err)
-	}
-	return j
+	return jobtest.Load(t, filepath.Join(dir, "run.toml"))
 }
 
 const (

@@ -1,4 +1,4 @@
-// Package jobtest loads the committed runs for tests of other packages.
+// Package jobtest loads runs, the committed ones above all, for tests of other packages.
 package jobtest
 
 import (
@@ -18,7 +18,12 @@ func Committed(t testing.TB, name string, sets ...string) *job.Job {
 	if !ok {
 		t.Fatal("the source is not where it was built")
 	}
-	file := filepath.Join(filepath.Dir(here), "..", "..", "..", "..", "..", "testdata", "runs", name)
+	return Load(t, filepath.Join(filepath.Dir(here), "..", "..", "..", "..", "..", "testdata", "runs", name), sets...)
+}
+
+// Load is the run of a file with settings on top.
+func Load(t testing.TB, file string, sets ...string) *job.Job {
+	t.Helper()
 	text, err := os.ReadFile(file)
 	if err != nil {
 		t.Fatal(err)
